@@ -1,0 +1,1 @@
+"""Rate laws: one file each, one small interface, one registry."""

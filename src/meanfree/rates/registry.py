@@ -1,0 +1,10 @@
+"""The rate laws by the word that names them in a case file. A new law adds one line here."""
+
+from __future__ import annotations
+
+from meanfree.rates.arrhenius import Arrhenius
+from meanfree.rates.collision import Collision
+from meanfree.rates.fixed import Fixed
+from meanfree.rates.law import Law
+
+LAWS: dict[str, type[Law]] = {law.word: law for law in (Fixed, Arrhenius, Collision)}
