@@ -1,0 +1,1 @@
+"""Kinetic theory of gases as pure functions of numbers and arrays, SI with mol."""
