@@ -1,0 +1,1 @@
+"""What a gas is: formula, identity, thermochemistry, transport and hazard data."""
