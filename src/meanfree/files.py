@@ -87,18 +87,21 @@ def fresh_folder(
     or when another process is still writing there after ``patience_s`` [s].
     """
     target = _real(target)
-    refuse_if_taken(target, owner=owner, replace=replace)
-    with _in_words(target), _parents_of(target), working_aside(target, patience_s) as aside:
-        _recover(target, aside)
-        refuse_if_taken(target, owner=owner, replace=replace)
-        new = aside / "new"
-        new.mkdir()
-        try:
-            yield new
-            _seal(new, owner)
-            _swap(target, aside)
-        finally:
+    with _in_words(target):
+        if not aside_of(target).exists():
+            # Before anything is made. Where a writer is at work, or died, the lock comes first.
+            refuse_if_taken(target, owner=owner, replace=replace)
+        with _parents_of(target), working_aside(target, patience_s) as aside:
             _recover(target, aside)
+            refuse_if_taken(target, owner=owner, replace=replace)
+            new = aside / "new"
+            new.mkdir()
+            try:
+                yield new
+                _seal(new, owner)
+                _swap(target, aside)
+            finally:
+                _recover(target, aside)
 
 
 def write_text_atomically(path: Path, text: str, *, patience_s: float = 60.0) -> None:
