@@ -1,0 +1,24 @@
+"""The edge at which text becomes SI: quantities with units, read behind our own gate.
+
+pint knows the units; the gate decides what text may reach it, so that nothing is evaluated
+and nothing is guessed. Everything about pint stays in this room, imported on first use.
+"""
+
+from __future__ import annotations
+
+from meanfree.units.dimensions import equilibrium_constant, phrase, rate_constant, si_unit
+from meanfree.units.gate import QuantityError
+from meanfree.units.reading import from_si, read, read_any, read_number, to_si
+
+__all__ = [
+    "QuantityError",
+    "equilibrium_constant",
+    "from_si",
+    "phrase",
+    "rate_constant",
+    "read",
+    "read_any",
+    "read_number",
+    "si_unit",
+    "to_si",
+]
