@@ -1,0 +1,1 @@
+"""The differential equations of an experiment: one inert description and its readers."""

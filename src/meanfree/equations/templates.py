@@ -1,0 +1,74 @@
+"""The formula of each rate law as compiled functions, with its derivatives.
+
+sympy differentiates every law's template once; numpy evaluates the results. A law whose
+coefficient is constant during a run never comes here, so short runs need no sympy.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from functools import lru_cache
+from typing import Any
+
+from meanfree.rates.law import Law
+
+Compiled = Callable[..., tuple[Any, Any, Any, Any]]
+
+
+class Symbols:
+    """The `Functions` of sympy. Constants stay symbols with ``readable``, else numbers."""
+
+    def __init__(self, readable: bool = False) -> None:
+        import sympy
+
+        from meanfree import constants
+
+        self._sympy = sympy
+        self.exp, self.log, self.sqrt = sympy.exp, sympy.log, sympy.sqrt
+        self.pi = sympy.pi
+        self.R: Any = sympy.Symbol("R", positive=True) if readable else constants.R
+        self.k_B: Any = sympy.Symbol("k_B", positive=True) if readable else constants.k_B
+        self.N_A: Any = sympy.Symbol("N_A", positive=True) if readable else constants.N_A
+
+    def log10(self, x: Any) -> Any:
+        """Decimal logarithm."""
+        return self._sympy.log(x) / self._sympy.log(10)
+
+    def piecewise_linear(self, x: Any, xs: Any, ys: Any) -> Any:
+        """Linear between the points, the outer pieces continued beyond them."""
+        pieces = []
+        for x0, x1, y0, y1 in zip(xs, xs[1:], ys, ys[1:]):
+            pieces.append((y0 + (y1 - y0) / (x1 - x0) * (x - x0), x < x1))
+        pieces[-1] = (pieces[-1][0], True)
+        return self._sympy.Piecewise(*pieces)
+
+
+def formula(law: type[Law], n_slots: int | None = None, readable: bool = False) -> tuple[Any, Any]:
+    """(expression, symbols) of a law's template.
+
+    The symbols are T, p, M and then one for each of the law's slots.
+    """
+    import sympy
+
+    T, p, M = sympy.symbols("T p M", positive=True)
+    slots = [sympy.Symbol(name, real=True) for name in law.slots[:n_slots]]
+    return law.coefficient(Symbols(readable), T, p, M, slots), (T, p, M, *slots)
+
+
+@lru_cache(maxsize=None)
+def compiled(law: type[Law]) -> Compiled:
+    """f(T, p, M, *numbers) -> (k, dk/dT, dk/dp, dk/dM), arrays of shape (n_steps,)."""
+    import sympy
+
+    expression, symbols = formula(law)
+    T, p, M = symbols[:3]
+    parts = [expression, *(sympy.diff(expression, symbol) for symbol in (T, p, M))]
+    function: Compiled = sympy.lambdify(symbols, parts, modules="numpy", cse=True)
+    return function
+
+
+@lru_cache(maxsize=None)
+def depends_on(law: type[Law]) -> frozenset[str]:
+    """Which of "T", "p" and "M" the coefficient of a law depends on."""
+    expression, symbols = formula(law)
+    return frozenset(str(s) for s in symbols[:3] if s in expression.free_symbols)

@@ -1,0 +1,154 @@
+"""What every run checks about itself, and what counts as a failure.
+
+Linear invariants are kept by the integrators to rounding; a drift beyond that means that the
+equations, not the tolerance, are wrong.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from meanfree.constants import R
+from meanfree.equations import thermal
+from meanfree.equations.system import Floats, System
+from meanfree.experiment.experiment import Experiment
+from meanfree.integrate.trajectory import Stretch, Trajectory
+
+DRIFT = 1e-9
+"""Largest drift of an element, over the most of it there ever was: rounding over many steps."""
+
+NEGATIVE = 100.0
+"""A negative amount may be this many tolerances deep: the error of one step adds up over many."""
+
+
+@dataclass(frozen=True)
+class Invariants:
+    """How well a run kept what it must keep; ratios without unit, None where it does not apply.
+
+    ``elements`` names each element (or "charge") with its largest relative drift; ``energy`` and
+    ``volume`` are relative; ``most_negative`` is over the total initial concentration.
+    ``failures`` says in words what went beyond its bound.
+    """
+
+    elements: dict[str, float]
+    energy: float | None
+    volume: float | None
+    most_negative: float
+    failures: tuple[str, ...] = ()
+
+
+def check(experiment: Experiment, system: System, trajectory: Trajectory, rtol: float) -> Invariants:
+    """Check a trajectory at every accepted step."""
+    states = [np.column_stack(stretch.states) for stretch in trajectory.stretches]
+    failures: list[str] = []
+    if not all(np.all(np.isfinite(part)) for part in states):
+        failures.append("a value is not finite")
+    elements = _elements(experiment, system, trajectory.stretches, states)
+    for name, drift in elements.items():
+        if not drift <= DRIFT:
+            failures.append(f"{name} drifted by {drift:.1e} of what there was")
+    most = np.max([part[: system.n_gases].max(axis=1) for part in states], axis=0)
+    least = np.min([part[: system.n_gases].min(axis=1) for part in states], axis=0)
+    allowed = NEGATIVE * (rtol * most + 1e-16 * system.total_concentration)
+    for i in np.flatnonzero(least < -allowed):
+        failures.append(f"{system.gases[i]} went negative, to {least[i]:.1e} mol/m^3")
+    energy = _energy(system, trajectory.stretches, states)
+    if energy is not None and not energy <= 1e3 * rtol:
+        failures.append(f"energy drifted by {energy:.1e}")
+    volume = _volume(system, states)
+    if volume is not None and not volume <= 1e3 * rtol:
+        failures.append(f"the volume left the equation of state by {volume:.1e}")
+    negative = float(max(0.0, -least.min(initial=0.0))) / system.total_concentration
+    return Invariants(elements, energy, volume, negative, tuple(failures))
+
+
+def _elements(
+    experiment: Experiment, system: System, stretches: tuple[Stretch, ...], states: list[Floats]
+) -> dict[str, float]:
+    """Relative drift of each element, counting what open steps brought and samples took."""
+    names, table = composition(experiment)
+    if not names:
+        return {}
+    brought = np.zeros((len(names), len(system.open_steps)))
+    for column, j in enumerate(system.open_steps):
+        for gas, number in system.net.row(int(j)):
+            brought[:, column] += number * table[:, gas]
+    n, opened = system.n_gases, len(system.open_steps)
+    scale = np.abs(table) @ system.initial_x
+    drift = np.zeros(len(names))
+    taken, before = np.zeros(len(names)), system.initial_x
+    for stretch, part in zip(stretches, states):
+        taken = taken + table @ (before * (1 - stretch.segment.retained))
+        ledger = brought @ part[n : n + opened]
+        there = table @ part[:n]
+        scale = np.maximum(scale, (np.abs(table) @ np.abs(part[:n])).max(axis=1))
+        change = there - ledger + taken[:, None] - (table @ system.initial_x)[:, None]
+        drift = np.maximum(drift, np.abs(change).max(axis=1))
+        before = part[:n, -1]
+    ratio = np.divide(drift, scale, out=np.zeros_like(drift), where=scale > 0)
+    return {name: float(value) for name, value in zip(names, ratio)}
+
+
+def composition(experiment: Experiment) -> tuple[list[str], Floats]:
+    """Element names (and "charge") and the table of how much of each a gas holds.
+
+    Labels have no elements; where a step mixes labels with real gases nothing is conserved by
+    name, so elements of such mechanisms are left out.
+    """
+    labels = {gas.name for gas in experiment.gases if gas.is_label}
+    used = {gas for step in experiment.steps for gas in step.net}
+    if used & labels:
+        return [], np.zeros((0, len(experiment.gases)))
+    names = sorted({e for g in experiment.gases if g.formula for e, _ in g.formula.elements})
+    table = np.zeros((len(names) + 1, len(experiment.gases)))
+    for i, gas in enumerate(experiment.gases):
+        if gas.formula is not None:
+            for element, number in gas.formula.elements:
+                table[names.index(element), i] = number
+            table[-1, i] = gas.formula.charge
+    charged = bool(np.any(table[-1]))
+    return [*names, *(["charge"] if charged else [])], table if charged else table[:-1]
+
+
+def _energy(
+    system: System, stretches: tuple[Stretch, ...], states: list[Floats]
+) -> float | None:
+    """Drift of internal energy (rigid) or enthalpy (piston), over the heat that was turned over.
+
+    None unless the energies of the gases alone decide: stated heats, light and open steps bring
+    energy that no property of the gases accounts for.
+    """
+    if not system.temperature_varies or system.thermal is None:
+        return None
+    if len(system.open_steps) or np.any(system.photon) or not np.all(np.isnan(system.heat_given)):
+        return None
+    T_row = system.temperature_index
+    values, heats = [], []
+    for part in states:
+        for y in part.T:
+            T = float(y[T_row])
+            each = thermal.enthalpies(system.thermal, T)
+            if not system.volume_varies:
+                each = each - R * T
+            taken = y[system.volume_index - 1] if system.exchanges_heat else 0.0
+            values.append(float(y[: system.n_gases] @ each) + system.wall * T - taken)
+            cp = thermal.heat_capacities(system.thermal, T)[0]
+            heats.append(float(y[: system.n_gases] @ cp) * T)
+    return float(np.max(np.abs(np.array(values) - values[0])) / max(heats))
+
+
+def _volume(system: System, states: list[Floats]) -> float | None:
+    """How far v left (R T/p) sum(x) - dead T, relative; None in a rigid vessel."""
+    if not system.volume_varies or system.mode == "program":
+        return None
+    worst = 0.0
+    for part in states:
+        T: Floats | float = system.initial_temperature
+        if system.temperature_varies:
+            T = part[system.temperature_index]
+        v = part[system.volume_index]
+        expected = R * T / system.held_pressure * part[: system.n_gases].sum(axis=0)
+        worst = max(worst, float(np.max(np.abs((v + system.dead * T) / expected - 1))))
+    return worst

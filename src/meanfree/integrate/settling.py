@@ -1,0 +1,67 @@
+"""When an open-ended run is done: its watched gas is gone, or nothing moves any more."""
+
+from __future__ import annotations
+
+import numpy as np
+
+from meanfree.equations.system import Floats, System
+
+CONVERTED = 0.999
+"""Fraction of the watched gas, or of the way to where it settles, that ends an automatic run."""
+
+WINDOW = 100.0
+"""Nothing may move between t/WINDOW and t for a run to count as settled."""
+
+STILL = 1e-6
+"""Change, over the most that was ever there, that counts as no movement."""
+
+HORIZON = 1e17
+"""The longest automatic run [s]: about three billion years."""
+
+
+class Settling:
+    """Watches a run after each step; remembers why it ended it.
+
+    Compared with the most that was ever there of each gas, not with the total: a gas that is
+    only just appearing grows by as much as there is of it, so an induction period is never
+    taken for rest.
+    """
+
+    def __init__(self, system: System, watched: int | None) -> None:
+        self.system, self.watched = system, watched
+        self.times: list[float] = [0.0]
+        self.states: list[Floats] = [system.initial_state]
+        self.most = np.abs(system.initial_state)
+        self.reason = ""
+        self.goal = 1.0 - CONVERTED
+
+    def __call__(self, t: float, y: Floats, last_segment: bool) -> bool:
+        self.times.append(t)
+        self.states.append(y)
+        np.maximum(self.most, np.abs(y), out=self.most)
+        if self.watched is not None:
+            start = self.system.initial_x[self.watched]
+            if start > 0 and y[self.watched] <= self.goal * start:
+                self.reason = "converted"
+                return last_segment
+        if last_segment and self._still(t, y):
+            self.reason = "settled"
+            return True
+        return False
+
+    def _still(self, t: float, y: Floats) -> bool:
+        begin = int(np.searchsorted(self.times, t / WINDOW))
+        start = self.system.segments[-1].start
+        if self.times[begin] <= start or len(self.times) - begin < 3:
+            # A vessel in which nothing happens takes giant steps at once.
+            return len(self.times) > 5 and bool(np.all(self._movement(1, y) == 0))
+        return bool(np.all(self._movement(begin, y) <= STILL))
+
+    def _movement(self, begin: int, y: Floats) -> Floats:
+        """Largest change of each gas (and v, T) since a step, over the most ever there."""
+        n, system = self.system.n_gases, self.system
+        kept = np.r_[0:n, system.volume_index : system.size]
+        since = np.array(self.states[begin:])[:, kept]
+        most = self.most[kept]
+        change = np.abs(since - y[kept]).max(axis=0)
+        return np.divide(change, most, out=np.zeros_like(change), where=most > 0)
