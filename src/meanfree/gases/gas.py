@@ -20,7 +20,7 @@ class Gas:
     ``molar_mass`` [kg/mol], ``diameter`` [m] (of the hard sphere that stands for the
     molecule) and ``well_depth`` [K] (epsilon / k_B of a Lennard-Jones potential with that
     diameter) are None where nothing is known. ``thermochemistry`` is what the reader
-    gave; `meanfree.gases.library.thermochemistry_of` finds the rest when it is needed.
+    gave; `meanfree.gases.energies.thermochemistry_of` finds the rest when it is needed.
     """
 
     name: str
