@@ -45,7 +45,7 @@ class ArrayEquations:
     def __init__(self, system: System) -> None:
         self.system = system
         self.net_owner = system.net.owner
-        self.change = np.bincount(self.net_owner, system.net.value, system.n_steps)
+        self.change = np.bincount(self.net_owner, system.net.value, system.n_steps).astype(float)
         self._terms()
         self.varying = [
             bool(templates.depends_on(block.law) - {"T"}) or system.mode != "isothermal"
@@ -98,7 +98,7 @@ class ArrayEquations:
             return self._kept
         n = self.system.n_steps
         k, by_T, by_p, by_M = np.zeros(n), np.zeros(n), np.zeros(n), np.zeros(n)
-        for block, varies in zip(self.system.blocks, self.varying):
+        for block, varies in zip(self.system.blocks, self.varying, strict=True):
             at = block.steps
             if varies:
                 parts = templates.compiled(block.law)(T, p, M[at], *block.numbers)
@@ -134,12 +134,14 @@ class ArrayEquations:
     def of_reaction(self, quantity: Floats) -> Floats:
         """Sum of net numbers times a quantity of the gases, shape (n_steps,)."""
         net = self.system.net
-        return np.bincount(self.net_owner, net.value * quantity[net.column], self.system.n_steps)
+        weights = net.value * quantity[net.column]
+        return np.bincount(self.net_owner, weights, self.system.n_steps).astype(float)
 
     def of_gases(self, rates: Floats) -> Floats:
         """Net formation of each gas from the rates of the steps, shape (n_gases,)."""
         net = self.system.net
-        return np.bincount(net.column, net.value * rates[self.net_owner], self.system.n_gases)
+        weights = net.value * rates[self.net_owner]
+        return np.bincount(net.column, weights, self.system.n_gases).astype(float)
 
     def products(self, c: Floats) -> tuple[Floats, Floats]:
         """Product of concentration powers [shape (n_steps,)] and its derivative by each term."""
@@ -214,4 +216,3 @@ class ArrayEquations:
         from meanfree.equations.jacobian import assemble
 
         return assemble(self, t, y, segment)
-

@@ -2,12 +2,13 @@
 
 from __future__ import annotations
 
+import itertools
 import math
 from collections.abc import Sequence
 
 import numpy as np
 
-from meanfree.constants import R, STANDARD_PRESSURE
+from meanfree.constants import STANDARD_PRESSURE, R
 from meanfree.equations.system import (
     Floats,
     LawBlock,
@@ -114,7 +115,9 @@ def _baths(ways: Sequence[Way], place: dict[str, int]) -> tuple[np.ndarray, Rows
             row_of.append(-1)
             continue
         efficiencies = step.bath.efficiencies.items()
-        corrections = sorted((place[g], e - step.bath.others) for g, e in efficiencies if g in place)
+        corrections = sorted(
+            (place[g], e - step.bath.others) for g, e in efficiencies if g in place
+        )
         key = (step.bath.others, tuple(corrections))
         row_of.append(found.setdefault(key, len(found)))
     rows = Rows.of([list(corrections) for _, corrections in found])
@@ -147,7 +150,7 @@ def _reverses(ways: Sequence[Way]) -> Reverses:
             _given_constant(ways[j][1], reverse)
             if isinstance(reverse, GivenEquilibrium)
             else (0.0, 298.15, 0.0)
-            for j, reverse in zip(rows, given)
+            for j, reverse in zip(rows, given, strict=True)
         ]
     ).reshape(len(rows), 3)
     return Reverses(
@@ -209,6 +212,6 @@ def _segments(experiment: Experiment) -> tuple[Segment, ...]:
     points = [(time.value, T.value) for time, T in mode.points]
     segments = [
         Segment(t0, t1, T0, (T1 - T0) / (t1 - t0))
-        for (t0, T0), (t1, T1) in zip(points, points[1:])
+        for (t0, T0), (t1, T1) in itertools.pairwise(points)
     ]
     return (*segments, Segment(points[-1][0], math.inf, points[-1][1]))

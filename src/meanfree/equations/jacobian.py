@@ -18,9 +18,7 @@ if TYPE_CHECKING:
     from meanfree.equations.arrays import ArrayEquations, State
 
 
-def assemble(
-    equations: ArrayEquations, t: float, y: Floats, segment: Segment
-) -> sparse.csc_array:
+def assemble(equations: ArrayEquations, t: float, y: Floats, segment: Segment) -> sparse.csc_array:
     """d(dy/dt)/dy as a sparse array [shape (size, size)]."""
     system = equations.system
     n, opened = system.n_gases, len(system.open_steps)
@@ -55,12 +53,12 @@ def rate_derivatives(
     width = len(equations.term_gas)
     values = (by_term * factors.k * outside).ravel()
     shape = (system.n_steps, system.n_gases + 1)
-    terms = sparse.coo_array(
-        (values, (np.tile(j, width), equations.term_gas.ravel())), shape=shape
-    )
+    terms = sparse.coo_array((values, (np.tile(j, width), equations.term_gas.ravel())), shape=shape)
     by_c = sparse.csr_array(sparse.csr_array(terms)[:, : system.n_gases])
-    by_M = product * switch * np.where(
-        system.bath_inside, factors.by_M, np.where(system.bath >= 0, factors.k, 0.0)
+    by_M = (
+        product
+        * switch
+        * np.where(system.bath_inside, factors.by_M, np.where(system.bath >= 0, factors.k, 0.0))
     )
     if np.any(by_M != 0):
         by_c = sparse.csr_array(by_c + _bath_part(equations, by_M))

@@ -13,7 +13,7 @@ from typing import Any
 import numpy as np
 import sympy
 
-from meanfree.constants import R, STANDARD_PRESSURE
+from meanfree.constants import STANDARD_PRESSURE, R
 from meanfree.equations import thermal
 from meanfree.equations.arrays import ArrayEquations
 from meanfree.equations.powers import power
@@ -170,7 +170,8 @@ class _Writer:
                     coefficients[j] = block.law.coefficient(
                         Symbols(), self.T, self.p, baths[j], numbers
                     )
-        for row, (j, forward) in enumerate(zip(system.reverses.step, system.reverses.forward)):
+        reverses = system.reverses
+        for row, (j, forward) in enumerate(zip(reverses.step, reverses.forward, strict=True)):
             if not constant[j]:
                 coefficients[j] = coefficients[forward] * sympy.exp(-self._ln_Kc(row))
         return coefficients, baths
@@ -222,7 +223,7 @@ def constant_steps(system: System) -> list[bool]:
         if depends_on(block.law) - {"T"}:
             for j in block.steps:
                 constant[j] = False
-    for j, forward in zip(system.reverses.step, system.reverses.forward):
+    for j, forward in zip(system.reverses.step, system.reverses.forward, strict=True):
         constant[j] = constant[forward]
     return constant
 
@@ -258,9 +259,7 @@ class CompiledEquations:
         places = list(form.jacobian)
         self._rows = np.array([i for i, _ in places], np.intp)
         self._columns = np.array([j for _, j in places], np.intp)
-        self._jacobian = sympy.lambdify(
-            arguments, list(form.jacobian.values()), modules, cse=True
-        )
+        self._jacobian = sympy.lambdify(arguments, list(form.jacobian.values()), modules, cse=True)
         self._constants: dict[float, Floats] = {}
 
     def _gas_function(self, of_table: Any) -> Any:

@@ -46,7 +46,8 @@ class Rows:
     def row(self, j: int) -> list[tuple[int, float]]:
         """(column, value) of one row."""
         part = slice(self.start[j], self.start[j + 1])
-        return [(int(c), float(v)) for c, v in zip(self.column[part], self.value[part])]
+        entries = zip(self.column[part], self.value[part], strict=True)
+        return [(int(column), float(value)) for column, value in entries]
 
     @property
     def owner(self) -> Integers:
@@ -88,8 +89,8 @@ class Reverses:
 class Thermal:
     """Cp, H and S of each gas as Chebyshev series in x, linear in ln T from ``low`` to ``high``.
 
-    ``low``, ``high`` [K, shape (n_gases,)]; ``cp`` [J/mol/K], ``h`` [J/mol], ``s`` [J/mol/K], each of
-    shape (n_terms, n_gases).
+    ``low``, ``high`` [K, shape (n_gases,)]; ``cp`` [J/mol/K], ``h`` [J/mol], ``s`` [J/mol/K], each
+    of shape (n_terms, n_gases).
     """
 
     low: Floats
@@ -103,9 +104,9 @@ class Thermal:
 class Segment:
     """A stretch of time without a break.
 
-    From ``start`` to ``end`` [s] a programmed temperature is ``temperature`` + ``slope`` (t - start)
-    [K, K/s]. ``switches`` [shape (n_steps,)] multiplies each rate (a lamp that is on or off).
-    ``retained`` is the fraction that stays when a sample is drawn at ``start``.
+    From ``start`` to ``end`` [s] a programmed temperature is ``temperature`` [K] + ``slope``
+    [K/s] (t - start). ``switches`` [shape (n_steps,)] multiplies each rate (a lamp that is on or
+    off). ``retained`` is the fraction that stays when a sample is drawn at ``start``.
     """
 
     start: float
@@ -125,8 +126,8 @@ class System:
     zero with them: its rate stops smoothly at zero. ``bath`` [shape (n_steps,)] is the row of
     ``baths`` that M is taken from, -1 without M; M = ``others`` sum(c) + sum(value c).
     ``bath_inside`` marks steps whose law uses M itself.
-    ``heat_given`` [J/mol, shape (n_steps,)] is a stated heat release, NaN where it follows from the gases;
-    ``photon`` [J/mol, shape (n_steps,)] is light energy that a step takes in.
+    ``heat_given`` [J/mol, shape (n_steps,)] is a stated heat release, NaN where it follows from
+    the gases; ``photon`` [J/mol, shape (n_steps,)] is light energy that a step takes in.
     ``dead`` is V_d/(V0 T_d) [1/K]; ``exchange`` is G/V0 [W/m^3/K]; ``wall`` is C_wall/V0 [J/m^3/K].
     """
 

@@ -7,7 +7,7 @@ coefficient is constant during a run never comes here, so short runs need no sym
 from __future__ import annotations
 
 from collections.abc import Callable
-from functools import lru_cache
+from functools import cache
 from typing import Any
 
 from meanfree.rates.law import Law
@@ -37,7 +37,7 @@ class Symbols:
     def piecewise_linear(self, x: Any, xs: Any, ys: Any) -> Any:
         """Linear between the points, the outer pieces continued beyond them."""
         pieces = []
-        for x0, x1, y0, y1 in zip(xs, xs[1:], ys, ys[1:]):
+        for x0, x1, y0, y1 in zip(xs, xs[1:], ys, ys[1:], strict=False):
             pieces.append((y0 + (y1 - y0) / (x1 - x0) * (x - x0), x < x1))
         pieces[-1] = (pieces[-1][0], True)
         return self._sympy.Piecewise(*pieces)
@@ -55,9 +55,9 @@ def formula(law: type[Law], n_slots: int | None = None, readable: bool = False) 
     return law.coefficient(Symbols(readable), T, p, M, slots), (T, p, M, *slots)
 
 
-@lru_cache(maxsize=None)
-def compiled(law: type[Law]) -> Compiled:
-    """f(T, p, M, *numbers) -> (k, dk/dT, dk/dp, dk/dM), arrays of shape (n_steps,)."""
+@cache
+def compiled(law: Any) -> Compiled:
+    """For a `Law` class: f(T, p, M, *numbers) -> (k, dk/dT, dk/dp, dk/dM), arrays of shape (n_steps,)."""
     import sympy
 
     expression, symbols = formula(law)
@@ -67,8 +67,8 @@ def compiled(law: type[Law]) -> Compiled:
     return function
 
 
-@lru_cache(maxsize=None)
-def depends_on(law: type[Law]) -> frozenset[str]:
-    """Which of "T", "p" and "M" the coefficient of a law depends on."""
+@cache
+def depends_on(law: Any) -> frozenset[str]:
+    """Which of "T", "p" and "M" the coefficient of a `Law` class depends on."""
     expression, symbols = formula(law)
     return frozenset(str(s) for s in symbols[:3] if s in expression.free_symbols)

@@ -5,14 +5,14 @@ from __future__ import annotations
 import numpy as np
 from numpy.polynomial import chebyshev
 
-from meanfree.constants import R, STANDARD_PRESSURE
+from meanfree.constants import STANDARD_PRESSURE, R
 from meanfree.equations.system import Floats, Reverses, Thermal
 
 
 def _scaled(table: Thermal, T: float) -> Floats:
     """x of every series, held within -1 and 1: linear in ln T."""
     x = np.log(T * T / (table.low * table.high)) / np.log(table.high / table.low)
-    return np.clip(x, -1.0, 1.0)
+    return np.asarray(np.clip(x, -1.0, 1.0), float)
 
 
 def _evaluate(series: Floats, x: Floats) -> Floats:
@@ -23,8 +23,9 @@ def _evaluate(series: Floats, x: Floats) -> Floats:
 def heat_capacities(table: Thermal, T: float) -> tuple[Floats, Floats]:
     """Cp [J/mol/K] and dCp/dT [J/mol/K^2] of every gas, shape (n_gases,)."""
     x = _scaled(table, T)
-    slope = _evaluate(chebyshev.chebder(table.cp), x) * 2 / (T * np.log(table.high / table.low))
-    return _evaluate(table.cp, x), slope
+    derivative = np.asarray(chebyshev.chebder(table.cp), float)
+    slope = _evaluate(derivative, x) * 2 / (T * np.log(table.high / table.low))
+    return _evaluate(table.cp, x), np.asarray(slope, float)
 
 
 def enthalpies(table: Thermal, T: float) -> Floats:

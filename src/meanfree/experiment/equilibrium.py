@@ -8,13 +8,13 @@ conserved quantity; pressure and temperature are then found around that.
 from __future__ import annotations
 
 import math
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
 
-from meanfree.constants import R, STANDARD_PRESSURE
+from meanfree.constants import STANDARD_PRESSURE, R
 from meanfree.errors import ComputationError
 from meanfree.experiment.experiment import Experiment
 from meanfree.experiment.mechanism import GivenEquilibrium, Step
@@ -29,7 +29,10 @@ CYCLE = 1e-6
 
 @dataclass(frozen=True)
 class Equilibrium:
-    """The vessel at rest: ``moles`` by gas [mol], ``temperature`` [K], ``volume`` [m^3], ``pressure`` [Pa]."""
+    """The vessel at rest.
+
+    ``moles`` by gas [mol], ``temperature`` [K], ``volume`` [m^3], ``pressure`` [Pa].
+    """
 
     moles: dict[str, float]
     temperature: float
@@ -37,7 +40,7 @@ class Equilibrium:
     pressure: float
 
 
-def ln_K(step: Step, gas_named: dict[str, Gas] | object, T: float) -> float:
+def ln_K(step: Step, gas_named: Mapping[str, Gas], T: float) -> float:
     """ln K of a reversible step at T [K], standard state 1 bar.
 
     Raises
@@ -51,7 +54,7 @@ def ln_K(step: Step, gas_named: dict[str, Gas] | object, T: float) -> float:
         return _given_ln_K(step, step.reverse, T)
     gibbs = 0.0
     for name, number in step.net.items():
-        thermochemistry = gas_named[name].thermochemistry  # type: ignore[index]
+        thermochemistry = gas_named[name].thermochemistry
         if thermochemistry is None:
             raise ValueError(f"{name} has no thermochemistry")
         gibbs += number * float(thermochemistry.gibbs(T))
@@ -158,9 +161,8 @@ def _at_temperature(experiment: Experiment, T: float) -> Equilibrium:
         spread = math.exp(brentq(excess, middle - 3, middle + 3, xtol=1e-15, rtol=1e-15))
         c = problem.solve(start / spread)
         volume = spread - experiment.dead_capacity * T
-    moles = dict(experiment.moles) | {
-        name: float(value * spread) for name, value in zip(names, c)
-    }
+    at_rest = {name: float(value * spread) for name, value in zip(names, c, strict=True)}
+    moles = dict(experiment.moles) | at_rest
     return Equilibrium(moles, T, volume, float(c.sum()) * R * T)
 
 
@@ -188,7 +190,8 @@ class _Concentrations:
         mismatch = float(np.max(np.abs(net @ self.g + lnKc)))
         if mismatch > CYCLE:
             raise ComputationError(
-                f"equilibrium constants around a cycle contradict each other by {mismatch:.1e} in ln K"
+                "equilibrium constants around a cycle contradict each other "
+                f"by {mismatch:.1e} in ln K"
             )
         self.conserved = null_space(net).T
 

@@ -87,7 +87,9 @@ def _impossible(known: Input, value: float) -> Iterator[Problem]:
     low_enough = value > known.low if above_zero and ".gases." not in known.address else True
     if not (known.low <= value <= known.high) or not low_enough:
         bound = "above" if above_zero else "at least"
-        limit = f"{bound} {known.low:g}" + (f", at most {known.high:g}" if known.high < 1e300 else "")
+        limit = f"{bound} {known.low:g}" + (
+            f", at most {known.high:g}" if known.high < 1e300 else ""
+        )
         yield Problem(known.address, f"{value:g} {known.unit}".strip(), f"a number {limit}")
 
 

@@ -40,7 +40,7 @@ class Shape:
         if self.form == "cylinder":
             assert self.length is not None
             return math.sqrt(4 * volume / (math.pi * self.length.value))
-        return (6 * volume / math.pi) ** (1 / 3)
+        return math.cbrt(6 * volume / math.pi)
 
 
 @dataclass(frozen=True)

@@ -39,7 +39,9 @@ class Invariants:
     failures: tuple[str, ...] = ()
 
 
-def check(experiment: Experiment, system: System, trajectory: Trajectory, rtol: float) -> Invariants:
+def check(
+    experiment: Experiment, system: System, trajectory: Trajectory, rtol: float
+) -> Invariants:
     """Check a trajectory at every accepted step."""
     states = [np.column_stack(stretch.states) for stretch in trajectory.stretches]
     failures: list[str] = []
@@ -52,8 +54,10 @@ def check(experiment: Experiment, system: System, trajectory: Trajectory, rtol: 
     most = np.max([part[: system.n_gases].max(axis=1) for part in states], axis=0)
     least = np.min([part[: system.n_gases].min(axis=1) for part in states], axis=0)
     allowed = NEGATIVE * (rtol * most + 1e-16 * system.total_concentration)
-    for i in np.flatnonzero(least < -allowed):
-        failures.append(f"{system.gases[i]} went negative, to {least[i]:.1e} mol/m^3")
+    failures.extend(
+        f"{system.gases[i]} went negative, to {least[i]:.1e} mol/m^3"
+        for i in np.flatnonzero(least < -allowed)
+    )
     energy = _energy(system, trajectory.stretches, states)
     if energy is not None and not energy <= 1e3 * rtol:
         failures.append(f"energy drifted by {energy:.1e}")
@@ -79,7 +83,7 @@ def _elements(
     scale = np.abs(table) @ system.initial_x
     drift = np.zeros(len(names))
     taken, before = np.zeros(len(names)), system.initial_x
-    for stretch, part in zip(stretches, states):
+    for stretch, part in zip(stretches, states, strict=True):
         taken = taken + table @ (before * (1 - stretch.segment.retained))
         ledger = brought @ part[n : n + opened]
         there = table @ part[:n]
@@ -88,7 +92,7 @@ def _elements(
         drift = np.maximum(drift, np.abs(change).max(axis=1))
         before = part[:n, -1]
     ratio = np.divide(drift, scale, out=np.zeros_like(drift), where=scale > 0)
-    return {name: float(value) for name, value in zip(names, ratio)}
+    return {name: float(value) for name, value in zip(names, ratio, strict=True)}
 
 
 def composition(experiment: Experiment) -> tuple[list[str], Floats]:
@@ -112,9 +116,7 @@ def composition(experiment: Experiment) -> tuple[list[str], Floats]:
     return [*names, *(["charge"] if charged else [])], table if charged else table[:-1]
 
 
-def _energy(
-    system: System, stretches: tuple[Stretch, ...], states: list[Floats]
-) -> float | None:
+def _energy(system: System, stretches: tuple[Stretch, ...], states: list[Floats]) -> float | None:
     """Drift of internal energy (rigid) or enthalpy (piston), over the heat that was turned over.
 
     None unless the energies of the gases alone decide: stated heats, light and open steps bring

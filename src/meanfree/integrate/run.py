@@ -84,7 +84,7 @@ class Run:
         """Temperature of the gas [K]."""
         times = np.atleast_1d(np.asarray(t, float))
         if self.system.temperature_varies:
-            return self.state(times)[self.system.temperature_index]
+            return np.asarray(self.state(times)[self.system.temperature_index])
         segments = [s.segment for s in self.trajectory.stretches]
         where = self.trajectory.stretch_of(times)
         start = np.array([s.start for s in segments])[where]
@@ -95,7 +95,7 @@ class Run:
         """V/V(0)."""
         times = np.atleast_1d(np.asarray(t, float))
         if self.system.volume_varies:
-            return self.state(times)[self.system.volume_index]
+            return np.asarray(self.state(times)[self.system.volume_index])
         return np.ones(len(times))
 
     def volume(self, t: ArrayLike) -> Floats:
@@ -149,7 +149,7 @@ class Run:
     def consumed(self) -> tuple[str, ...]:
         """Filled gases that some step consumes, in order."""
         net = self.system.net
-        losing = {int(i) for i, n in zip(net.column, net.value) if n < 0}
+        losing = {int(i) for i, n in zip(net.column, net.value, strict=True) if n < 0}
         return tuple(
             gas
             for i, gas in enumerate(self.system.gases)
@@ -158,9 +158,7 @@ class Run:
 
     def reaction_time(self, gas: str, conversion: float) -> float | None:
         """First time [s] at which a filled gas reaches a conversion; None if it does not."""
-        return first_crossing(
-            self.trajectory, lambda t: self.remaining(gas, t), 1.0 - conversion
-        )
+        return first_crossing(self.trajectory, lambda t: self.remaining(gas, t), 1.0 - conversion)
 
     def half_lives(self, gas: str) -> list[HalfLife]:
         """Successive half-lives of a filled gas; the last entry is the one not finished."""

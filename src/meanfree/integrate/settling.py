@@ -36,6 +36,7 @@ class Settling:
         self.goal = 1.0 - CONVERTED
 
     def __call__(self, t: float, y: Floats, last_segment: bool) -> bool:
+        """True when the run is done; ``reason`` then says why."""
         self.times.append(t)
         self.states.append(y)
         np.maximum(self.most, np.abs(y), out=self.most)
@@ -64,4 +65,4 @@ class Settling:
         since = np.array(self.states[begin:])[:, kept]
         most = self.most[kept]
         change = np.abs(since - y[kept]).max(axis=0)
-        return np.divide(change, most, out=np.zeros_like(change), where=most > 0)
+        return np.asarray(change / np.where(most > 0, most, 1.0), float)

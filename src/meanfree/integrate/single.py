@@ -85,9 +85,7 @@ def _open_ended(
     return replace(stepped, trajectory=trajectory.cut(end)), status, rest
 
 
-def _way_to_rest(
-    system: System, stepped: Stepped, rest: Floats, place: int | None
-) -> float | None:
+def _way_to_rest(system: System, stepped: Stepped, rest: Floats, place: int | None) -> float | None:
     """When 99.9 % of the way to rest is done, of the watched gas or of all that moves."""
     trajectory, left = stepped.trajectory, 1 - CONVERTED
     start = system.initial_x
@@ -97,10 +95,11 @@ def _way_to_rest(
         moving = [int(i) for i in np.flatnonzero(far > 1e-6 * max(far.max(), 1e-300))]
     times = []
     for i in moving:
-        way = abs(start[i] - rest[i])
-        time = last_crossing(
-            trajectory, lambda t, i=i: np.abs(trajectory(t)[i] - rest[i]), left * way
-        )
+
+        def far_from_rest(t: Floats, i: int = i) -> Floats:
+            return np.asarray(np.abs(trajectory(t)[i] - rest[i]))
+
+        time = last_crossing(trajectory, far_from_rest, left * abs(start[i] - rest[i]))
         if time is not None:
             times.append(time)
     return max(times, default=None)

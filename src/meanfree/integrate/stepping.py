@@ -33,8 +33,13 @@ class Equations(Protocol):
 
     system: System
 
-    def derivative(self, t: float, y: Floats, segment: Segment) -> Floats: ...
-    def jacobian(self, t: float, y: Floats, segment: Segment) -> Any: ...
+    def derivative(self, t: float, y: Floats, segment: Segment) -> Floats:
+        """dy/dt [shape (size,)]."""
+        ...
+
+    def jacobian(self, t: float, y: Floats, segment: Segment) -> Any:
+        """d(dy/dt)/dy, dense or sparse [shape (size, size)]."""
+        ...
 
 
 @dataclass

@@ -62,6 +62,7 @@ class Trajectory:
         return np.unique(np.concatenate([s.times for s in self.stretches]))
 
     def __call__(self, t: ArrayLike, after_break: bool = False) -> Floats:
+        """States at times between 0 and the end [s]; ValueError outside."""
         asked = np.atleast_1d(np.asarray(t, float))
         if np.any(asked < 0) or np.any(asked > self.end):
             raise ValueError(f"times must lie between 0 and {self.end:g} s")

@@ -9,6 +9,9 @@ from typing import Any, ClassVar
 from meanfree.rates.law import Functions, Law, StepContext
 from meanfree.sourced import Sourced
 
+NO_POWER = Sourced(0.0, default=True)
+ONE_KELVIN = Sourced(1.0, "K", dimension="temperature", default=True)
+
 
 @dataclass(frozen=True)
 class Arrhenius(Law):
@@ -23,8 +26,8 @@ class Arrhenius(Law):
 
     A: Sourced
     Ea: Sourced
-    n: Sourced = Sourced(0.0, default=True)
-    T_ref: Sourced = Sourced(1.0, "K", default=True)
+    n: Sourced = NO_POWER
+    T_ref: Sourced = ONE_KELVIN
     word: ClassVar[str] = "arrhenius"
     slots: ClassVar[tuple[str, ...]] = ("A", "n", "T_ref", "E")
     counted: ClassVar[str] = "A"

@@ -58,7 +58,8 @@ class Collision(Law):
         if self.diameter is not None:
             return self.diameter.value
         first, second = (gas.diameter for gas in context.partners)
-        assert first is not None and second is not None, "the loader asks for both diameters"
+        assert first is not None, "the loader asks for both diameters"
+        assert second is not None, "the loader asks for both diameters"
         return 0.5 * (first.value + second.value)
 
     def threshold_energy(self, context: StepContext) -> float:
@@ -90,5 +91,6 @@ class Collision(Law):
 def reduced_mass(context: StepContext) -> float:
     """mu = m_A m_B / (m_A + m_B) of a step's two partners [kg]."""
     first, second = (gas.molar_mass for gas in context.partners)
-    assert first is not None and second is not None, "the loader asks for both masses"
+    assert first is not None, "the loader asks for both masses"
+    assert second is not None, "the loader asks for both masses"
     return first.value * second.value / (first.value + second.value) / N_A
