@@ -7,12 +7,14 @@ coefficient is constant during a run never comes here, so short runs need no sym
 from __future__ import annotations
 
 from collections.abc import Callable
-from functools import cache
 from typing import Any
 
 from meanfree.rates.law import Law
 
 Compiled = Callable[..., tuple[Any, Any, Any, Any]]
+
+_COMPILED: dict[type[Law], Compiled] = {}
+_DEPENDS: dict[type[Law], frozenset[str]] = {}
 
 
 class Symbols:
@@ -55,20 +57,24 @@ def formula(law: type[Law], n_slots: int | None = None, readable: bool = False) 
     return law.coefficient(Symbols(readable), T, p, M, slots), (T, p, M, *slots)
 
 
-@cache
-def compiled(law: Any) -> Compiled:
-    """For a `Law` class: f(T, p, M, *numbers) -> (k, dk/dT, dk/dp, dk/dM), arrays of shape (n_steps,)."""
-    import sympy
+def compiled(law: type[Law]) -> Compiled:
+    """The compiled template of a law.
 
-    expression, symbols = formula(law)
-    T, p, M = symbols[:3]
-    parts = [expression, *(sympy.diff(expression, symbol) for symbol in (T, p, M))]
-    function: Compiled = sympy.lambdify(symbols, parts, modules="numpy", cse=True)
-    return function
+    f(T, p, M, *numbers) -> (k, dk/dT, dk/dp, dk/dM), arrays of shape (n_steps,).
+    """
+    if law not in _COMPILED:
+        import sympy
+
+        expression, symbols = formula(law)
+        T, p, M = symbols[:3]
+        parts = [expression, *(sympy.diff(expression, symbol) for symbol in (T, p, M))]
+        _COMPILED[law] = sympy.lambdify(symbols, parts, modules="numpy", cse=True)
+    return _COMPILED[law]
 
 
-@cache
-def depends_on(law: Any) -> frozenset[str]:
-    """Which of "T", "p" and "M" the coefficient of a `Law` class depends on."""
-    expression, symbols = formula(law)
-    return frozenset(str(s) for s in symbols[:3] if s in expression.free_symbols)
+def depends_on(law: type[Law]) -> frozenset[str]:
+    """Which of "T", "p" and "M" the coefficient of a law depends on."""
+    if law not in _DEPENDS:
+        expression, symbols = formula(law)
+        _DEPENDS[law] = frozenset(str(s) for s in symbols[:3] if s in expression.free_symbols)
+    return _DEPENDS[law]
