@@ -21,7 +21,7 @@ from meanfree.equations.system import (
 from meanfree.experiment.experiment import Experiment
 from meanfree.experiment.mechanism import GivenEquilibrium, Step
 from meanfree.experiment.temperature import Exchange, Program, has_energy_balance
-from meanfree.rates.law import Law
+from meanfree.rates.law import StepContext, Template
 
 REVERSE_SUFFIX = " (reverse)"
 
@@ -125,20 +125,23 @@ def _baths(ways: Sequence[Way], place: dict[str, int]) -> tuple[np.ndarray, Rows
 
 
 def _law_blocks(experiment: Experiment, ways: Sequence[Way]) -> tuple[LawBlock, ...]:
-    by_law: dict[type[Law], list[int]] = {}
+    """Steps grouped by the formula of their law, with the numbers each formula takes."""
+    groups: dict[Template, list[tuple[int, Step, StepContext]]] = {}
     for j, (_, step, back) in enumerate(ways):
         if not back:
-            by_law.setdefault(type(step.law), []).append(j)
+            context = experiment.context(step)
+            template = step.law.template(context)
+            groups.setdefault(template, []).append((j, step, context))
     return tuple(
         LawBlock(
-            law,
-            np.array(rows, np.intp),
-            np.array([ways[j][1].law.numbers(experiment.context(ways[j][1])) for j in rows])
-            .reshape(len(rows), len(law.slots))
+            template,
+            np.array([j for j, _, _ in group], np.intp),
+            np.array([step.law.numbers(context) for _, step, context in group])
+            .reshape(len(group), len(template.slots))
             .T.copy(),
-            tuple(f"steps.{ways[j][1].name}" for j in rows),
+            tuple(f"steps.{step.name}" for _, step, _ in group),
         )
-        for law, rows in by_law.items()
+        for template, group in groups.items()
     )
 
 

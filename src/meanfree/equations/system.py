@@ -18,7 +18,7 @@ from typing import Literal
 import numpy as np
 from numpy.typing import NDArray
 
-from meanfree.rates.law import Law
+from meanfree.rates.law import Template
 
 Floats = NDArray[np.float64]
 Integers = NDArray[np.intp]
@@ -57,12 +57,12 @@ class Rows:
 
 @dataclass(frozen=True)
 class LawBlock:
-    """The steps of one law: ``numbers`` [SI, shape (n_slots, n)] for ``steps`` [shape (n,)].
+    """The steps of one law that share a formula: ``numbers`` [SI, shape (n_slots, n)] for ``steps`` [shape (n,)].
 
     ``addresses[i]`` is the prefix under which the inputs of step ``steps[i]`` are found.
     """
 
-    law: type[Law]
+    law: Template
     steps: Integers
     numbers: Floats
     addresses: tuple[str, ...]

@@ -9,12 +9,12 @@ from __future__ import annotations
 from collections.abc import Callable
 from typing import Any
 
-from meanfree.rates.law import Law
+from meanfree.rates.law import Template
 
 Compiled = Callable[..., tuple[Any, Any, Any, Any]]
 
-_COMPILED: dict[type[Law], Compiled] = {}
-_DEPENDS: dict[type[Law], frozenset[str]] = {}
+_COMPILED: dict[Template, Compiled] = {}
+_DEPENDS: dict[Template, frozenset[str]] = {}
 
 
 class Symbols:
@@ -36,6 +36,10 @@ class Symbols:
         """Decimal logarithm."""
         return self._sympy.log(x) / self._sympy.log(10)
 
+    def below(self, x: Any, limit: Any, then: Any, otherwise: Any) -> Any:
+        """``then`` where x < limit, else ``otherwise``."""
+        return self._sympy.Piecewise((then, x < limit), (otherwise, True))
+
     def piecewise_linear(self, x: Any, xs: Any, ys: Any) -> Any:
         """Linear between the points, the outer pieces continued beyond them."""
         pieces = []
@@ -45,7 +49,7 @@ class Symbols:
         return self._sympy.Piecewise(*pieces)
 
 
-def formula(law: type[Law], n_slots: int | None = None, readable: bool = False) -> tuple[Any, Any]:
+def formula(law: Template, n_slots: int | None = None, readable: bool = False) -> tuple[Any, Any]:
     """(expression, symbols) of a law's template.
 
     The symbols are T, p, M and then one for each of the law's slots.
@@ -57,7 +61,7 @@ def formula(law: type[Law], n_slots: int | None = None, readable: bool = False) 
     return law.coefficient(Symbols(readable), T, p, M, slots), (T, p, M, *slots)
 
 
-def compiled(law: type[Law]) -> Compiled:
+def compiled(law: Template) -> Compiled:
     """The compiled template of a law.
 
     f(T, p, M, *numbers) -> (k, dk/dT, dk/dp, dk/dM), arrays of shape (n_steps,).
@@ -72,7 +76,7 @@ def compiled(law: type[Law]) -> Compiled:
     return _COMPILED[law]
 
 
-def depends_on(law: type[Law]) -> frozenset[str]:
+def depends_on(law: Template) -> frozenset[str]:
     """Which of "T", "p" and "M" the coefficient of a law depends on."""
     if law not in _DEPENDS:
         expression, symbols = formula(law)

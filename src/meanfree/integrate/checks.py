@@ -12,6 +12,7 @@ import numpy as np
 
 from meanfree.constants import R
 from meanfree.equations import thermal
+from meanfree.equations.closed_forms import recognise
 from meanfree.equations.system import Floats, System
 from meanfree.experiment.experiment import Experiment
 from meanfree.integrate.trajectory import Stretch, Trajectory
@@ -29,6 +30,8 @@ class Invariants:
 
     ``elements`` names each element (or "charge") with its largest relative drift; ``energy`` and
     ``volume`` are relative; ``most_negative`` is over the total initial concentration.
+    ``closed_form`` names the integrated rate law that the run obeys exactly, where there is one;
+    ``closed_form_difference`` is the largest difference from it, over the most of that gas.
     ``failures`` says in words what went beyond its bound.
     """
 
@@ -36,6 +39,8 @@ class Invariants:
     energy: float | None
     volume: float | None
     most_negative: float
+    closed_form: str = ""
+    closed_form_difference: float | None = None
     failures: tuple[str, ...] = ()
 
 
@@ -64,8 +69,21 @@ def check(
     volume = _volume(system, states)
     if volume is not None and not volume <= 1e3 * rtol:
         failures.append(f"the volume left the equation of state by {volume:.1e}")
+    form, difference = _closed_form(system, trajectory)
+    if difference is not None and not difference <= 1e3 * rtol:
+        failures.append(f"the integrated rate law ({form}) was left by {difference:.1e}")
     negative = float(max(0.0, -least.min(initial=0.0))) / system.total_concentration
-    return Invariants(elements, energy, volume, negative, tuple(failures))
+    return Invariants(elements, energy, volume, negative, form, difference, tuple(failures))
+
+
+def _closed_form(system: System, trajectory: Trajectory) -> tuple[str, float | None]:
+    """Name of the integrated rate law and how far the run left it; "" and None without one."""
+    form = recognise(system)
+    if form is None:
+        return "", None
+    t = trajectory.times
+    ours = trajectory(t)[system.gases.index(form.gas)]
+    return form.name, float(np.max(np.abs(ours - form.amount(t))) / np.max(np.abs(ours)))
 
 
 def _elements(
