@@ -126,7 +126,7 @@ def test_simulation_conserves_energy_and_misses_no_collision(counted: Any) -> No
     # Rounding alone: some 1e6 bounces of 1e-16 each; a missed collision would show as a contact
     # at a wrong distance of the order of a diameter.
     assert np.ptp(counted.energies) < 1e-11 * counted.energies[0]
-    assert counted.energies[0] == pytest.approx(0.5 * counted.freedom, rel=1e-12)
+    assert counted.energies[0] == pytest.approx(0.5 * counted.freedom, rel=1e-12, abs=0.0)
     assert counted.worst_contact < 1e-10
 
 
@@ -230,6 +230,6 @@ def test_contact_values_of_mixtures_reduce_to_one_kind() -> None:
         spheres = shares * filled / (math.pi / 6 * 1.3**3)
         discs = shares * filled / (math.pi / 4 * 1.3**2)
         single = (1 - filled / 2) / (1 - filled) ** 3
-        assert _contact_spheres(spheres, sizes, 0, 1) == pytest.approx(single, rel=1e-14)
+        assert _contact_spheres(spheres, sizes, 0, 1) == pytest.approx(single, rel=1e-14, abs=0.0)
         single = (1 - 7 * filled / 16) / (1 - filled) ** 2
-        assert _contact_discs(discs, sizes, 0, 1) == pytest.approx(single, rel=1e-14)
+        assert _contact_discs(discs, sizes, 0, 1) == pytest.approx(single, rel=1e-14, abs=0.0)

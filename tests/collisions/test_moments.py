@@ -31,10 +31,10 @@ def _moment(power: int) -> float:
 
 
 def test_speed_density_integrates_to_one_and_gives_the_mean_speeds() -> None:
-    assert _moment(0) == pytest.approx(1.0, rel=RTOL)
-    assert _moment(1) == pytest.approx(speeds.mean_speed(MASS, KELVIN), rel=RTOL)
+    assert _moment(0) == pytest.approx(1.0, rel=RTOL, abs=0.0)
+    assert _moment(1) == pytest.approx(speeds.mean_speed(MASS, KELVIN), rel=RTOL, abs=0.0)
     root = math.sqrt(_moment(2))
-    assert root == pytest.approx(speeds.root_mean_square_speed(MASS, KELVIN), rel=RTOL)
+    assert root == pytest.approx(speeds.root_mean_square_speed(MASS, KELVIN), rel=RTOL, abs=0.0)
 
 
 def test_speed_density_is_highest_at_the_most_probable_speed() -> None:
@@ -51,7 +51,7 @@ def test_speed_density_equals_three_gaussian_components() -> None:
     v = 500.0
     one = math.sqrt(MASS / (2.0 * math.pi * R * KELVIN))
     product = one**3 * math.exp(-MASS * v**2 / (2.0 * R * KELVIN)) * 4.0 * math.pi * v**2
-    assert speeds.speed_density(v, MASS, KELVIN) == pytest.approx(product, rel=1e-14)
+    assert speeds.speed_density(v, MASS, KELVIN) == pytest.approx(product, rel=1e-14, abs=0.0)
 
 
 def test_speeds_in_a_plane_are_the_moments_of_two_components() -> None:
@@ -63,13 +63,13 @@ def test_speeds_in_a_plane_are_the_moments_of_two_components() -> None:
         )
         return float(value)
 
-    assert plane.mean_speed(MASS, KELVIN) == pytest.approx(moment(1), rel=RTOL)
+    assert plane.mean_speed(MASS, KELVIN) == pytest.approx(moment(1), rel=RTOL, abs=0.0)
     assert plane.root_mean_square_speed(MASS, KELVIN) == pytest.approx(
-        math.sqrt(moment(2)), rel=RTOL
+        math.sqrt(moment(2)), rel=RTOL, abs=0.0
     )
     # d/dv of v exp(-v^2 / 2 a^2) vanishes at v = a
     assert plane.most_probable_speed(MASS, KELVIN) == pytest.approx(
-        math.sqrt(R * KELVIN / MASS), rel=1e-14
+        math.sqrt(R * KELVIN / MASS), rel=1e-14, abs=0.0
     )
 
 
@@ -118,7 +118,7 @@ def test_thermal_mean_of_the_reactive_cross_section_is_the_rate_constant() -> No
     )
     ceiling = encounters.collision_rate_constant(sigma, relative, like=False)
     assert line_of_centres.rate_constant(ceiling, threshold, KELVIN) == pytest.approx(
-        N_A * relative * mean, rel=RTOL
+        N_A * relative * mean, rel=RTOL, abs=0.0
     )
 
 
@@ -137,7 +137,7 @@ def test_thermal_mean_of_the_reactive_width_is_the_rate_constant_in_a_plane() ->
     relative = plane.mean_relative_speed(0.028, 0.044, KELVIN)
     ceiling = plane.collision_rate_constant(width, relative, like=False)
     assert line_of_centres.rate_constant(ceiling, threshold, KELVIN) == pytest.approx(
-        N_A * mean, rel=RTOL
+        N_A * mean, rel=RTOL, abs=0.0
     )
 
 
@@ -154,7 +154,7 @@ def test_activation_energy_is_the_slope_of_the_rate_constant(
     slope = (log_k(KELVIN + step) - log_k(KELVIN - step)) / (2.0 * step)
     # The central difference is right to (step/T)^2 and to rounding over step, 1e-16 * 20 / 2e-5.
     assert R * KELVIN**2 * slope == pytest.approx(
-        line_of_centres.activation_energy(threshold, KELVIN), rel=1e-8
+        line_of_centres.activation_energy(threshold, KELVIN), rel=1e-8, abs=0.0
     )
 
 
@@ -179,18 +179,18 @@ def test_impingement_is_the_mean_of_the_normal_velocity() -> None:
         lambda x: x * unit * math.exp(-0.5 * x * x) / math.sqrt(2.0 * math.pi), 0.0, 12.0
     )
     ours = walls.impingement_flux(concentration, speeds.mean_speed(MASS, KELVIN))
-    assert ours == pytest.approx(concentration * flux, rel=RTOL)
+    assert ours == pytest.approx(concentration * flux, rel=RTOL, abs=0.0)
     pressure = concentration * R * KELVIN
     leak = float(walls.effusion_rate(pressure, MASS, KELVIN, area))
-    assert leak == pytest.approx(concentration * flux * area, rel=RTOL)
+    assert leak == pytest.approx(concentration * flux * area, rel=RTOL, abs=0.0)
     half = walls.effusion_rate(pressure, MASS, KELVIN, area, transmission=0.5)
-    assert half == pytest.approx(0.5 * leak, rel=1e-15)
+    assert half == pytest.approx(0.5 * leak, rel=1e-15, abs=0.0)
     inwards = walls.effusion_rate(-pressure, MASS, KELVIN, area)
-    assert inwards == pytest.approx(-leak, rel=1e-15)
+    assert inwards == pytest.approx(-leak, rel=1e-15, abs=0.0)
     # amount over flow is the time constant of dn/dt = -n / tau
     volume = 1.7e-3
     tau = walls.effusion_time_constant(volume, area, speeds.mean_speed(MASS, KELVIN))
-    assert tau == pytest.approx(concentration * volume / leak, rel=1e-14)
+    assert tau == pytest.approx(concentration * volume / leak, rel=1e-14, abs=0.0)
 
 
 def test_graham_effusion_of_uranium_hexafluorides() -> None:
@@ -227,9 +227,9 @@ def test_a_light_trace_among_heavy_molecules_flies_further_than_sqrt_two_says() 
     masses, sizes = np.array([1e-6, 0.131]), np.array([2e-10, 4e-10])
     path = mixtures.mixture_mean_free_paths(masses, sizes, np.array([0.0, 40.0]))
     standing = 1.0 / (40.0 * N_A * math.pi * (3e-10) ** 2)
-    assert path[0] == pytest.approx(standing, rel=1e-5)  # m_i / m_j / 2 = 4e-6
+    assert path[0] == pytest.approx(standing, rel=1e-5, abs=0.0)  # m_i / m_j / 2 = 4e-6
     assert path[1] == pytest.approx(
-        float(encounters.mean_free_path(math.pi * 16e-20, 40.0)), rel=1e-14
+        float(encounters.mean_free_path(math.pi * 16e-20, 40.0)), rel=1e-14, abs=0.0
     )
     heavy = mixtures.mixture_mean_free_paths(masses, sizes, np.array([40.0, 0.0]))
-    assert heavy[1] == pytest.approx(standing / math.sqrt(1.0 + 0.131e6), rel=1e-12)
+    assert heavy[1] == pytest.approx(standing / math.sqrt(1.0 + 0.131e6), rel=1e-12, abs=0.0)

@@ -62,6 +62,16 @@ def finite(name: str, value: Numbers, unit: str) -> NDArray[np.float64]:
     return array
 
 
+def one_temperature(value: float) -> float:
+    """A single temperature [K], finite and above zero; else ValueError."""
+    kelvin = positive("temperature", value, "K")
+    if kelvin.ndim:
+        raise ValueError(
+            f"temperature: found an array of shape {kelvin.shape}; expected one number [K]"
+        )
+    return float(kelvin)
+
+
 def plain(result: NDArray[np.float64] | np.float64) -> Numbers:
     """A Python float for a single number, else the array.
 

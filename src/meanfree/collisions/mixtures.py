@@ -11,7 +11,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from meanfree import constants
-from meanfree.collisions._checks import not_negative, positive
+from meanfree.collisions._checks import not_negative, one_temperature, positive
 
 Floats = NDArray[np.float64]
 
@@ -51,7 +51,7 @@ def mixture_collision_frequencies(
     """
     sizes, amounts, masses = _checked(molar_masses, diameters, concentrations, "mol/m^3")
     areas = 0.25 * np.pi * (sizes[:, None] + sizes) ** 2
-    kelvin = float(positive("temperature", temperature, "K"))
+    kelvin = one_temperature(temperature)
     return _frequency_matrix(areas, amounts, masses, 8.0 / np.pi * kelvin)
 
 
@@ -113,7 +113,7 @@ def plane_mixture_collision_frequencies(
     ValueError : shapes that do not agree, or a value that no gas can have
     """
     sizes, amounts, masses = _checked(molar_masses, diameters, concentrations, "mol/m^2")
-    kelvin = float(positive("temperature", temperature, "K"))
+    kelvin = one_temperature(temperature)
     widths = sizes[:, None] + sizes
     return _frequency_matrix(widths, amounts, masses, 0.5 * np.pi * kelvin)
 
