@@ -1,0 +1,1 @@
+"""The second pass: what the tables of a case file mean, one module per table."""

@@ -1,0 +1,172 @@
+"""What only the whole case shows: energies, dead space, cycles of constants, absurd rates."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Mapping, Sequence
+
+import numpy as np
+
+from meanfree.case.findings import Findings
+from meanfree.case.meaning.energies import energies_needed, with_energies
+from meanfree.case.meaning.temperature import span
+from meanfree.case.schema.tables import GasTable
+from meanfree.constants import STANDARD_PRESSURE, R
+from meanfree.experiment.experiment import Experiment
+from meanfree.experiment.mechanism import GivenEquilibrium, Step
+from meanfree.experiment.temperature import Temperature, has_energy_balance
+from meanfree.experiment.vessel import Vessel
+from meanfree.gases.gas import Gas
+
+CLOSES = 0.01  # given constants are quoted to three digits or so
+
+
+def check_dead_space(
+    vessel: Vessel | None, temperature: Temperature | None, findings: Findings
+) -> None:
+    """No energy balance of gauge and lines is modelled."""
+    if vessel is None or vessel.dead_space is None or temperature is None:
+        return
+    if has_energy_balance(temperature):
+        findings.wrong(
+            "vessel.dead_space",
+            f'dead space with mode = "{temperature.mode}"',
+            'mode = "isothermal" or "program", or no dead_space: gauge and lines have no energy '
+            "balance here",
+        )
+
+
+def gases_with_energies(
+    gases: Mapping[str, Gas | None],
+    tables: Mapping[str, GasTable],
+    reversible: Mapping[str, list[str]],
+    temperature: Temperature | None,
+    findings: Findings,
+) -> dict[str, Gas | None]:
+    """The gases, each with thermochemistry where the case needs it."""
+    balance = ""
+    if temperature is not None and has_energy_balance(temperature):
+        balance = f'temperature.mode = "{temperature.mode}"'
+    found = dict(gases)
+    for name, needed_by in energies_needed(gases, reversible, balance).items():
+        gas = gases.get(name)
+        if gas is not None:
+            used = None if temperature is None else span(temperature)
+            found[name] = with_energies(gas, tables.get(name), used, needed_by, findings)
+    return found
+
+
+def check_piston(experiment: Experiment, findings: Findings) -> None:
+    """A piston must have room for its gas, and says so where it is brought to another pressure."""
+    vessel = experiment.vessel
+    if vessel.is_rigid:
+        return
+    held, T = experiment.held_pressure, experiment.temperature.initial
+    if experiment.initial_volume <= 0:
+        findings.wrong(
+            "vessel.pressure",
+            f"{held:g} Pa, at which all the gas is in the dead space",
+            "a pressure that leaves gas in the hot part",
+        )
+        return
+    filled = experiment.fill.pressure(vessel, T)
+    if vessel.pressure is not None and abs(filled / held - 1) > 1e-6:
+        findings.note(
+            f"Filled at {filled / 1e5:.4g} bar, the piston is brought to {held / 1e5:.4g} bar at "
+            f"time zero: volume {experiment.initial_volume * 1e3:.4g} L."
+        )
+
+
+def check_rates(experiment: Experiment, findings: Findings) -> None:
+    """Refuse rate constants that a computer cannot hold; note steps that can never run."""
+    for step in experiment.steps:
+        for T in sorted(set(span(experiment.temperature))):
+            with np.errstate(all="ignore"):
+                k = float(step.law.rate_constant(experiment.context(step), T, 1e5, 1.0))
+            if not math.isfinite(k) or k < 0:
+                found = f"numbers that give k = {k:g} at {T:g} K"
+                findings.wrong(f"steps.{step.name}", found, "a finite rate constant")
+    _note_idle(experiment, findings)
+
+
+def _note_idle(experiment: Experiment, findings: Findings) -> None:
+    present = {gas for gas, n in experiment.moles.items() if n > 0}
+    running: set[str] = set()
+    grown = True
+    while grown:
+        grown = False
+        for step in experiment.steps:
+            left, right = ({gas for gas, _ in side} for side in (step.reactants, step.products))
+            back = step.reverse is not None and right <= present
+            if step.name not in running and (left <= present or back):
+                running.add(step.name)
+                present |= left | right
+                grown = True
+    for step in experiment.steps:
+        if step.name not in running:
+            absent = [gas for gas, _ in step.reactants if gas not in present]
+            findings.note(
+                f"steps.{step.name} never runs: nothing fills or forms {', '.join(absent)}."
+            )
+
+
+def check_cycles(
+    steps: Sequence[Step], gases: Mapping[str, Gas], T: float, findings: Findings
+) -> None:
+    """Given constants around a cycle must multiply to 1, or the cycle turns for ever."""
+    reversible = [step for step in steps if step.reverse is not None]
+    if not any(isinstance(step.reverse, GivenEquilibrium) for step in reversible):
+        return
+    names = sorted({gas for step in reversible for gas in step.net})
+    rows: list[tuple[np.ndarray, np.ndarray]] = []
+    for place, step in enumerate(reversible):
+        vector = np.array([step.net.get(gas, 0.0) for gas in names])
+        mix = np.zeros(len(reversible))
+        mix[place] = 1.0
+        for pivot_row, pivot_mix in rows:
+            pivot = int(np.argmax(np.abs(pivot_row)))
+            factor = vector[pivot] / pivot_row[pivot]
+            vector, mix = vector - factor * pivot_row, mix - factor * pivot_mix
+        if np.max(np.abs(vector), initial=0.0) > 1e-9:
+            rows.append((vector, mix))
+        else:
+            _check_cycle(reversible, mix, gases, T, findings)
+
+
+def _check_cycle(
+    steps: Sequence[Step], mix: np.ndarray, gases: Mapping[str, Gas], T: float, findings: Findings
+) -> None:
+    used = [(step, float(m)) for step, m in zip(steps, mix, strict=True) if abs(m) > 1e-9]
+    given = [(step, m) for step, m in used if isinstance(step.reverse, GivenEquilibrium)]
+    if not given:
+        return
+    excess = sum(m * ln_K(step, gases, T) for step, m in used)
+    last, weight = given[-1]
+    if abs(excess) <= CLOSES * max(1.0, *(abs(m) for _, m in used)):
+        return
+    assert isinstance(last.reverse, GivenEquilibrium)
+    around = ", ".join(step.name for step, _ in used)
+    factor = math.exp(max(-700.0, min(700.0, -excess / weight)))
+    findings.wrong(
+        f"steps.{last.name}.reverse.{last.reverse.kind}",
+        f"constants around the cycle {around} that do not multiply to 1 at {T:g} K",
+        f"this one {factor:.4g} times as large, or another of them changed",
+    )
+
+
+def ln_K(step: Step, gases: Mapping[str, Gas], T: float) -> float:
+    """ln K (standard state 1 bar) of a reversible step at ``T`` [K]."""
+    reverse = step.reverse
+    if isinstance(reverse, GivenEquilibrium):
+        at, change = reverse.at.value, step.change_of_moles
+        value = math.log(reverse.constant.value)
+        if reverse.kind == "Kp":
+            value -= change * math.log(STANDARD_PRESSURE)
+        elif reverse.kind == "Kc":
+            value += change * math.log(R * at / STANDARD_PRESSURE)
+        if reverse.enthalpy is not None:
+            value -= reverse.enthalpy.value / R * (1 / T - 1 / at)
+        return value
+    energies = {gas: gases[gas].thermochemistry for gas in step.net}
+    total = sum(n * float(e.gibbs(T)) for gas, n in step.net.items() if (e := energies[gas]))
+    return -total / (R * T)
