@@ -26,7 +26,7 @@ class Portion:
 
 @dataclass(frozen=True)
 class Fill:
-    """The filled gases. ``balance`` names the gas that makes the fractions up to one.
+    """The filled gases. ``balance`` names the gas that makes the others up to ``total``.
 
     ``at`` [K] is the temperature at which pressures, concentrations and number densities were
     read; None: the run's at time zero.
@@ -59,10 +59,15 @@ class Fill:
                 for gas, portion in self.gases.items()
             }
         whole = _moles(self.total.quantity.value, self.total.kind, T, per_pascal)
-        fractions = {gas: portion.quantity.value for gas, portion in self.gases.items()}
+        amounts = {
+            gas: whole * portion.quantity.value
+            if portion.kind == "fraction"
+            else _moles(portion.quantity.value, portion.kind, T, per_pascal)
+            for gas, portion in self.gases.items()
+        }
         if self.balance is not None:
-            fractions[self.balance] = 1.0 - sum(fractions.values())
-        return {gas: whole * fraction for gas, fraction in fractions.items()}
+            amounts[self.balance] = whole - sum(amounts.values())
+        return amounts
 
     def pressure(self, vessel: Vessel, initial: float) -> float:
         """Total pressure at filling [Pa]."""
