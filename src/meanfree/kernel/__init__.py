@@ -1,0 +1,1 @@
+"""The compiled integrator: an adaptive stiff method that runs many conditions at once."""
