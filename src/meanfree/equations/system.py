@@ -57,8 +57,9 @@ class Rows:
 
 @dataclass(frozen=True)
 class LawBlock:
-    """The steps of one law that share a formula: ``numbers`` [SI, shape (n_slots, n)] for ``steps`` [shape (n,)].
+    """The steps of one law that share a formula.
 
+    ``numbers`` [SI, shape (n_slots, n)] for ``steps`` [shape (n,)].
     ``addresses[i]`` is the prefix under which the inputs of step ``steps[i]`` are found.
     """
 

@@ -5,6 +5,7 @@ It is inert and complete: whatever is computed later is computed from this.
 
 from __future__ import annotations
 
+import math
 from collections.abc import Mapping
 from dataclasses import dataclass, field
 from functools import cached_property
@@ -13,7 +14,7 @@ from meanfree.constants import R
 from meanfree.experiment.fill import Fill
 from meanfree.experiment.mechanism import Step
 from meanfree.experiment.plan import RunPlan
-from meanfree.experiment.temperature import Temperature, is_constant
+from meanfree.experiment.temperature import Temperature, is_constant, known_range
 from meanfree.experiment.vessel import Vessel
 from meanfree.gases.gas import Gas
 from meanfree.rates.law import StepContext
@@ -108,4 +109,9 @@ class Experiment:
             surroundings=self.vessel,
             bath={gas: n / total for gas, n in self.moles.items()} if total > 0 else {},
             gases=self.gas_named,
+            reactants=tuple(
+                self.gas_named[name] for name, n in step.reactants for _ in range(math.ceil(n))
+            ),
+            temperatures=known_range(self.temperature),
+            has_bath=step.bath is not None,
         )

@@ -153,7 +153,8 @@ def _walk_temperature(experiment: Experiment, add: Add) -> None:
 
 def _walk_step(step: Step, index: int, add: Add) -> None:
     for key, quantity in step.law.inputs().items():
-        add(f"steps.{step.name}.{key}", ("steps", index, "law", key), quantity)
+        parts = [int(part) if part.isdigit() else part for part in key.split(".")]
+        add(f"steps.{step.name}.{key}", ("steps", index, "law", *parts), quantity)
     for key in ("heat", "photon"):
         add(f"steps.{step.name}.{key}", ("steps", index, key), getattr(step, key))
     if isinstance(step.reverse, GivenEquilibrium):

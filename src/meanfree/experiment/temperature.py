@@ -84,3 +84,11 @@ def is_constant(temperature: Temperature) -> bool:
 def has_energy_balance(temperature: Temperature) -> bool:
     """True where the temperature follows from an energy balance."""
     return isinstance(temperature, Adiabatic | Exchange)
+
+
+def known_range(temperature: Temperature) -> tuple[float, float]:
+    """Lowest and highest temperature known before the run [K]."""
+    if isinstance(temperature, Program):
+        values = [T.value for _, T in temperature.points]
+        return min(values), max(values)
+    return temperature.initial, temperature.initial

@@ -7,13 +7,15 @@ evaluated with numpy and read by sympy, so formulas cannot drift from numbers.
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, fields
+from collections.abc import Iterator, Mapping, Sequence
+from dataclasses import dataclass, fields, is_dataclass
+from itertools import pairwise
 from typing import Any, ClassVar, Protocol
 
 import numpy as np
 
 from meanfree import constants
+from meanfree.errors import Problem
 from meanfree.gases.gas import Gas
 from meanfree.sourced import Sourced
 
@@ -21,7 +23,8 @@ from meanfree.sourced import Sourced
 class Functions(Protocol):
     """The functions and constants a formula may use; numpy's or sympy's.
 
-    ``exp``, ``log``, ``log10``, ``sqrt`` take one argument. ``R`` [J/mol/K], ``k_B``
+    ``exp``, ``log``, ``log10``, ``sqrt`` take one argument. ``below`` is its third argument
+    where x < limit, else its fourth; both are evaluated. ``R`` [J/mol/K], ``k_B``
     [J/K], ``N_A`` [1/mol] and ``pi`` are numbers, or symbols where the formula is
     to be read rather than evaluated.
     """
@@ -35,7 +38,8 @@ class Functions(Protocol):
     def log(self, x: Any, /) -> Any: ...
     def log10(self, x: Any, /) -> Any: ...
     def sqrt(self, x: Any, /) -> Any: ...
-    def piecewise_linear(self, x: Any, xs: Sequence[float], ys: Sequence[float], /) -> Any: ...
+    def below(self, x: Any, limit: Any, then: Any, otherwise: Any, /) -> Any: ...
+    def piecewise_linear(self, x: Any, xs: Sequence[Any], ys: Sequence[Any], /) -> Any: ...
 
 
 class Numbers:
@@ -51,12 +55,21 @@ class Numbers:
     sqrt = staticmethod(np.sqrt)
 
     @staticmethod
-    def piecewise_linear(x: Any, xs: Sequence[float], ys: Sequence[float]) -> Any:
-        """Linear between the points, the outer pieces continued beyond them."""
-        grid, values = np.asarray(xs, float), np.asarray(ys, float)
-        piece = np.clip(np.searchsorted(grid, x) - 1, 0, len(grid) - 2)
-        slope = (values[piece + 1] - values[piece]) / (grid[piece + 1] - grid[piece])
-        return values[piece] + slope * (np.asarray(x) - grid[piece])
+    def below(x: Any, limit: Any, then: Any, otherwise: Any) -> Any:
+        """``then`` where x < limit, else ``otherwise``."""
+        return np.where(x < limit, then, otherwise)
+
+    @staticmethod
+    def piecewise_linear(x: Any, xs: Sequence[Any], ys: Sequence[Any]) -> Any:
+        """Linear between the points, the outer pieces continued beyond them.
+
+        Every point may be a number or an array that broadcasts with x: one entry a step.
+        """
+        value = None
+        for (x0, x1), (y0, y1) in zip(pairwise(xs), pairwise(ys), strict=True):
+            piece = y0 + (y1 - y0) / (x1 - x0) * (x - x0)
+            value = piece if value is None else np.where(x < x0, value, piece)
+        return value
 
 
 NUMBERS = Numbers()
@@ -77,6 +90,8 @@ class StepContext:
     (``2 NOCl`` gives two of them), empty where the step has orders of its own.
     ``order`` is the overall order without the bath gas M. ``temperature`` [K] is the run's where
     it is constant, else None. ``bath`` maps each gas to its initial mole fraction.
+    ``reactants`` are the molecules of the left side, repeated as written. ``temperatures`` [K] are
+    the lowest and the highest that are known before the run.
     """
 
     partners: tuple[Gas, ...]
@@ -86,6 +101,25 @@ class StepContext:
     surroundings: Surroundings | None = None
     bath: Mapping[str, float] | None = None
     gases: Mapping[str, Gas] | None = None
+    reactants: tuple[Gas, ...] = ()
+    temperatures: tuple[float, float] | None = None
+    has_bath: bool = False
+
+
+class Template(Protocol):
+    """A formula and the names of the numbers it takes: what equations see of a law.
+
+    A law with one formula for all its steps is its own template. One whose formula varies
+    (with the number of points of a table, say) gives a frozen object for each variant; equal
+    templates are differentiated and compiled once. Hashable.
+    """
+
+    word: str
+    slots: tuple[str, ...]
+
+    def coefficient(
+        self, fn: Functions, T: Any, p: Any, M: Any, numbers: Sequence[Any], /
+    ) -> Any: ...
 
 
 class Law:
@@ -119,11 +153,45 @@ class Law:
         """The slots' values for one step [SI, shape (n_slots,)]."""
         raise NotImplementedError
 
+    def template(self, context: StepContext) -> Template:
+        """The formula of this law for this step."""
+        return type(self)
+
+    def problems(self, context: StepContext) -> Iterator[Problem]:
+        """What makes this law impossible for this step; keys as in the step's table."""
+        if self.pair_needed and len(context.partners) != 2:
+            found = " + ".join(gas.name for gas in context.reactants) or "nothing"
+            yield Problem("reaction", found, "two molecules on the left: this law is an encounter")
+
+    def cautions(self, context: StepContext) -> Iterator[str]:
+        """What a reader should know about this law in this step, in whole sentences."""
+        yield from ()
+
+    @property
+    def temperature_range(self) -> tuple[float, float] | None:
+        """Lowest and highest temperature the law may be asked for [K]; None: any."""
+        return None
+
     def rate_constant(self, context: StepContext, T: Any, p: Any = 0.0, M: Any = 0.0) -> Any:
         """`coefficient` with this law's numbers, evaluated with numpy."""
-        return self.coefficient(NUMBERS, T, p, M, self.numbers(context))
+        return self.template(context).coefficient(NUMBERS, T, p, M, self.numbers(context))
 
     def inputs(self) -> dict[str, Sourced]:
-        """The numbers a reader may vary: field name to value."""
-        named = {f.name: getattr(self, f.name) for f in fields(self)}  # type: ignore[arg-type]
-        return {name: value for name, value in named.items() if isinstance(value, Sourced)}
+        """The numbers a reader may vary, by their place in the step's table: ``A``, ``k0.A``."""
+        named = [(f.name, getattr(self, f.name)) for f in fields(self)]  # type: ignore[arg-type]
+        return {key: value for name, part in named for key, value in _numbers_in(name, part)}
+
+
+def _numbers_in(address: str, part: object) -> Iterator[tuple[str, Sourced]]:
+    """Every `Sourced` in a field, with its address: attributes, keys and indices joined by dots."""
+    if isinstance(part, Sourced):
+        yield address, part
+    elif isinstance(part, Mapping):
+        for key, value in part.items():
+            yield from _numbers_in(f"{address}.{key}", value)
+    elif isinstance(part, tuple):
+        for index, value in enumerate(part):
+            yield from _numbers_in(f"{address}.{index}", value)
+    elif is_dataclass(part) and not isinstance(part, type):
+        for f in fields(part):
+            yield from _numbers_in(f"{address}.{f.name}", getattr(part, f.name))
