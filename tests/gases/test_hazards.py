@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import fields
 from itertools import pairwise
 
 import numpy as np
@@ -16,7 +17,7 @@ from meanfree.gases.condensation import (
     vapour_pressure,
 )
 from meanfree.gases.gas import Gas
-from meanfree.gases.hazards import Hazards, hazards_of
+from meanfree.gases.hazards import Hazards, hazards_of, library_hazards
 from meanfree.gases.identity import find_gas
 from meanfree.gases.pinned import pinned_gases
 
@@ -138,3 +139,15 @@ def test_a_compound_that_is_not_pinned() -> None:
     found = vapour_pressure(find_gas("styrene"), 418.3)
     assert found is not None
     assert found.value == pytest.approx(atm, rel=0.02)
+
+
+def test_pinned_hazards_are_those_of_the_library() -> None:
+    for gas in pinned_gases():
+        pinned, library = hazards_of(find_gas(gas.name)), library_hazards(gas.cas)
+        for field in fields(Hazards):
+            mine, theirs = getattr(pinned, field.name), getattr(library, field.name)
+            assert (mine is None) == (theirs is None), (gas.name, field.name)
+            if mine is not None:
+                # ten digits are kept
+                assert mine.value == pytest.approx(theirs.value, rel=1e-9)
+                assert (mine.unit, mine.source) == (theirs.unit, theirs.source)

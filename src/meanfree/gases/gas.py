@@ -21,6 +21,7 @@ class Gas:
     molecule) and ``well_depth`` [K] (epsilon / k_B of a Lennard-Jones potential with that
     diameter) are None where nothing is known. ``thermochemistry`` is what the reader
     gave; `meanfree.gases.energies.thermochemistry_of` finds the rest when it is needed.
+    ``cautions`` are said wherever the gas appears; those of energies stand with the energies.
     """
 
     name: str

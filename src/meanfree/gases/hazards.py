@@ -6,8 +6,10 @@ estimates of flammability limits are not used.
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+import tomllib
+from dataclasses import dataclass, fields
 from functools import lru_cache
+from importlib import resources
 from typing import Any, Final
 
 from meanfree.gases.gas import Gas
@@ -57,8 +59,32 @@ def hazards_of(gas: Gas) -> Hazards:
     return _hazards(gas.cas)
 
 
+_FIELDS: Final[tuple[str, ...]] = tuple(field.name for field in fields(Hazards))
+
+
 @lru_cache(maxsize=512)
 def _hazards(cas: str) -> Hazards:
+    row = _pinned().get(cas)
+    if row is None:
+        return library_hazards(cas)
+    return Hazards(**{name: _read(row.get(name)) for name in _FIELDS})
+
+
+@lru_cache(maxsize=1)
+def _pinned() -> dict[str, Any]:
+    path = resources.files("meanfree.gases").joinpath("hazards.toml")
+    return tomllib.loads(path.read_text(encoding="utf-8"))
+
+
+def _read(entry: list[Any] | None) -> Sourced | None:
+    if entry is None:
+        return None
+    value, unit, source = entry
+    return Sourced(float(value), unit, source)
+
+
+def library_hazards(cas: str) -> Hazards:
+    """The same out of the library's tables; the first time takes seconds."""
     from chemicals import safety
 
     return Hazards(

@@ -96,7 +96,6 @@ def _from_pinned(name: str, pinned: PinnedGas) -> Gas:
         molar_mass=pinned.formula.molar_mass,
         diameter=pinned.diameter,
         well_depth=pinned.well_depth,
-        cautions=pinned.cautions,
     )
 
 
