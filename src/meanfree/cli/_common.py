@@ -1,0 +1,54 @@
+"""The arguments that commands share, and how a case is opened from them."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import TYPE_CHECKING, Annotated
+
+import typer
+
+from meanfree.errors import InputError
+
+if TYPE_CHECKING:
+    from meanfree.case import LoadedCase
+
+CasePath = Annotated[Path, typer.Argument(metavar="CASE", help="The case file.")]
+AsJson = Annotated[
+    bool, typer.Option("--json", help="Print the summary as JSON, and nothing else.")
+]
+Quiet = Annotated[bool, typer.Option("--quiet", help="Print the paths written, and nothing else.")]
+Out = Annotated[
+    Path | None,
+    typer.Option("--out", metavar="FOLDER", help="Where the results go, instead of outputs/."),
+]
+Replace = Annotated[
+    bool, typer.Option("--replace", help="Give up the results of another case in that folder.")
+]
+Settings = Annotated[
+    list[str] | None,
+    typer.Option(
+        "--set",
+        metavar="ADDRESS=VALUE",
+        help="Another value for this time, such as temperature.value='500 K'. May be repeated.",
+    ),
+]
+
+
+def open_case(path: Path, settings: list[str] | None) -> LoadedCase:
+    """Load a case with its ``--set`` values. Raises `InputError` with every problem."""
+    from meanfree.case import load_case
+    from meanfree.case.settings import split_settings
+
+    wanted, findings = split_settings(settings or [])
+    if not findings.problems:
+        return load_case(path, wanted)
+    try:
+        load_case(path, wanted)
+    except InputError as error:
+        raise InputError([*findings.problems, *error.problems]) from None
+    raise InputError(findings.problems)
+
+
+def results_folder(case: LoadedCase, command: str, out: Path | None) -> Path:
+    """Where a command leaves its results: ``outputs/<case>/<command>``, or what --out names."""
+    return out if out is not None else Path("outputs") / case.name / command

@@ -1,0 +1,60 @@
+"""The command line put together: one line a command, each in its own file.
+
+A command's module holds no more than its arguments at the top; what it computes with is imported
+inside it, so that `--help` and `check` stay quick.
+"""
+
+from __future__ import annotations
+
+from typing import Annotated
+
+import typer
+
+from meanfree.cli import check, schema, start
+from meanfree.cli.errors import report_errors
+
+app = typer.Typer(
+    name="meanfree",
+    add_completion=False,
+    pretty_exceptions_enable=False,
+    rich_markup_mode=None,
+    context_settings={"help_option_names": ["-h", "--help"]},
+    help=(
+        "Concentrations against time for gas-phase reactions in a closed batch vessel.\n\n"
+        "A case file says what is in the vessel and how it reacts; "
+        "begin with: meanfree start NAME"
+    ),
+)
+
+
+def _version(asked: bool) -> None:
+    if asked:
+        from importlib.metadata import version
+
+        typer.echo(f"meanfree {version('meanfree')}")
+        raise typer.Exit
+
+
+@app.callback()
+def _options(
+    version: Annotated[
+        bool, typer.Option("--version", callback=_version, is_eager=True, help="Say which version.")
+    ] = False,
+) -> None:
+    """Options of the program itself."""
+
+
+app.command("start")(start.start)
+app.command("check")(check.check)
+app.command("schema")(schema.schema)
+
+
+def run(arguments: list[str]) -> int:
+    """Carry out one command line and return its exit status. Prints; never raises."""
+    command = typer.main.get_command(app)
+
+    def call() -> None:
+        command.main(arguments or ["--help"], prog_name="meanfree", standalone_mode=False)
+
+    names = list(getattr(command, "commands", {}))
+    return report_errors(call, as_json="--json" in arguments, commands=names)

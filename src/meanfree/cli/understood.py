@@ -1,0 +1,333 @@
+"""What `check` says: the case as it was understood, as one record and as text."""
+
+from __future__ import annotations
+
+from pydantic import BaseModel, ConfigDict
+
+from meanfree import units
+from meanfree.case.loaded import LoadedCase
+from meanfree.experiment.experiment import Experiment
+from meanfree.experiment.mechanism import GivenEquilibrium, Step
+from meanfree.experiment.temperature import Exchange, Program
+from meanfree.gases.gas import Gas
+from meanfree.report import wording
+from meanfree.sourced import Sourced
+
+
+class _Record(BaseModel):
+    model_config = ConfigDict(frozen=True, extra="forbid", ser_json_inf_nan="constants")
+
+
+class GasUnderstood(_Record):
+    """Who a gas is, and what is known of it."""
+
+    name: str
+    formula: str | None
+    cas: str | None
+    diameter_m: float | None
+    diameter_source: str | None
+    thermochemistry_from_K: float | None
+    thermochemistry_to_K: float | None
+
+
+class FilledUnderstood(_Record):
+    """One filled gas: as given, and what follows from it."""
+
+    gas: str
+    given: str
+    moles_mol: float
+    pressure_at_filling_Pa: float
+    pressure_at_start_Pa: float
+
+
+class StepUnderstood(_Record):
+    """One step: what it is, and what its rate constant counts."""
+
+    name: str
+    reaction: str
+    law: str
+    numbers: list[str]
+    counts: str
+    order: float
+    orders: dict[str, float]
+    bath: bool
+    reverse: str | None
+    source: str
+
+
+class Understood(_Record):
+    """A case as it was understood."""
+
+    schema_version: int = 1
+    case: str
+    file: str
+    hash: str
+    title: str
+    purpose: str
+    vessel: str
+    volume_m3: float
+    temperature: str
+    filling_temperature_K: float
+    initial_temperature_K: float
+    filling_pressure_Pa: float
+    initial_pressure_Pa: float
+    initial_volume_m3: float
+    fill: list[FilledUnderstood]
+    gases: list[GasUnderstood]
+    steps: list[StepUnderstood]
+    run: str
+    watch: str | None
+    assumptions: list[str]
+    notes: list[str]
+
+
+def understood(case: LoadedCase) -> Understood:
+    """The record of a loaded case."""
+    experiment = case.experiment
+    initial = experiment.temperature.initial
+    return Understood(
+        case=case.name,
+        file=str(case.path),
+        hash=case.hash,
+        title=experiment.title,
+        purpose=experiment.purpose,
+        vessel=_vessel(experiment),
+        volume_m3=experiment.vessel.volume.value,
+        temperature=_temperature(experiment),
+        filling_temperature_K=experiment.fill.temperature(initial),
+        initial_temperature_K=initial,
+        filling_pressure_Pa=experiment.fill.pressure(experiment.vessel, initial),
+        initial_pressure_Pa=experiment.initial_pressure,
+        initial_volume_m3=experiment.initial_volume,
+        fill=_fill(experiment),
+        gases=[_gas(gas) for gas in experiment.gases],
+        steps=[_step(step, experiment) for step in experiment.steps],
+        run=_run(experiment),
+        watch=experiment.watched,
+        assumptions=_assumptions(experiment),
+        notes=[*experiment.notes],
+    )
+
+
+def _vessel(experiment: Experiment) -> str:
+    vessel = experiment.vessel
+    kind = "rigid" if vessel.is_rigid else "piston"
+    parts = [f"{kind}, {_given(vessel.volume)}"]
+    if not vessel.is_rigid:
+        parts[0] += " at filling"
+        held = vessel.pressure
+        shown = wording.units_in_use(experiment)
+        parts.append(
+            f"holds {_given(held)}"
+            if held is not None
+            else f"holds {wording.pressure(experiment.held_pressure, shown)}, the sum filled"
+        )
+    if vessel.shape is not None:
+        area = vessel.shape.area(vessel.volume.value)
+        width = f"{wording.number(vessel.shape.width(vessel.volume.value) * 100)} cm wide, "
+        width = "" if vessel.shape.form == "stated" else f"{vessel.shape.form} {width}"
+        parts.append(f"{width}inner surface {wording.number(area * 1e4)} cm²")
+    if vessel.rated_pressure is not None:
+        parts.append(f"rated {_given(vessel.rated_pressure)}")
+    if vessel.dead_space is not None:
+        dead = vessel.dead_space
+        parts.append(f"dead space {_given(dead.volume)} at {_given(dead.temperature)}")
+    return "; ".join(parts)
+
+
+def _temperature(experiment: Experiment) -> str:
+    mode = experiment.temperature
+    if isinstance(mode, Program):
+        points = ", ".join(
+            f"{_given(T)} at {_given(t) if t.value else '0'}" for t, T in mode.points
+        )
+        return f"program: {points}; linear between, constant after"
+    if isinstance(mode, Exchange):
+        text = (
+            f"exchange: {_given(mode.value)} at time zero, surroundings "
+            f"{_given(mode.surroundings)}, {_given(mode.conductance)}"
+        )
+        wall = mode.wall_heat_capacity
+        return text + (f", wall {_given(wall)}" if wall is not None else "")
+    start = " at time zero" if mode.mode == "adiabatic" else ""
+    return f"{mode.mode}, {_given(mode.value)}{start}"
+
+
+def _fill(experiment: Experiment) -> list[FilledUnderstood]:
+    fill, vessel = experiment.fill, experiment.vessel
+    initial = experiment.temperature.initial
+    moles = fill.moles(vessel, initial)
+    total = sum(moles.values())
+    filled = fill.pressure(vessel, initial)
+    return [
+        FilledUnderstood(
+            gas=gas,
+            given="balance" if gas == fill.balance else _given(fill.gases[gas].quantity),
+            moles_mol=moles[gas],
+            pressure_at_filling_Pa=filled * moles[gas] / total,
+            pressure_at_start_Pa=experiment.initial_pressure * moles[gas] / total,
+        )
+        for gas in fill.names
+    ]
+
+
+def _given(quantity: Sourced) -> str:
+    """A value as the file gives it, with all its digits."""
+    value = units.from_si(
+        quantity.value * quantity.per, quantity.unit, quantity.dimension or "pure"
+    )
+    return f"{value:.10g} {wording.pretty_unit(quantity.unit)}".strip()
+
+
+def _gas(gas: Gas) -> GasUnderstood:
+    known = gas.thermochemistry
+    return GasUnderstood(
+        name=gas.name,
+        formula=None if gas.formula is None else gas.formula.hill,
+        cas=gas.cas,
+        diameter_m=None if gas.diameter is None else gas.diameter.value,
+        diameter_source=None if gas.diameter is None else gas.diameter.source,
+        thermochemistry_from_K=None if known is None else known.low,
+        thermochemistry_to_K=None if known is None else known.high,
+    )
+
+
+def _step(step: Step, experiment: Experiment) -> StepUnderstood:
+    numbers = [
+        f"{key} = {_given(value)}" for key, value in step.law.inputs().items() if not value.default
+    ]
+    reverse: str | None = None
+    if isinstance(step.reverse, GivenEquilibrium):
+        given = step.reverse
+        constant, at = _given(given.constant), _given(given.at)
+        reverse = f"{given.kind} = {constant} at {at}"
+        if given.enthalpy is not None:
+            reverse += f", enthalpy {_given(given.enthalpy)}"
+    elif step.reverse is not None:
+        reverse = "thermochemistry"
+    return StepUnderstood(
+        name=step.name,
+        reaction=wording.reaction(step.reaction, experiment),
+        law=step.law.word,
+        numbers=numbers,
+        counts=step.counts,
+        order=step.order,
+        orders=step.orders,
+        bath=step.bath is not None,
+        reverse=reverse,
+        source=step.source,
+    )
+
+
+def _run(experiment: Experiment) -> str:
+    plan = experiment.plan
+    until = "until it is done (auto)" if plan.until is None else _given(plan.until)
+    rows = ", ".join(_given(time) for time in plan.report_at)
+    parts = [until, f"watching {experiment.watched}" if experiment.watched else ""]
+    parts += [f"rows at {rows}" if rows else "", f"{plan.solver.method}, rtol {plan.solver.rtol:g}"]
+    return "; ".join(part for part in parts if part)
+
+
+def _assumptions(experiment: Experiment) -> list[str]:
+    """What the case does not say and the computation takes for granted."""
+    initial = experiment.temperature.initial
+    filling = experiment.fill.temperature(initial)
+    lines = ["The gas is ideal and well mixed, and nothing leaks."]
+    if filling != initial and experiment.vessel.is_rigid:
+        lines.append(
+            f"Filled at {wording.temperature(filling)}, the vessel is brought to "
+            f"{wording.temperature(initial)} at time zero; nothing reacts before."
+        )
+    if any(
+        wording.is_per_molecule(q.unit) for s in experiment.steps for q in s.law.inputs().values()
+    ):
+        lines.append("Rate constants in cm³, cm⁶ … without mol are per molecule.")
+    if any(step.reverse is not None for step in experiment.steps):
+        lines.append("A reverse rate constant is the forward one over K_c: detailed balance.")
+    return lines
+
+
+def as_text(summary: Understood) -> str:
+    """The record for a reader."""
+    gases = "1 gas" if len(summary.gases) == 1 else f"{len(summary.gases)} gases"
+    steps = "1 step" if len(summary.steps) == 1 else f"{len(summary.steps)} steps"
+    lines = [summary.title, f"{summary.file} is understood: {gases}, {steps}.", ""]
+    lines += [f"Vessel       {summary.vessel}", f"Temperature  {summary.temperature}"]
+    lines += [f"Run          {summary.run}", "", *_fill_lines(summary), "", "Gases"]
+    lines += _columns([_gas_cells(gas) for gas in summary.gases])
+    lines += ["", "Steps"]
+    for step in summary.steps:
+        lines += _step_lines(step)
+    lines += ["", "Assumed", *(f"  {line}" for line in summary.assumptions)]
+    if summary.notes:
+        lines += ["", "Notes", *(f"  {note}" for note in summary.notes)]
+    return "\n".join(lines)
+
+
+def _fill_lines(summary: Understood) -> list[str]:
+    filling = wording.temperature(summary.filling_temperature_K)
+    start = wording.temperature(summary.initial_temperature_K)
+    rows = [["gas", "given", f"at filling, {filling}", f"at time zero, {start}", "amount"]]
+    rows += [
+        [
+            filled.gas,
+            filled.given,
+            _kilopascal(filled.pressure_at_filling_Pa),
+            _kilopascal(filled.pressure_at_start_Pa),
+            f"{wording.number(filled.moles_mol * 1e3, 4)} mmol",
+        ]
+        for filled in summary.fill
+    ]
+    total = sum(filled.moles_mol for filled in summary.fill)
+    rows.append(
+        [
+            "total",
+            "",
+            _kilopascal(summary.filling_pressure_Pa),
+            _kilopascal(summary.initial_pressure_Pa),
+            f"{wording.number(total * 1e3, 4)} mmol",
+        ]
+    )
+    return ["Fill", *_columns(rows)]
+
+
+def _kilopascal(pascal: float) -> str:
+    return f"{wording.number(pascal / 1e3, 4)} kPa"
+
+
+def _gas_cells(gas: GasUnderstood) -> list[str]:
+    if gas.formula is None:
+        return [gas.name, "a label", "", "", ""]
+    size = ""
+    if gas.diameter_m is not None:
+        size = f"diameter {wording.number(gas.diameter_m * 1e10)} Å"
+    range_ = ""
+    if gas.thermochemistry_from_K is not None and gas.thermochemistry_to_K is not None:
+        range_ = f"energies {gas.thermochemistry_from_K:g} to {gas.thermochemistry_to_K:g} K"
+    cas = f"CAS {gas.cas}" if gas.cas else "no CAS number"
+    return [gas.name, wording.formula_text(gas.formula), cas, size, range_]
+
+
+def _step_lines(step: StepUnderstood) -> list[str]:
+    orders = ", ".join(f"{order:g} in {gas}" for gas, order in step.orders.items())
+    bath = ", 1 in M" if step.bath else ""
+    counts = "each event" if step.counts == "events" else step.counts
+    lines = [
+        f"  {step.name}: {step.reaction}",
+        f"    {step.law}: {', '.join(step.numbers)} (counts {counts})",
+        f"    order {step.order + step.bath:g} ({orders}{bath})",
+    ]
+    if step.reverse:
+        lines.append(f"    reverse by {step.reverse}")
+    if step.source:
+        lines.append(f"    source: {step.source}")
+    return lines
+
+
+def _columns(rows: list[list[str]]) -> list[str]:
+    """Rows with their cells below each other."""
+    widths = [max(len(row[i]) for row in rows) for i in range(len(rows[0]))]
+    return [
+        ("  " + "  ".join(cell.ljust(w) for cell, w in zip(row, widths, strict=True))).rstrip()
+        for row in rows
+    ]
