@@ -100,6 +100,7 @@ def _plain_dimensions() -> list[Dimension]:
         D("heat capacity", _powers("M1 L2 T-2 K-1"), "J/K", "40 J/K"),
         D("molar heat capacity", _powers("M1 L2 T-2 K-1 N-1"), "J/mol/K", "29 J/mol/K"),
         D("conductance", _powers("M1 L2 T-3 K-1"), "W/K", "0.09 W/K"),
+        D("energy", _powers("M1 L2 T-2"), "J", "40 J", article="an"),
         D("mass", _powers("M1"), "kg", "20 mg", above=True),
         D("molar mass", _powers("M1 N-1"), "kg/mol", "65.46 g/mol", above=True),
         D("frequency", _powers("T-1"), "1/s", "1e-3 1/s"),

@@ -23,14 +23,13 @@ tera- = 1e12 = T-
 giga- = 1e9 = G-
 mega- = 1e6 = M-
 kilo- = 1e3 = k-
-hecto- = 1e2 = h-
-centi- = 1e-2 = c-
 milli- = 1e-3 = m-
 micro- = 1e-6 = µ- = u-
 nano- = 1e-9 = n-
 pico- = 1e-12 = p-
 femto- = 1e-15 = f-
 meter = [length] = m = metre
+centimeter = 1e-2 * meter = cm = centimetre
 second = [time] = s = sec
 gram = [mass] = g
 kelvin = [temperature] = K
@@ -57,6 +56,7 @@ hertz = 1 / second = Hz
 dalton = {constants.m_u!r} * kilogram = Da = amu
 newton = kilogram * meter / second ** 2 = N
 pascal = newton / meter ** 2 = Pa
+hectopascal = 1e2 * pascal = hPa
 bar = 1e5 * pascal = bar = bara
 atmosphere = {constants.ATMOSPHERE!r} * pascal = atm
 torr = {constants.ATMOSPHERE!r} / 760 * pascal = torr = Torr
