@@ -128,5 +128,5 @@ def _usage_problem(error: Exception, commands: Sequence[str]) -> Problem:
         return Problem(where, f"no {name}", f"{where} {name}")
     extra = message.partition("unexpected extra argument")[2]
     if extra:
-        return Problem(where, f"too many arguments: {extra.partition('(')[2][:-1]}", listed)
+        return Problem(where, f"too many arguments: {extra.rpartition('(')[2][:-1]}", listed)
     return Problem(where, message[:1].lower() + message[1:], listed)

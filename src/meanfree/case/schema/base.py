@@ -35,7 +35,9 @@ TOP_KEYS = ("labels", "title", "purpose")
 class Table(BaseModel):
     """Base of every table of a case file."""
 
-    model_config = ConfigDict(extra="forbid", strict=True, arbitrary_types_allowed=True)
+    model_config = ConfigDict(
+        extra="forbid", strict=True, arbitrary_types_allowed=True, defer_build=True
+    )
     hints: ClassVar[dict[str, str]] = {}
     _wrong: frozenset[str] = PrivateAttr(default=frozenset())
 
