@@ -53,6 +53,7 @@ class ArrayEquations:
         ]
         self.constant = not any(self.varying) and system.mode == "isothermal"
         self._kept: Coefficients | None = None
+        self._properties: tuple[float, thermal.Properties] | None = None
 
     def _terms(self) -> None:
         """Concentration powers as padded arrays; column n_gases is a gas of concentration 1."""
@@ -120,9 +121,8 @@ class ArrayEquations:
         nothing = np.zeros(len(forward))
         dG = dH = nothing
         if self.system.thermal is not None:
-            table = self.system.thermal
-            dG = self.of_reaction(thermal.gibbs_energies(table, T))[forward]
-            dH = self.of_reaction(thermal.enthalpies(table, T))[forward]
+            dG = self.of_reaction(self.properties(T).g)[forward]
+            dH = self.of_reaction(self.properties(T).h)[forward]
         lnK, slope = thermal.ln_Kc(reverses, T, self.change[forward], dG, dH)
         inverse = np.exp(-lnK)
         at = reverses.step
@@ -131,11 +131,30 @@ class ArrayEquations:
         by_p[at] = by_p[forward] * inverse
         by_M[at] = by_M[forward] * inverse
 
+    def properties(self, T: float) -> thermal.Properties:
+        """Heat capacities and energies of the gases at T [K], evaluated once a temperature."""
+        if self._properties is None or self._properties[0] != T:
+            table = self.system.thermal
+            assert table is not None, "an energy balance needs the gases' energies"
+            self._properties = (T, thermal.properties(table, T))
+        return self._properties[1]
+
     def of_reaction(self, quantity: Floats) -> Floats:
         """Sum of net numbers times a quantity of the gases, shape (n_steps,)."""
         net = self.system.net
         weights = net.value * quantity[net.column]
         return np.bincount(self.net_owner, weights, self.system.n_steps).astype(float)
+
+    def net_rates(self, rates: Floats) -> Floats:
+        """Forward minus reverse on the forward steps, zero on the reverse ones.
+
+        Near equilibrium the two nearly cancel. Taking the difference once, before it is spread
+        over gases and heat, keeps its rounding out of everything that is conserved.
+        """
+        reverses, net = self.system.reverses, rates.copy()
+        net[reverses.forward] -= rates[reverses.step]
+        net[reverses.step] = 0.0
+        return net
 
     def of_gases(self, rates: Floats) -> Floats:
         """Net formation of each gas from the rates of the steps, shape (n_gases,)."""
@@ -169,9 +188,8 @@ class ArrayEquations:
         what flows; a stated heat release replaces -dH; light taken in lowers dH.
         """
         system = self.system
-        assert system.thermal is not None, "an energy balance needs the gases' energies"
-        dH = self.of_reaction(thermal.enthalpies(system.thermal, T))
-        slope = self.of_reaction(thermal.heat_capacities(system.thermal, T)[0])
+        of_gases = self.properties(T)
+        dH, slope = self.of_reaction(of_gases.h), self.of_reaction(of_gases.cp)
         given = ~np.isnan(system.heat_given)
         dH, slope = np.where(given, -system.heat_given, dH), np.where(given, 0.0, slope)
         dH[system.open_steps], slope[system.open_steps] = 0.0, 0.0
@@ -182,10 +200,9 @@ class ArrayEquations:
 
     def capacity(self, x: Floats, T: float) -> tuple[float, Floats, float]:
         """Heat capacity over V0 [J/m^3/K], of each gas [J/mol/K], and its slope [J/m^3/K^2]."""
-        assert self.system.thermal is not None
-        cp, slope = thermal.heat_capacities(self.system.thermal, T)
-        each = cp if self.system.volume_varies else cp - R
-        return float(x @ each) + self.system.wall, each, float(x @ slope)
+        of_gases = self.properties(T)
+        each = of_gases.cp if self.system.volume_varies else of_gases.cp - R
+        return float(x @ each) + self.system.wall, each, float(x @ of_gases.cp_slope)
 
     # Right-hand side and Jacobian
 
@@ -193,7 +210,7 @@ class ArrayEquations:
         """dy/dt [shape (size,)]."""
         system = self.system
         state = self.unpack(t, y, segment)
-        rates = self.rates(t, y, segment) * state.v
+        rates = self.net_rates(self.rates(t, y, segment)) * state.v
         out = np.zeros(system.size)
         n, opened = system.n_gases, len(system.open_steps)
         out[:n] = self.of_gases(rates)
@@ -207,7 +224,9 @@ class ArrayEquations:
             if system.exchanges_heat:
                 out[n + opened] = exchanged
         if system.volume_varies:
-            growth = R * state.T / system.held_pressure * out[:n].sum()
+            # From the steps and not from the gases: a fast step that keeps the number of molecules
+            # must not leave its rounding in the volume.
+            growth = R * state.T / system.held_pressure * float(rates @ self.change)
             out[system.volume_index] = growth + state.v / state.T * dT
         return out
 

@@ -7,6 +7,7 @@ import math
 from collections.abc import Sequence
 
 import numpy as np
+from numpy.polynomial.chebyshev import chebder
 
 from meanfree.constants import STANDARD_PRESSURE, R
 from meanfree.equations.system import (
@@ -198,10 +199,12 @@ def _thermal(experiment: Experiment) -> Thermal:
             terms[: len(column), i] = column
         return terms
 
+    heat_capacity = table("heat_capacity_coefficients")
     return Thermal(
         low=np.array([low for low, _ in domains]),
         high=np.array([high for _, high in domains]),
-        cp=table("heat_capacity_coefficients"),
+        cp=heat_capacity,
+        cp_slope=np.asarray(chebder(heat_capacity), float),
         h=table("enthalpy_coefficients"),
         s=table("entropy_coefficients"),
     )

@@ -39,7 +39,7 @@ def assemble(equations: ArrayEquations, t: float, y: Floats, segment: Segment) -
 def rate_derivatives(
     equations: ArrayEquations, state: State, segment: Segment
 ) -> tuple[sparse.csr_array, Floats]:
-    """dr/dc [1/s, shape (n_steps, n_gases)] and dr/dT at constant c [mol/m^3/s/K].
+    """Of net rates: dr/dc [1/s, shape (n_steps, n_gases)], dr/dT at constant c [mol/m^3/s/K].
 
     In a rigid vessel the pressure a law may use is R T sum(c), and its part is included.
     """
@@ -68,7 +68,19 @@ def rate_derivatives(
         dense = np.outer(by_p * R * state.T, np.ones(system.n_gases))
         by_c = sparse.csr_array(by_c + sparse.csr_array(dense))
         by_T = by_T + by_p * state.p / state.T
-    return by_c, by_T
+    reverses = system.reverses
+    if not len(reverses.step):
+        return by_c, by_T
+    # Forward minus reverse, as in net_rates and for the same reason.
+    pairs = np.ones(system.n_steps)
+    pairs[reverses.step] = 0.0
+    pairing = sparse.csr_array(
+        (
+            np.concatenate([pairs, -np.ones(len(reverses.step))]),
+            (np.concatenate([j, reverses.forward]), np.concatenate([j, reverses.step])),
+        )
+    )
+    return sparse.csr_array(pairing @ by_c), equations.net_rates(by_T)
 
 
 def _bath_part(equations: ArrayEquations, by_M: Floats) -> sparse.csr_array:
@@ -116,7 +128,7 @@ def _border(
     system = equations.system
     n, opened = system.n_gases, len(system.open_steps)
     spread = _net_matrix(equations, opened)
-    rates = equations.rates(t, y, segment)
+    rates = equations.net_rates(equations.rates(t, y, segment))
     # c depends on v and T through w: dc/dv = -c/w, dc/dT = -c dead/w.
     by_w = -(by_c @ state.c) / state.w
     columns, rate_columns = [], []
@@ -132,7 +144,7 @@ def _border(
     right = np.zeros((size, edges))
     right[: n + opened] = np.column_stack(columns)
     by_states = np.column_stack(rate_columns)
-    bottom = _edge_rows(equations, state, segment, rates, by_c, by_states, inner, right)
+    bottom = _edge_rows(equations, state, segment, rates, by_c, by_states)
     if system.exchanges_heat:
         right[-1, -1] = -system.exchange
     top = sparse.hstack([inner, sparse.csr_array(right)])
@@ -146,13 +158,10 @@ def _edge_rows(
     rates: Floats,
     by_c: sparse.csr_array,
     by_edges: Floats,
-    inner: sparse.csr_array,
-    right: Floats,
 ) -> Floats:
     """Rows of dv/dt and dT/dt over the whole state [shape (1 or 2, size)]."""
     system = equations.system
     n, size = system.n_gases, system.size
-    flow = equations.of_gases(rates) * state.v
     dT, T_row = segment.slope, np.zeros(size)
     if system.temperature_varies:
         dT, T_row = _temperature_row(equations, state, rates, by_c, by_edges)
@@ -160,14 +169,15 @@ def _edge_rows(
         return T_row[None, :]
     per = R * state.T / system.held_pressure
     v_row = np.zeros(size)
-    v_row[:n] = per * np.asarray(inner[:n].sum(axis=0)).ravel()[:n]
-    v_row[system.n_gases + system.n_ledger :] = per * right[:n].sum(axis=0)
+    change = equations.change
+    v_row[:n] = per * (change @ by_c) * state.v / state.w
+    v_row[n + system.n_ledger :] = per * (change @ by_edges)
     v_row += state.v / state.T * T_row
     v_row[system.volume_index] += dT / state.T
     if not system.temperature_varies:
         return v_row[None, :]
     v_row[system.temperature_index] += (
-        R / system.held_pressure * flow.sum() - state.v * dT / state.T**2
+        R / system.held_pressure * state.v * (change @ rates) - state.v * dT / state.T**2
     )
     return np.vstack([v_row, T_row])
 

@@ -14,10 +14,8 @@ import numpy as np
 import sympy
 
 from meanfree.constants import STANDARD_PRESSURE, R
-from meanfree.equations import thermal
-from meanfree.equations.arrays import ArrayEquations
 from meanfree.equations.powers import power
-from meanfree.equations.system import Floats, Segment, System
+from meanfree.equations.system import System
 from meanfree.equations.templates import Symbols
 
 
@@ -54,12 +52,15 @@ class gibbs_energy(sympy.Function):  # type: ignore[misc]  # noqa: N801
 class SymbolicSystem:
     """dy/dt as expressions in the states, t, the segment's symbols and the coefficients ``k``.
 
-    ``derivative[i]`` belongs to ``states[i]``; ``rates`` [mol/m^3/s], one a one-way step;
-    ``arguments`` are the further symbols that a compiled form takes.
+    ``rates`` [mol/m^3/s], one a one-way step. ``flows`` are v times the net rate of each written
+    step (forward minus reverse), as symbols with what they stand for; ``derivative[i]`` belongs
+    to ``states[i]`` and is written in the flows. Near equilibrium forward and reverse nearly
+    cancel: taking their difference once keeps its rounding out of what is conserved.
     """
 
     states: tuple[Any, ...]
     rates: tuple[Any, ...]
+    flows: dict[Any, Any]
     derivative: tuple[Any, ...]
     t: Any
     k: tuple[Any, ...]
@@ -69,13 +70,31 @@ class SymbolicSystem:
     switches: tuple[Any, ...]
 
     @cached_property
+    def flow_slopes(self) -> dict[tuple[Any, Any], tuple[Any, Any]]:
+        """(flow, state) to a symbol for d flow/d state and what it stands for, where not zero."""
+        found = {}
+        for j, (flow, expression) in enumerate(self.flows.items()):
+            for i, state in enumerate(self.states):
+                if state in expression.free_symbols:
+                    symbol = sympy.Symbol(f"slope_{j}_{i}", real=True)
+                    found[flow, state] = (symbol, sympy.diff(expression, state))
+        return found
+
+    @cached_property
     def jacobian(self) -> dict[tuple[int, int], Any]:
-        """d derivative[i]/d states[j] where it is not zero."""
-        place = {state: j for j, state in enumerate(self.states)}
-        entries = {}
+        """d derivative[i]/d states[j] where it is not zero, in the symbols of `flow_slopes`."""
+        entries: dict[tuple[int, int], Any] = {}
         for i, expression in enumerate(self.derivative):
-            for state in expression.free_symbols & place.keys():
-                entries[i, place[state]] = sympy.diff(expression, state)
+            for state in expression.free_symbols & set(self.states):
+                entries[i, self.states.index(state)] = sympy.diff(expression, state)
+            by_flow = {
+                flow: sympy.diff(expression, flow)
+                for flow in expression.free_symbols & self.flows.keys()
+            }
+            for (flow, state), (symbol, _) in self.flow_slopes.items():
+                if flow in by_flow:
+                    key = i, self.states.index(state)
+                    entries[key] = entries.get(key, sympy.Integer(0)) + by_flow[flow] * symbol
         return {key: entries[key] for key in sorted(entries)}
 
 
@@ -112,7 +131,14 @@ class _Writer:
     def write(self) -> SymbolicSystem:
         system = self.system
         rates = self._rates()
-        flows = [self.v * rate for rate in rates]
+        back = dict(zip(system.reverses.forward, system.reverses.step, strict=True))
+        net = {
+            j: rate - rates[back[j]] if j in back else rate
+            for j, rate in enumerate(rates)
+            if j not in system.reverses.step
+        }
+        symbols = {j: sympy.Symbol(f"flow_{j}", real=True) for j in net}
+        flows = [symbols.get(j, sympy.Integer(0)) for j in range(system.n_steps)]
         dx: list[Any] = [sympy.Integer(0)] * system.n_gases
         for j, flow in enumerate(flows):
             for gas, number in system.net.row(j):
@@ -125,7 +151,8 @@ class _Writer:
                 derivative.append(exchanged)
             dT = self._heating(flows, exchanged)
         if system.volume_varies:
-            growth = R * self.T / system.held_pressure * sympy.Add(*dx)
+            made = [_number(change) * flow for change, flow in zip(self.change, flows, strict=True)]
+            growth = R * self.T / system.held_pressure * sympy.Add(*made)
             derivative.append(growth + self.v / self.T * dT)
         if system.temperature_varies:
             derivative.append(dT)
@@ -135,6 +162,7 @@ class _Writer:
         return SymbolicSystem(
             tuple(states),
             tuple(rates),
+            {symbols[j]: self.v * net[j] for j in net},
             tuple(derivative),
             self.t,
             tuple(self.k),
@@ -197,6 +225,8 @@ class _Writer:
         system, T = self.system, self.T
         released: Any = sympy.Integer(0)
         for j, flow in enumerate(flows):
+            if flow == 0:
+                continue
             if j in system.open_steps:
                 dH: Any = sympy.Integer(0)
             elif np.isnan(system.heat_given[j]):
@@ -230,67 +260,3 @@ def constant_steps(system: System) -> list[bool]:
 
 def _number(value: float) -> Any:
     return sympy.Integer(int(value)) if value == int(value) else sympy.Float(value)
-
-
-class CompiledEquations:
-    """Right-hand side and Jacobian of a System, compiled from its sympy form.
-
-    The same methods as `ArrayEquations`, which serves as its source of numbers.
-    """
-
-    def __init__(self, system: System) -> None:
-        self.system = system
-        self.arrays = ArrayEquations(system)
-        self.symbolic = symbolic_system(system)
-        form = self.symbolic
-        arguments = [
-            form.t, form.states, form.k, form.switches, form.T_start, form.slope, form.start
-        ]  # fmt: skip
-        functions = {
-            "enthalpy": self._gas_function(thermal.enthalpies),
-            "gibbs_energy": self._gas_function(thermal.gibbs_energies),
-            "heat_capacity": self._gas_function(lambda t, T: thermal.heat_capacities(t, T)[0]),
-            "slope_of_heat_capacity": self._gas_function(
-                lambda t, T: thermal.heat_capacities(t, T)[1]
-            ),
-        }
-        modules = [functions, "math"]
-        self._derivative = sympy.lambdify(arguments, list(form.derivative), modules, cse=True)
-        places = list(form.jacobian)
-        self._rows = np.array([i for i, _ in places], np.intp)
-        self._columns = np.array([j for _, j in places], np.intp)
-        self._jacobian = sympy.lambdify(arguments, list(form.jacobian.values()), modules, cse=True)
-        self._constants: dict[float, Floats] = {}
-
-    def _gas_function(self, of_table: Any) -> Any:
-        """A property of gas i at T, all gases evaluated once for each temperature."""
-        last: list[Any] = [None, None]
-
-        def value(i: int, T: float) -> float:
-            if last[0] != T:
-                last[:] = [T, of_table(self.system.thermal, T)]
-            return float(last[1][int(i)])
-
-        return value
-
-    def _arguments(self, t: float, y: Floats, segment: Segment) -> tuple[Any, ...]:
-        T = segment.temperature
-        if T not in self._constants:
-            concentrations = self.system.initial_x
-            M = self.arrays.baths(concentrations)
-            self._constants[T] = self.arrays.coefficients(T, 1.0, M).k
-        ones = np.ones(self.system.n_steps)
-        switches = ones if segment.switches is None else segment.switches
-        k = self._constants[T].tolist()
-        states = y.tolist()
-        return t, states, k, switches.tolist(), T, segment.slope, segment.start
-
-    def derivative(self, t: float, y: Floats, segment: Segment) -> Floats:
-        """dy/dt [shape (size,)]."""
-        return np.array(self._derivative(*self._arguments(t, y, segment)), float)
-
-    def jacobian(self, t: float, y: Floats, segment: Segment) -> Floats:
-        """d(dy/dt)/dy [shape (size, size)]."""
-        out = np.zeros((self.system.size, self.system.size))
-        out[self._rows, self._columns] = self._jacobian(*self._arguments(t, y, segment))
-        return out

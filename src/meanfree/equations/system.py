@@ -90,13 +90,15 @@ class Reverses:
 class Thermal:
     """Cp, H and S of each gas as Chebyshev series in x, linear in ln T from ``low`` to ``high``.
 
-    ``low``, ``high`` [K, shape (n_gases,)]; ``cp`` [J/mol/K], ``h`` [J/mol], ``s`` [J/mol/K], each
+    ``low``, ``high`` [K, shape (n_gases,)]; ``cp`` [J/mol/K], ``cp_slope``
+    its derivative by x, ``h`` [J/mol], ``s`` [J/mol/K], each
     of shape (n_terms, n_gases).
     """
 
     low: Floats
     high: Floats
     cp: Floats
+    cp_slope: Floats
     h: Floats
     s: Floats
 

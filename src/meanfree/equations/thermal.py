@@ -2,41 +2,42 @@
 
 from __future__ import annotations
 
+from dataclasses import dataclass
+
 import numpy as np
-from numpy.polynomial import chebyshev
 
 from meanfree.constants import STANDARD_PRESSURE, R
 from meanfree.equations.system import Floats, Reverses, Thermal
 
 
-def _scaled(table: Thermal, T: float) -> Floats:
-    """x of every series, held within -1 and 1: linear in ln T."""
-    x = np.log(T * T / (table.low * table.high)) / np.log(table.high / table.low)
-    return np.asarray(np.clip(x, -1.0, 1.0), float)
+@dataclass(frozen=True)
+class Properties:
+    """Properties of every gas at one temperature, each of shape (n_gases,).
+
+    ``cp`` [J/mol/K], ``cp_slope`` [J/mol/K^2], ``h`` [J/mol], ``g`` [J/mol, 1 bar].
+    """
+
+    cp: Floats
+    cp_slope: Floats
+    h: Floats
+    g: Floats
 
 
-def _evaluate(series: Floats, x: Floats) -> Floats:
-    """Each column of ``series`` at its own x."""
-    return np.asarray(chebyshev.chebval(x, series, tensor=False))
+def properties(table: Thermal, T: float) -> Properties:
+    """Heat capacity, enthalpy and Gibbs energy of every gas at T [K].
 
+    T_k(x) = cos(k arccos x) for all terms at once; beyond the ends of its range x stays there.
+    """
+    span = np.log(table.high / table.low)
+    x = np.clip(np.log(T * T / (table.low * table.high)) / span, -1.0, 1.0)
+    terms = np.cos(np.arange(len(table.h))[:, None] * np.arccos(x))
 
-def heat_capacities(table: Thermal, T: float) -> tuple[Floats, Floats]:
-    """Cp [J/mol/K] and dCp/dT [J/mol/K^2] of every gas, shape (n_gases,)."""
-    x = _scaled(table, T)
-    derivative = np.asarray(chebyshev.chebder(table.cp), float)
-    slope = _evaluate(derivative, x) * 2 / (T * np.log(table.high / table.low))
-    return _evaluate(table.cp, x), np.asarray(slope, float)
+    def evaluate(series: Floats) -> Floats:
+        return np.asarray(np.einsum("kn,kn->n", series, terms[: len(series)]), float)
 
-
-def enthalpies(table: Thermal, T: float) -> Floats:
-    """H [J/mol] of every gas, shape (n_gases,)."""
-    return _evaluate(table.h, _scaled(table, T))
-
-
-def gibbs_energies(table: Thermal, T: float) -> Floats:
-    """H - T S [J/mol] at 1 bar of every gas, shape (n_gases,)."""
-    x = _scaled(table, T)
-    return _evaluate(table.h, x) - T * _evaluate(table.s, x)
+    h = evaluate(table.h)
+    slope = evaluate(table.cp_slope) * 2 / (T * span)
+    return Properties(evaluate(table.cp), np.asarray(slope, float), h, h - T * evaluate(table.s))
 
 
 def ln_Kc(

@@ -72,7 +72,7 @@ Watcher = Callable[[float, Floats, bool], bool]
 def equations_for(system: System) -> Equations:
     """Compiled sympy for what people read, sparse arrays for what they do not."""
     if system.n_gases <= SYMBOLIC_GASES and system.n_steps <= SYMBOLIC_STEPS:
-        from meanfree.equations.symbolic import CompiledEquations
+        from meanfree.equations.compiled import CompiledEquations
 
         return CompiledEquations(system)
     return ArrayEquations(system)
