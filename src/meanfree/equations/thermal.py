@@ -26,18 +26,22 @@ class Properties:
 def properties(table: Thermal, T: float) -> Properties:
     """Heat capacity, enthalpy and Gibbs energy of every gas at T [K].
 
-    T_k(x) = cos(k arccos x) for all terms at once; beyond the ends of its range x stays there.
+    T_k(x) = cos(k arccos x) for all terms at once. Beyond the ends of a series, where a trial step
+    may look, Cp stays what it is at the end, and H and S follow from that.
     """
     span = np.log(table.high / table.low)
-    x = np.clip(np.log(T * T / (table.low * table.high)) / span, -1.0, 1.0)
+    inside = np.clip(T, table.low, table.high)
+    x = np.clip(np.log(inside * inside / (table.low * table.high)) / span, -1.0, 1.0)
     terms = np.cos(np.arange(len(table.h))[:, None] * np.arccos(x))
 
     def evaluate(series: Floats) -> Floats:
         return np.asarray(np.einsum("kn,kn->n", series, terms[: len(series)]), float)
 
-    h = evaluate(table.h)
-    slope = evaluate(table.cp_slope) * 2 / (T * span)
-    return Properties(evaluate(table.cp), np.asarray(slope, float), h, h - T * evaluate(table.s))
+    cp = evaluate(table.cp)
+    slope = np.where(inside == T, evaluate(table.cp_slope) * 2 / (T * span), 0.0)
+    h = evaluate(table.h) + cp * (T - inside)
+    s = evaluate(table.s) + cp * np.log(T / inside)
+    return Properties(cp, slope, h, h - T * s)
 
 
 def ln_Kc(
