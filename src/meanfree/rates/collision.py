@@ -7,7 +7,8 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Any, ClassVar
 
-from meanfree.constants import N_A, R
+from meanfree.constants import R
+from meanfree.rates.encounter import reduced_mass, speed_factor, symmetry
 from meanfree.rates.law import Functions, Law, StepContext
 from meanfree.sourced import Sourced
 
@@ -37,17 +38,14 @@ class Collision(Law):
     def coefficient(fn: Functions, T: Any, p: Any, M: Any, numbers: Sequence[Any]) -> Any:
         """P s sigma sqrt(8 k_B T / pi mu) N_A exp(-E0/RT), s = 1/2 for like partners."""
         P, s, sigma, mu, E0 = numbers
-        speed = fn.sqrt(8 * fn.k_B * T / (fn.pi * mu))
-        return P * s * sigma * speed * fn.N_A * fn.exp(-E0 / (fn.R * T))
+        return P * s * sigma * speed_factor(fn, T, mu) * fn.exp(-E0 / (fn.R * T))
 
     def numbers(self, context: StepContext) -> tuple[float, ...]:
         """(P, s, sigma [m^2], mu [kg], E0 [J/mol])"""
-        first, second = context.partners
         sigma = math.pi * self.pair_diameter(context) ** 2
-        like = 0.5 if first.name == second.name else 1.0
         return (
             self.steric_factor(context),
-            like,
+            symmetry(context),
             sigma,
             reduced_mass(context),
             self.threshold_energy(context),
@@ -86,11 +84,3 @@ class Collision(Law):
         T = self.Ea_at.value if self.Ea_at is not None else context.temperature
         assert T is not None, "the loader asks for Ea_at where the temperature varies"
         return T
-
-
-def reduced_mass(context: StepContext) -> float:
-    """mu = m_A m_B / (m_A + m_B) of a step's two partners [kg]."""
-    first, second = (gas.molar_mass for gas in context.partners)
-    assert first is not None, "the loader asks for both masses"
-    assert second is not None, "the loader asks for both masses"
-    return first.value * second.value / (first.value + second.value) / N_A

@@ -106,20 +106,24 @@ class StepContext:
     has_bath: bool = False
 
 
-class Template(Protocol):
-    """A formula and the names of the numbers it takes: what equations see of a law.
+class Formula:
+    """One of the formulas of a law that has several; a subclass is a frozen dataclass.
 
-    A law with one formula for all its steps is its own template. One whose formula varies
-    (with the number of points of a table, say) gives a frozen object for each variant; equal
-    templates are differentiated and compiled once. Hashable.
+    A law with one formula for all its steps is its own formula, as a class. One whose formula
+    varies (with the number of points of a table, say) gives one of these: equal ones are
+    differentiated and compiled once.
     """
 
-    word: str
-    slots: tuple[str, ...]
+    word: ClassVar[str] = ""
 
-    def coefficient(
-        self, fn: Functions, T: Any, p: Any, M: Any, numbers: Sequence[Any], /
-    ) -> Any: ...
+    @property
+    def slots(self) -> tuple[str, ...]:
+        """Names of the numbers that `coefficient` takes, in order."""
+        raise NotImplementedError
+
+    def coefficient(self, fn: Functions, T: Any, p: Any, M: Any, numbers: Sequence[Any]) -> Any:
+        """As `Law.coefficient`."""
+        raise NotImplementedError
 
 
 class Law:
@@ -195,3 +199,7 @@ def _numbers_in(address: str, part: object) -> Iterator[tuple[str, Sourced]]:
     elif is_dataclass(part) and not isinstance(part, type):
         for f in fields(part):
             yield from _numbers_in(f"{address}.{f.name}", getattr(part, f.name))
+
+
+Template = type[Law] | Formula
+"""What equations see of a law: its word, its slots and its coefficient. Hashable."""

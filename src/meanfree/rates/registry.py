@@ -4,7 +4,17 @@ from __future__ import annotations
 
 from meanfree.rates.arrhenius import Arrhenius
 from meanfree.rates.collision import Collision
+from meanfree.rates.cross_section import CrossSection
 from meanfree.rates.fixed import Fixed
 from meanfree.rates.law import Law
+from meanfree.rates.table import Table
 
-LAWS: dict[str, type[Law]] = {law.word: law for law in (Fixed, Arrhenius, Collision)}
+_ALL: tuple[type[Law], ...] = (
+    Fixed,
+    Arrhenius,
+    Collision,
+    CrossSection,
+    Table,
+)
+
+LAWS: dict[str, type[Law]] = {law.word: law for law in _ALL}
