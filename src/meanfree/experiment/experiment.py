@@ -49,6 +49,12 @@ class Experiment:
         return {gas.name: filled.get(gas.name, 0.0) for gas in self.gases}
 
     @cached_property
+    def mole_fractions(self) -> Mapping[str, float]:
+        """Mole fraction of every gas at time zero; empty where nothing is filled."""
+        total = sum(self.moles.values())
+        return {gas: n / total for gas, n in self.moles.items()} if total > 0 else {}
+
+    @cached_property
     def initial_volume(self) -> float:
         """Volume of the hot part at time zero [m^3].
 
@@ -100,14 +106,13 @@ class Experiment:
 
     def context(self, step: Step) -> StepContext:
         """What the law of a step may know."""
-        total = sum(self.moles.values())
         return StepContext(
             partners=tuple(self.gas_named[name] for name in step.partners),
             order=step.order,
             temperature=self.constant_temperature,
             pressure=self.initial_pressure,
             surroundings=self.vessel,
-            bath={gas: n / total for gas, n in self.moles.items()} if total > 0 else {},
+            bath=self.mole_fractions,
             gases=self.gas_named,
             reactants=tuple(
                 self.gas_named[name] for name, n in step.reactants for _ in range(math.ceil(n))
