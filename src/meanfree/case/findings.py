@@ -35,12 +35,16 @@ class Findings:
 
 def did_you_mean(word: str, known: Iterable[str]) -> str:
     """`` (did you mean "threshold"?)``, or nothing where no known word is near."""
+    near = nearest(word, known)
+    return f' (did you mean "{near}"?)' if near else ""
+
+
+def nearest(word: str, known: Iterable[str]) -> str:
+    """The known word that is nearest to ``word``, empty where none is near."""
     words = list(known)
     folded = {w.lower(): w for w in words}
-    near = folded.get(word.lower()) or next(
-        iter(difflib.get_close_matches(word, words, n=1, cutoff=0.6)), ""
-    )
-    return f' (did you mean "{near}"?)' if near else ""
+    close = difflib.get_close_matches(word, words, n=1, cutoff=0.6)
+    return folded.get(word.lower()) or next(iter(close), "")
 
 
 def one_of(words: Iterable[str]) -> str:

@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import re
 import tomllib
+import unicodedata
 from pathlib import Path
 from typing import Any
 
@@ -40,11 +42,25 @@ def parse(text: str) -> dict[str, Any]:
     try:
         return tomllib.loads(text.replace("\r\n", "\n"))
     except tomllib.TOMLDecodeError as error:
-        raise _at(f"what is not TOML: {_short(str(error))}", _TOML) from None
+        found = f"what is not TOML: {_short(str(error))}{_look_alike(text, str(error))}"
+        raise _at(found, _TOML) from None
     except RecursionError:
         raise _at("tables or lists nested too deeply to read", _TOML) from None
     except ValueError:  # an integer beyond the interpreter's limit of digits
         raise _at("a number with thousands of digits", "numbers that a person could read") from None
+
+
+def _look_alike(text: str, message: str) -> str:
+    """A character of another alphabet in the key of the line that TOML refuses."""
+    place = re.search(r"at line ([0-9]+)", message)
+    lines = text.splitlines()
+    if place is None or not 0 < int(place.group(1)) <= len(lines):
+        return ""
+    for character in re.sub('"[^"]*"|#.*', "", lines[int(place.group(1)) - 1]):
+        if not character.isascii():
+            name = unicodedata.name(character, "a control character")
+            return f"; in that line a character is U+{ord(character):04X} ({name})"
+    return ""
 
 
 def _short(message: str) -> str:

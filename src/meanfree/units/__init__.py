@@ -6,12 +6,19 @@ and nothing is guessed. Everything about pint stays in this room, imported on fi
 
 from __future__ import annotations
 
-from meanfree.units.dimensions import equilibrium_constant, phrase, rate_constant, si_unit
+from meanfree.units.dimensions import (
+    any_phrase,
+    equilibrium_constant,
+    phrase,
+    rate_constant,
+    si_unit,
+)
 from meanfree.units.gate import QuantityError
 from meanfree.units.reading import from_si, read, read_any, read_number, to_si
 
 __all__ = [
     "QuantityError",
+    "any_phrase",
     "equilibrium_constant",
     "from_si",
     "phrase",

@@ -158,13 +158,25 @@ def named(word: str) -> Dimension:
         power = float(word.removeprefix(_KP))
         powers = {"mass": power, "length": -power, "time": -2 * power}
         example = "0.12 " + _raised("bar", power)
-        return Dimension(word, powers, _raised("Pa", power), example, above=True, article="an")
+        known = "equilibrium constant Kp"
+        return Dimension(
+            word, powers, _raised("Pa", power), example, above=True, article="an", known=known
+        )
     if word.startswith(_KC):
         power = float(word.removeprefix(_KC))
         powers = {"substance": power, "length": -3 * power}
         si = "mol/m^3" if power == 1 else f"mol^{power:g}/m^{3 * power:g}"
         example = "0.02 mol/L" if power == 1 else f"0.02 mol^{power:g}*L^{-power:g}"
-        return Dimension(word, powers, si, example, above=True, molecules=True, article="an")
+        return Dimension(
+            word,
+            powers,
+            si,
+            example,
+            above=True,
+            molecules=True,
+            article="an",
+            known="equilibrium constant Kc",
+        )
     raise KeyError(word)
 
 
@@ -193,6 +205,14 @@ def _rate_constant(word: str, order: float) -> Dimension:
 def phrase(word: str) -> str:
     """What would be right, for a message: ``a pressure such as "50 torr"``."""
     return named(word).phrase
+
+
+def any_phrase(words: tuple[str, ...]) -> str:
+    """What would be right where several kinds are allowed, with one example."""
+    if len(words) == 1:
+        return phrase(words[0])
+    names = [f"{named(w).article} {named(w).known or w}" for w in words]
+    return f'{", ".join(names[:-1])} or {names[-1]}, such as "{named(words[0]).example}"'
 
 
 def si_unit(word: str) -> str:

@@ -10,7 +10,7 @@ from typing import NamedTuple
 from meanfree import constants
 from meanfree.sourced import Sourced
 from meanfree.units import registry
-from meanfree.units.dimensions import Dimension, named, word_for
+from meanfree.units.dimensions import Dimension, any_phrase, named, word_for
 from meanfree.units.gate import (
     Factors,
     QuantityError,
@@ -100,8 +100,10 @@ def described(value: object) -> str:
     """A value of a case file that is no text, for a message."""
     if isinstance(value, bool):
         return "true" if value else "false"
+    if isinstance(value, int) and abs(value) >= 10**15:
+        return "a very large number"
     if isinstance(value, int | float):
-        return f"{value:g}" if abs(value) < 1e15 else "a very large number"
+        return f"{value:g}"
     if isinstance(value, str):
         return quoted(value)
     return (
@@ -111,7 +113,7 @@ def described(value: object) -> str:
 
 def _read(text: object, words: tuple[str, ...], source: str) -> Sourced:
     dimensions = [named(word) for word in words]
-    expected = " or ".join(dimension.phrase for dimension in dimensions)
+    expected = any_phrase(words)
     if not isinstance(text, str):
         numeric = isinstance(text, int | float) and not isinstance(text, bool)
         found = f"{described(text)}, a bare number" if numeric else described(text)

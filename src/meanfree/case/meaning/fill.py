@@ -11,7 +11,7 @@ from meanfree.case.schema.tables import FillTable
 from meanfree.experiment.fill import Fill, Kind, Portion
 from meanfree.experiment.vessel import Vessel
 from meanfree.sourced import Sourced
-from meanfree.units import QuantityError, read_any, read_number
+from meanfree.units import QuantityError, any_phrase, read_any, read_number
 
 # Number densities before concentrations: "molecule/cm^3" is meant as the former.
 MEASURES = ("pressure", "amount", "number density", "concentration")
@@ -71,7 +71,9 @@ def _portion(key: str, value: Any, with_total: bool, findings: Findings) -> Port
         else:
             quantity = read_any(value, MEASURES)
     except QuantityError as error:
-        findings.refused(key, error)
+        wanted = (*MEASURES, "fraction") if with_total else MEASURES
+        expected = error.expected.replace(any_phrase((*MEASURES, "fraction")), any_phrase(wanted))
+        findings.wrong(key, error.found, expected)
         return None
     if quantity.dimension == "fraction" and not with_total:
         found = "a fraction without a total"

@@ -107,7 +107,7 @@ def _term_problem(term: str, name: str, number: float) -> tuple[str, str] | None
         ) + " where a gas should stand", f"a gas on each side of every +, as in {_EXAMPLE}"
     if not 0 < number <= LARGEST:
         return quoted(term), f"a coefficient above 0 and at most {LARGEST:g}"
-    if name.lower().startswith("(+"):
+    if "(+" in name:
         return quoted(term), 'the bath partner written " + M"'
     if "+" in name.rstrip("+") or re.search(r"\s", name):
         return quoted(term), f"spaces around each + and single words as names, as in {_EXAMPLE}"

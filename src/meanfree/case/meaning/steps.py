@@ -6,7 +6,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import Any
 
-from meanfree.case.findings import Findings, did_you_mean, one_of
+from meanfree.case.findings import Findings, did_you_mean, nearest, one_of
 from meanfree.case.laws.registry import LAW_SHAPES
 from meanfree.case.meaning.names import step_name_problem
 from meanfree.case.meaning.reaction import Reaction, ReactionError, imbalance, parse_reaction
@@ -70,8 +70,10 @@ def _written_step(place: int, raw: Any, names: set[str], findings: Findings) -> 
                 found = f'a second step named "{name.strip()}"'
                 findings.wrong(f"{address}.name", found, "a name of its own for each step")
             names.add(name.strip())
-    model = _model(raw, address, findings)
-    table = shape(model, raw, address, findings)
+    law = _law_word(raw, address, findings)
+    if law is not None:
+        raw = {**raw, "law": law}
+    table = shape(LAW_SHAPES.get(law or "", UnknownLawStep), raw, address, findings)
     if table is None:
         return None
     reaction = None
@@ -84,14 +86,15 @@ def _written_step(place: int, raw: Any, names: set[str], findings: Findings) -> 
     return Written(address, table, reaction, table.reverse)
 
 
-def _model(raw: Any, address: str, findings: Findings) -> type[StepTable]:
+def _law_word(raw: Any, address: str, findings: Findings) -> str | None:
+    """The law's word; of a misspelt one the word that was meant, for the other keys' sake."""
     law = raw.get("law") if isinstance(raw, dict) else None
-    if isinstance(law, str) and law in LAW_SHAPES:
-        return LAW_SHAPES[law]
-    if isinstance(raw, dict) and "law" in raw:
-        near = did_you_mean(law, LAW_SHAPES) if isinstance(law, str) else ""
-        findings.wrong(f"{address}.law", described(law), one_of(LAW_SHAPES) + near)
-    return UnknownLawStep
+    if law is None or (isinstance(law, str) and law in LAW_SHAPES):
+        return law
+    near = nearest(law, LAW_SHAPES) if isinstance(law, str) else ""
+    hint = f' (did you mean "{near}"?)' if near else ""
+    findings.wrong(f"{address}.law", described(law), one_of(LAW_SHAPES) + hint)
+    return near or None
 
 
 def read_step(
@@ -165,9 +168,6 @@ def _orders(reading: StepReading) -> dict[str, float] | None:
         if gas not in reading.gases:
             expected = "gases of the case" + did_you_mean(gas, reading.gases)
             reading.wrong(f"orders.{gas}", "a gas that is not in the case", expected)
-    for gas, order in stated.items():
-        if order.value > 10:
-            reading.wrong(f"orders.{gas}", f"{order.value:g}", "an order of at most 10")
     for gas, _ in reaction.reactants:
         if gas not in stated:
             found = f"orders without {gas}, which is on the left"

@@ -50,7 +50,8 @@ def gases_with_energies(
     found = dict(gases)
     for name, needed_by in energies_needed(gases, reversible, balance).items():
         gas = gases.get(name)
-        if gas is not None:
+        # A label in a reverse by thermochemistry has been refused at its step.
+        if gas is not None and not (gas.is_label and not balance):
             used = None if temperature is None else span(temperature)
             found[name] = with_energies(gas, tables.get(name), used, needed_by, findings)
     return found

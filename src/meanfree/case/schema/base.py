@@ -23,7 +23,7 @@ from pydantic_core import PydanticCustomError, core_schema
 
 from meanfree.case.findings import Findings, did_you_mean, one_of
 from meanfree.sourced import Sourced
-from meanfree.units import QuantityError, phrase, read_any, read_number
+from meanfree.units import QuantityError, any_phrase, read_any, read_number
 from meanfree.units.dimensions import named
 from meanfree.units.gate import quoted
 from meanfree.units.reading import described
@@ -45,6 +45,11 @@ class Table(BaseModel):
     @classmethod
     def _skip_wrong(cls, value: Any, handler: ValidatorFunctionWrapHandler) -> Any:
         return None if value is _WRONG else handler(value)
+
+    @classmethod
+    def hint(cls, key: str) -> str:
+        """What is meant by an unknown key that is often written, empty if nothing is known."""
+        return cls.hints.get(key, "")
 
     def is_wrong(self, field: str) -> bool:
         """True where the field was there, or should have been, and was refused."""
@@ -142,8 +147,9 @@ def _unknown_key(owner: type[Table], words: list[str], key: str, findings: Findi
             key, "a key after a table header", expected + "a key belongs to the table above it"
         )
         return
-    if words[-1] in owner.hints:
-        findings.wrong(key, "an unknown key", owner.hints[words[-1]])
+    hint = owner.hint(words[-1])
+    if hint:
+        findings.wrong(key, "an unknown key", hint)
         return
     names = list(owner.model_fields)
     near = did_you_mean(words[-1], names)
@@ -168,7 +174,7 @@ class Quantity:
     @property
     def phrase(self) -> str:
         """What would be right."""
-        return " or ".join(phrase(dimension) for dimension in self.dimensions)
+        return any_phrase(self.dimensions)
 
     def _read(self, value: object) -> Sourced:
         try:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING, Annotated, Any, ClassVar
 
-from pydantic import Field
+from pydantic import ConfigDict, Field, Strict
 
 from meanfree.case.schema.base import (
     Later,
@@ -23,6 +23,7 @@ if TYPE_CHECKING:
     from meanfree.rates.law import Law
 
 Factor = Annotated[Sourced, Number(0, 1e6)]
+Order = Annotated[Sourced, Number(0, 10)]
 
 
 class ReverseTable(Table):
@@ -56,7 +57,6 @@ class StepTable(Table):
     """
 
     hints: ClassVar[dict[str, str]] = {
-        "Ea": 'no Ea with this law (law = "arrhenius" and law = "collision" take one)',
         "rate": "k, A or what the law takes",
         "reversible": 'reverse = "thermochemistry", or a table with Kp, Kc or K',
     }
@@ -66,7 +66,7 @@ class StepTable(Table):
     k_counts: Line = Field(
         "events", description='"events", "loss of A" or "formation of X": what a quoted k counts'
     )
-    orders: dict[str, Factor] | None = Field(
+    orders: dict[str, Order] | None = Field(
         None, description="orders, where they are not the coefficients"
     )
     partners: dict[str, Factor] | None = Field(
@@ -80,10 +80,20 @@ class StepTable(Table):
         None, description="energy or wavelength of the light that one event takes in"
     )
     uncertainty: UncertaintyTable | None = Field(None, description="how good k is")
-    valid: tuple[Temperature, Temperature] | None = Field(
+    valid: Annotated[tuple[Temperature, Temperature], Strict(False)] | None = Field(
         None, description='range in which the law was found, such as ["400 K", "600 K"]'
     )
     source: Prose = Field("", description="where the numbers come from")
+
+    @classmethod
+    def hint(cls, key: str) -> str:
+        """A key of another law is named as such."""
+        from meanfree.case.laws.registry import LAW_SHAPES
+
+        laws = [word for word, model in LAW_SHAPES.items() if key in model.model_fields]
+        if laws:
+            return f"a key of this law; {key} belongs to " + " and ".join(f'"{w}"' for w in laws)
+        return super().hint(key)
 
     def to_law(self, reading: StepReading) -> Law | None:
         """The law with its numbers in SI, None where something is wrong with them.
@@ -94,7 +104,9 @@ class StepTable(Table):
 
 
 class UnknownLawStep(StepTable):
-    """A step whose law is missing or unknown: its other keys are checked all the same."""
+    """A step whose law is missing or unknown: the keys that all laws share are checked."""
+
+    model_config = ConfigDict(extra="ignore")
 
     def to_law(self, reading: StepReading) -> Law | None:
         """Nothing, and nothing to add: the law was refused already."""

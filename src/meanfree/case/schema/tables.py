@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import Annotated, Any, ClassVar, Literal
 
-from pydantic import Field
+from pydantic import Field, Strict
 
 from meanfree.case.schema.base import (
     Area,
@@ -87,7 +87,7 @@ class ProgramTable(Table):
     """The gas follows a temperature program, linear between its points, constant after."""
 
     mode: Literal["program"]
-    points: list[tuple[Time, Temperature]] = Field(
+    points: list[Annotated[tuple[Time, Temperature], Strict(False)]] = Field(
         description='points such as [["0 s", "296 K"], ["4 min", "480 K"]]', min_length=1
     )
 
