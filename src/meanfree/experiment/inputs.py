@@ -63,7 +63,8 @@ def with_inputs(experiment: Experiment, values: Mapping[str, float]) -> Experime
     changed: Any = experiment
     for address, value in values.items():
         path, quantity = known[address]
-        si = units.to_si(float(value), quantity.unit, quantity.dimension) / quantity.per
+        dimension = quantity.dimension or "pure"
+        si = units.to_si(float(value), quantity.unit, dimension) / quantity.per
         changed = _replaced(changed, path, quantity.with_value(si))
     result: Experiment = changed
     return result
@@ -75,7 +76,8 @@ def _input(address: str, quantity: Sourced) -> Input:
         low = -high
     if quantity.dimension == "fraction":
         high = 1.0
-    value = units.from_si(quantity.value * quantity.per, quantity.unit, quantity.dimension)
+    dimension = quantity.dimension or "pure"  # a default power or factor names none
+    value = units.from_si(quantity.value * quantity.per, quantity.unit, dimension)
     if quantity.dimension == "temperature":
         low = units.from_si(0.0, quantity.unit, "temperature")
     return Input(address, value, quantity.unit, quantity.source, low, high, quantity)
