@@ -63,11 +63,16 @@ def with_inputs(experiment: Experiment, values: Mapping[str, float]) -> Experime
     changed: Any = experiment
     for address, value in values.items():
         path, quantity = known[address]
-        dimension = quantity.dimension or "pure"
+        dimension = _dimension(address, quantity)
         si = units.to_si(float(value), quantity.unit, dimension) / quantity.per
         changed = _replaced(changed, path, quantity.with_value(si))
     result: Experiment = changed
     return result
+
+
+def _dimension(address: str, quantity: Sourced) -> str:
+    """The dimension of a number; sizes out of tables and default powers do not name theirs."""
+    return quantity.dimension or ("length" if address.endswith(".diameter") else "pure")
 
 
 def _input(address: str, quantity: Sourced) -> Input:
@@ -76,7 +81,7 @@ def _input(address: str, quantity: Sourced) -> Input:
         low = -high
     if quantity.dimension == "fraction":
         high = 1.0
-    dimension = quantity.dimension or "pure"  # a default power or factor names none
+    dimension = _dimension(address, quantity)
     value = units.from_si(quantity.value * quantity.per, quantity.unit, dimension)
     if quantity.dimension == "temperature":
         low = units.from_si(0.0, quantity.unit, "temperature")
