@@ -11,6 +11,7 @@ from typing import Annotated
 import typer
 
 from meanfree.cli import check, schema, start
+from meanfree.cli import run as predict
 from meanfree.cli.errors import report_errors
 
 app = typer.Typer(
@@ -46,6 +47,7 @@ def _options(
 
 app.command("start")(start.start)
 app.command("check")(check.check)
+app.command("run")(predict.run)
 app.command("schema")(schema.schema)
 
 

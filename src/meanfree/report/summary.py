@@ -1,0 +1,302 @@
+"""`summary.json`: the answers of one run for a program.
+
+Keys end in their unit; null means "not reached" or "not known".
+"""
+
+from __future__ import annotations
+
+from typing import Literal
+
+from pydantic import BaseModel, ConfigDict, Field
+
+from meanfree.errors import ComputationError
+from meanfree.experiment.equilibrium import Equilibrium, equilibrium, why_none
+from meanfree.experiment.experiment import Experiment
+from meanfree.integrate.run import Run
+from meanfree.report.cautions import cautions_of
+from meanfree.report.kinetics import RateConstant, rate_constants
+
+LEVELS = (0.1, 0.25, 0.5, 0.75, 0.9, 0.99)
+"""Conversions whose times every table lists."""
+
+
+class _Record(BaseModel):
+    model_config = ConfigDict(frozen=True, extra="forbid")
+
+
+class ReactionTime(_Record):
+    """The first time at which a conversion is reached."""
+
+    conversion: float
+    time_s: float | None
+
+
+class GasAnswer(_Record):
+    """What became of one filled gas that a step consumes."""
+
+    gas: str
+    time_to_10_percent_s: float | None
+    time_to_50_percent_s: float | None
+    time_to_90_percent_s: float | None
+    reaction_times: list[ReactionTime]
+    half_lives_s: list[float | None]
+    filled_mol: float
+    conversion_at_end: float
+    equilibrium_conversion: float | None
+    time_to_half_of_equilibrium_s: float | None
+    time_to_90_percent_of_equilibrium_s: float | None
+
+
+class GasAmount(_Record):
+    """How much there is of one gas at the start, at the end, at most, and at equilibrium."""
+
+    gas: str
+    start_mol: float
+    end_mol: float
+    end_mol_per_m3: float
+    end_Pa: float
+    peak_mol: float
+    peak_time_s: float
+    equilibrium_mol: float | None
+
+
+class VesselAnswer(_Record):
+    """What the gauge, the piston and the thermometer show."""
+
+    filling_pressure_Pa: float
+    initial_pressure_Pa: float
+    final_pressure_Pa: float
+    highest_pressure_Pa: float
+    initial_volume_m3: float
+    final_volume_m3: float
+    initial_temperature_K: float
+    final_temperature_K: float
+    lowest_temperature_K: float
+    highest_temperature_K: float
+
+
+class EquilibriumAnswer(_Record):
+    """Where the vessel must end, found without integrating; or why that cannot be said."""
+
+    pressure_Pa: float | None
+    volume_m3: float | None
+    temperature_K: float | None
+    why_none: str | None
+
+
+class StepAnswer(_Record):
+    """One rate constant against its collision limit.
+
+    ``k`` counts events, in SI; ``k_in_case`` is the same as the case counts and writes it.
+    """
+
+    step: str
+    reaction: str
+    law: str
+    T_K: float
+    counts: Literal["events"]
+    k: float
+    k_unit: str
+    counts_in_case: str
+    k_in_case: float
+    k_in_case_unit: str
+    Ea_J_per_mol: float | None
+    Z_m3_per_mol_s: float | None
+    E0_J_per_mol: float | None
+    steric_factor: float | None
+    A_over_Z: float | None
+    verdict: str
+    source: str
+
+
+class SolverWork(_Record):
+    """The integrator, its tolerance and the work it did."""
+
+    method: str
+    rtol: float
+    steps: int
+    nfev: int
+    njev: int
+    nlu: int
+
+
+class Drift(_Record):
+    """How well the run kept what it must keep; relative, null: does not apply."""
+
+    elements: dict[str, float]
+    energy: float | None
+    volume: float | None
+    most_negative: float
+
+
+class RunSummary(_Record):
+    """Everything that `meanfree run` answers."""
+
+    model_config = ConfigDict(frozen=True, extra="forbid", populate_by_name=True)
+
+    schema_: Literal["meanfree-run-1"] = Field(
+        default="meanfree-run-1", validation_alias="schema", serialization_alias="schema"
+    )
+    case: str
+    case_sha256: str
+    version: str
+    title: str
+    purpose: str
+    status: str
+    message: str
+    watched_gas: str | None
+    length_s: float
+    gases: list[GasAnswer]
+    vessel: VesselAnswer
+    equilibrium: EquilibriumAnswer
+    amounts: list[GasAmount]
+    rate_constants: list[StepAnswer]
+    cautions: list[str]
+    notes: list[str]
+    solver: SolverWork
+    drift: Drift
+
+    def to_json(self) -> str:
+        """The text of `summary.json`."""
+        return self.model_dump_json(by_alias=True, indent=2) + "\n"
+
+    def gas(self, name: str) -> GasAnswer | None:
+        """The answers about one gas."""
+        return next((answer for answer in self.gases if answer.gas == name), None)
+
+
+def summarise(run: Run, *, case: str, case_sha256: str, version: str) -> RunSummary:
+    """The summary of a run."""
+    experiment = run.experiment
+    resting, reason = find_equilibrium(experiment)
+    rows = rate_constants(run)
+    return RunSummary(
+        case=case,
+        case_sha256=case_sha256,
+        version=version,
+        title=experiment.title,
+        purpose=experiment.purpose,
+        status=run.status.name.lower(),
+        message=run.message,
+        watched_gas=experiment.watched,
+        length_s=float(run.end),
+        gases=[_gas_answer(run, gas, resting) for gas in run.consumed],
+        vessel=_vessel_answer(run),
+        equilibrium=EquilibriumAnswer(
+            pressure_Pa=None if resting is None else resting.pressure,
+            volume_m3=None if resting is None else resting.volume,
+            temperature_K=None if resting is None else resting.temperature,
+            why_none=reason or None,
+        ),
+        amounts=[_amount(run, gas.name, resting) for gas in experiment.gases],
+        rate_constants=[_step_answer(row) for row in rows],
+        cautions=list(cautions_of(run, rows)),
+        notes=list(experiment.notes),
+        solver=SolverWork(
+            method=run.method,
+            rtol=run.rtol,
+            steps=run.counters.n_steps,
+            nfev=run.counters.nfev,
+            njev=run.counters.njev,
+            nlu=run.counters.nlu,
+        ),
+        drift=Drift(
+            elements=run.invariants.elements,
+            energy=run.invariants.energy,
+            volume=run.invariants.volume,
+            most_negative=run.invariants.most_negative,
+        ),
+    )
+
+
+def find_equilibrium(experiment: Experiment) -> tuple[Equilibrium | None, str]:
+    """Where the vessel ends, and the reason where that cannot be said."""
+    reason = why_none(experiment)
+    if reason:
+        return None, reason
+    try:
+        return equilibrium(experiment), ""
+    except ComputationError as error:
+        return None, str(error)
+
+
+def _gas_answer(run: Run, gas: str, resting: Equilibrium | None) -> GasAnswer:
+    times = {level: run.reaction_time(gas, level) for level in LEVELS}
+    filled = float(run.experiment.moles[gas])
+    settled = None if resting is None else 1.0 - resting.moles[gas] / filled
+    consumed = settled is not None and settled > 0
+    return GasAnswer(
+        gas=gas,
+        time_to_10_percent_s=times[0.1],
+        time_to_50_percent_s=times[0.5],
+        time_to_90_percent_s=times[0.9],
+        reaction_times=[ReactionTime(conversion=x, time_s=t) for x, t in times.items()],
+        half_lives_s=[half.duration for half in run.half_lives(gas)],
+        filled_mol=filled,
+        conversion_at_end=float(run.conversion(gas, run.end)[0]),
+        equilibrium_conversion=settled,
+        time_to_half_of_equilibrium_s=run.reaction_time(gas, 0.5 * settled)
+        if consumed and settled is not None
+        else None,
+        time_to_90_percent_of_equilibrium_s=run.reaction_time(gas, 0.9 * settled)
+        if consumed and settled is not None
+        else None,
+    )
+
+
+def _amount(run: Run, gas: str, resting: Equilibrium | None) -> GasAmount:
+    i = run.index(gas)
+    time, peak = run.peak(gas)
+    return GasAmount(
+        gas=gas,
+        start_mol=float(run.experiment.moles[gas]),
+        end_mol=float(run.amounts(run.end)[i, 0]),
+        end_mol_per_m3=float(run.concentrations(run.end)[i, 0]),
+        end_Pa=float(run.partial_pressures(run.end)[i, 0]),
+        peak_mol=peak,
+        peak_time_s=time,
+        equilibrium_mol=None if resting is None else resting.moles[gas],
+    )
+
+
+def _vessel_answer(run: Run) -> VesselAnswer:
+    experiment = run.experiment
+    times = run.trajectory.times
+    p, V, T = run.pressure(times), run.volume(times), run.temperature(times)
+    return VesselAnswer(
+        filling_pressure_Pa=experiment.fill.pressure(
+            experiment.vessel, experiment.temperature.initial
+        ),
+        initial_pressure_Pa=float(p[0]),
+        final_pressure_Pa=float(p[-1]),
+        highest_pressure_Pa=float(p.max()),
+        initial_volume_m3=float(V[0]),
+        final_volume_m3=float(V[-1]),
+        initial_temperature_K=float(T[0]),
+        final_temperature_K=float(T[-1]),
+        lowest_temperature_K=float(T.min()),
+        highest_temperature_K=float(T.max()),
+    )
+
+
+def _step_answer(row: RateConstant) -> StepAnswer:
+    judgement = row.judgement
+    return StepAnswer(
+        step=row.step,
+        reaction=row.reaction,
+        law=row.law,
+        T_K=row.temperature,
+        counts="events",
+        k=row.k,
+        k_unit=row.unit,
+        counts_in_case=row.counts,
+        k_in_case=row.in_case,
+        k_in_case_unit=row.shown_unit,
+        Ea_J_per_mol=row.Ea,
+        Z_m3_per_mol_s=None if row.ceiling is None else row.ceiling.Z,
+        E0_J_per_mol=None if judgement is None else judgement.threshold,
+        steric_factor=None if judgement is None else judgement.steric,
+        A_over_Z=None if judgement is None else judgement.A_over_Z,
+        verdict=row.verdict,
+        source=row.source,
+    )
