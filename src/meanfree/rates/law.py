@@ -133,7 +133,8 @@ class Law:
     ----------
     word : the law's name in a case file.
     slots : names of the numbers that `coefficient` takes, in order.
-    counted : the field whose size follows `k_counts` (a rate constant), or "".
+    counted : address in `inputs()` of a number whose size follows `k_counts` (a rate constant, or
+        the first of several that follow it alike), or "".
     bath_inside : True where `coefficient` itself uses M (falloff); otherwise a step
         written with ``+ M`` multiplies the coefficient by M.
     """

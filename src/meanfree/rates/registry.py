@@ -5,9 +5,11 @@ from __future__ import annotations
 from meanfree.rates.arrhenius import Arrhenius
 from meanfree.rates.collision import Collision
 from meanfree.rates.cross_section import CrossSection
+from meanfree.rates.falloff import Falloff
 from meanfree.rates.fixed import Fixed
 from meanfree.rates.law import Law
 from meanfree.rates.table import Table
+from meanfree.rates.termolecular import Termolecular
 
 _ALL: tuple[type[Law], ...] = (
     Fixed,
@@ -15,6 +17,8 @@ _ALL: tuple[type[Law], ...] = (
     Collision,
     CrossSection,
     Table,
+    Falloff,
+    Termolecular,
 )
 
 LAWS: dict[str, type[Law]] = {law.word: law for law in _ALL}

@@ -60,7 +60,7 @@ class Table(Law):
     points: tuple[TablePoint, ...]
     extrapolate: bool = False
     word: ClassVar[str] = "table"
-    counted: ClassVar[str] = "points"
+    counted: ClassVar[str] = "points.0.k"
 
     def template(self, context: StepContext) -> Formula:
         """The formula for this number of points."""
