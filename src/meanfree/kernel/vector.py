@@ -7,6 +7,7 @@ its own vectoriser gives up on long loops and never uses the widest registers.
 from __future__ import annotations
 
 import math
+from collections.abc import Callable
 from typing import Any
 
 from llvmlite import ir
@@ -178,17 +179,17 @@ def emit(builder: Any, base: Any, phase: Phase, lanes: int) -> None:
             vectors.store(base, slot, values[value])
 
 
-def compiled_phase(phase: Phase, lanes: int) -> Any:
+def compiled_phase(name: str, phase: Callable[[], Phase], lanes: int) -> Any:
     """A numba intrinsic f(address of the work array) that carries out a phase."""
 
     def run(typingctx: Any, base: Any) -> Any:
         def codegen(context: Any, builder: Any, signature: Any, arguments: Any) -> Any:
-            emit(builder, builder.inttoptr(arguments[0], DOUBLE.as_pointer()), phase, lanes)
+            emit(builder, builder.inttoptr(arguments[0], DOUBLE.as_pointer()), phase(), lanes)
             return context.get_dummy_value()
 
         return types.void(types.int64), codegen
 
-    run.__name__ = run.__qualname__ = phase.name
+    run.__name__ = run.__qualname__ = name
     return intrinsic(run)
 
 

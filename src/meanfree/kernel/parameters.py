@@ -1,0 +1,166 @@
+"""The block of numbers that lanes take in: one row a condition, one column a parameter.
+
+A `Variation` says in what conditions differ from a System; whatever it does not name is the
+System's. Rate constants that stay what they are during a run are evaluated here, for all conditions at
+once.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from functools import cached_property
+
+import numpy as np
+from numpy.polynomial import chebyshev
+
+from meanfree.constants import STANDARD_PRESSURE, R
+from meanfree.equations.system import Floats, System, Thermal
+from meanfree.kernel.slots import Layout, Name
+from meanfree.rates.law import NUMBERS
+
+
+@dataclass(frozen=True)
+class Variation:
+    """``count`` conditions of a System.
+
+    ``values`` maps names to arrays of shape (count,): ("number", block, slot, position), ("lnK_at",
+    row), ("at", row), ("enthalpy", row), ("x", gas), ("T",) the temperature at time zero, ("p",) the
+    held pressure, ("dead",), ("wall",), ("exchange",), ("surroundings",), ("V",) the volume at time zero.
+    """
+
+    system: System
+    count: int
+    values: Mapping[Name, Floats] = field(default_factory=dict)
+
+    def get(self, *name: str | int) -> Floats:
+        """The value of each condition [shape (count,)], or one value for all [shape (1,)]."""
+        if name in self.values:
+            return self.values[name]
+        return np.array([self._of_system(name)], float)
+
+    def _of_system(self, name: Name) -> float:
+        system, kind = self.system, name[0]
+        if kind == "number":
+            return float(system.blocks[int(name[1])].numbers[int(name[2]), int(name[3])])
+        if kind in ("lnK_at", "at", "enthalpy"):
+            return float(getattr(system.reverses, str(kind))[int(name[1])])
+        if kind == "x":
+            return float(system.initial_x[int(name[1])])
+        return {
+            "T": system.initial_temperature,
+            "p": system.held_pressure,
+            "dead": system.dead,
+            "wall": system.wall,
+            "exchange": system.exchange,
+            "surroundings": system.surroundings,
+            "V": system.initial_volume,
+        }[str(kind)]
+
+    @cached_property
+    def x(self) -> Floats:
+        """Amount of each gas over the volume at time zero [mol/m^3, shape (count, n_gases)]."""
+        columns = [
+            np.broadcast_to(self.get("x", i), self.count) for i in range(self.system.n_gases)
+        ]
+        return np.stack(columns, axis=1)
+
+    @cached_property
+    def total(self) -> Floats:
+        """Initial amount of all gases over V0 [mol/m^3, shape (count,)]; 1 where it is empty."""
+        total = self.x.sum(axis=1)
+        return np.where(total > 0, total, 1.0)
+
+    def part(self, start: int, stop: int) -> Variation:
+        """Conditions ``start`` to ``stop``."""
+        rows = slice(start, stop)
+        kept = {name: value if len(value) == 1 else value[rows] for name, value in self.values.items()}
+        return Variation(self.system, min(stop, self.count) - start, kept)
+
+    # Rate constants that last
+
+    def constants(self, j: int) -> Floats:
+        """k of a one-way step at the temperature at time zero [shape (count,) or (1,)]."""
+        system = self.system
+        for row, step in enumerate(system.reverses.step):
+            if int(step) == j:
+                forward = int(system.reverses.forward[row])
+                return np.asarray(self.constants(forward) * np.exp(-self._ln_Kc(row)), float)
+        for b, block in enumerate(system.blocks):
+            where = np.flatnonzero(block.steps == j)
+            if len(where):
+                position = int(where[0])
+                numbers = [
+                    self.get("number", b, slot, position) for slot in range(len(block.law.slots))
+                ]
+                T = self.get("T")
+                ones = np.ones_like(T)
+                k = block.law.coefficient(NUMBERS, T, ones, ones, numbers)
+                return np.atleast_1d(np.asarray(k, float))
+        raise KeyError(j)
+
+    def _ln_Kc(self, row: int) -> Floats:
+        """ln K_c at the temperature at time zero."""
+        system, reverses, T = self.system, self.system.reverses, self.get("T")
+        net = system.net.row(int(reverses.forward[row]))
+        change = sum(number for _, number in net)
+        if reverses.given[row]:
+            heat, at = self.get("enthalpy", row), self.get("at", row)
+            lnK = self.get("lnK_at", row) - heat / R * (1 / T - 1 / at)
+        else:
+            assert system.thermal is not None
+            dG = sum(number * gibbs_energy(system.thermal, gas, T) for gas, number in net)
+            lnK = -dG / (R * T)
+        return np.asarray(lnK + change * np.log(STANDARD_PRESSURE / (R * T)), float)
+
+
+def gibbs_energy(table: Thermal, gas: int, T: Floats) -> Floats:
+    """H - T S of one gas at temperatures [J/mol]; see `meanfree.equations.thermal`."""
+    low, high = table.low[gas], table.high[gas]
+    inside = np.clip(T, low, high)
+    x = np.clip(np.log(inside * inside / (low * high)) / np.log(high / low), -1.0, 1.0)
+    cp, h, s = (chebyshev.chebval(x, series[:, gas]) for series in (table.cp, table.h, table.s))
+    return np.asarray(h + cp * (T - inside) - T * (s + cp * np.log(T / inside)), float)
+
+
+def parameter_block(layout: Layout, variation: Variation) -> Floats:
+    """The parameters of a layout for all conditions [SI, shape (count, n_parameters)].
+
+    Slopes of a programmed temperature and switches of steps are those of the first segment.
+    """
+    block = np.empty((variation.count, len(layout.parameters)))
+    first = variation.system.segments[0]
+    for name, column in layout.parameters.items():
+        if name[0] == "k":
+            value = variation.constants(int(name[1]))
+        elif name[0] == "R_over_p":
+            value = R / variation.get("p")
+        elif name[0] == "scale":
+            value = variation.total
+        elif name[0] == "slope":
+            value = np.array([first.slope])
+        elif name[0] == "switch":
+            switches = first.switches
+            value = np.array([1.0 if switches is None else switches[int(name[1])]])
+        else:
+            value = variation.get(*name)
+        block[:, column] = value
+    return block
+
+
+def initial_states(layout: Layout, variation: Variation) -> Floats:
+    """The kernel's state at time zero [shape (count, size)]."""
+    system = variation.system
+    states = np.zeros((variation.count, layout.size))
+    states[:, : system.n_gases] = variation.x
+    if system.volume_varies:
+        states[:, system.volume_index] = 1.0
+    if layout.has_T:
+        states[:, layout.T_index] = variation.get("T")
+    return states
+
+
+def absolute_tolerances(variation: Variation, atol: float) -> Floats:
+    """Of gases, ledger and heat taken in, as in a single run [shape (count, 3)]."""
+    total = variation.total
+    return np.stack([atol * total, 1e-12 * total, 1e-9 * total * 8.3 * 300], axis=1)

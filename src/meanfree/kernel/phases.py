@@ -1,0 +1,257 @@
+"""The phases of one step of a Rosenbrock method for one System.
+
+``factor`` evaluates the Jacobian, factorises and makes the first stage; the other stages follow;
+the last one also judges the step. ``accept`` takes a new state over, ``start`` finds the time
+scale for a first step, ``assemble`` and ``evaluate`` serve the path with pivoting.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+
+from meanfree.equations.system import System
+from meanfree.kernel.balances import Balances, Matrix
+from meanfree.kernel.elimination import Plan, plan
+from meanfree.kernel.slots import Layout
+from meanfree.kernel.tableau import Tableau
+from meanfree.kernel.tape import Op, Phase, Tape
+
+SAFETY, SHRINK, GROW = 0.9, 0.2, 8.0
+"""A new step is the best guess times SAFETY, within these factors; common practice, no source."""
+
+
+@dataclass
+class Program:
+    """The phases with what one needs to know of their slots.
+
+    ``matrix`` maps a place of the matrix to the slot of its entry before factorisation;
+    ``end`` is the first slot that no phase uses.
+    """
+
+    layout: Layout
+    tableau: Tableau
+    plan: Plan
+    unknowns: int
+    step: list[Phase]
+    accept: Phase
+    start: Phase
+    assemble: Phase
+    evaluate: Phase
+    matrix: dict[tuple[int, int], int]
+    end: int
+    operations: int = field(default=0)
+
+    @property
+    def phases(self) -> list[Phase]:
+        """All phases, in the order in which the driver knows them."""
+        return [self.accept, self.start, self.assemble, self.evaluate, *self.step]
+
+
+def build_program(system: System, tableau: Tableau) -> Program:
+    """The phases of a System; baths border the matrix where that needs fewer products."""
+    candidates = []
+    for border in (False, True):
+        writer = _Writer(system, tableau, border)
+        if border and not writer.balances.baths:
+            continue
+        candidates.append(writer)
+    best = min(candidates, key=lambda w: w.plan.products + tableau.stages * w.plan.entries)
+    return best.write()
+
+
+class _Writer:
+    def __init__(self, system: System, tableau: Tableau, border: bool) -> None:
+        self.tableau = tableau
+        self.layout = Layout(system, tableau.stages)
+        self.balances = Balances(self.layout, border)
+        tape = Tape()
+        state = self._state(tape, self.layout.state)
+        _, jacobian = self.balances.both(tape, state)
+        matrix = self.balances.system_matrix(tape, jacobian, tape.input(0))
+        self.plan = plan(self.balances.unknowns, matrix, self.balances.bordering)
+
+    def _state(self, tape: Tape, first: int) -> list[int]:
+        return [tape.input(first + i) for i in range(self.layout.size)]
+
+    def write(self) -> Program:
+        layout, tableau = self.layout, self.tableau
+        first = layout.first_parameter + len(layout.parameters)
+        slots: dict[tuple[int, int], int] = {}
+        for b in self.plan.order:
+            slots[b, b] = first + len(slots)
+            for r in self.plan.rows[b]:
+                slots[r, b] = first + len(slots)
+            for c in self.plan.columns[b]:
+                slots[b, c] = first + len(slots)
+        self.factors = slots
+        step = [self._factor()]
+        step += [self._stage(s) for s in range(1, tableau.stages)]
+        assemble, matrix = self._assemble(first + len(slots))
+        return Program(
+            layout,
+            tableau,
+            self.plan,
+            self.balances.unknowns,
+            step,
+            self._accept(),
+            self._start(),
+            assemble,
+            self._evaluate(),
+            matrix,
+            first + len(slots) + len(matrix),
+            sum(len(phase.tape.entries) for phase in step),
+        )
+
+    def _factor(self) -> Phase:
+        layout, t = self.layout, Tape()
+        rhs, jacobian = self.balances.both(t, self._state(t, layout.state))
+        shift = t.input(layout.scalar("inverse_h_gamma"))
+        matrix = self.balances.system_matrix(t, jacobian, shift)
+        worst = self._eliminate(t, matrix)
+        outputs = {self.factors[key]: matrix[key] for key in self.factors}
+        outputs[layout.scalar("bad")] = worst
+        for i, value in enumerate(self._solve(t, rhs, matrix)):
+            outputs[layout.stage(0) + i] = value
+        return Phase("factor", t, outputs)
+
+    def _eliminate(self, t: Tape, matrix: Matrix) -> int:
+        """LU factors in place, pivots inverted; the largest multiplier among the gases."""
+        zero, n = t.const(0.0), self.layout.system.n_gases
+        worst = zero
+        for b in self.plan.order:
+            matrix[b, b] = t.div(t.const(1.0), matrix[b, b])
+            for r in self.plan.rows[b]:
+                multiplier = matrix[r, b] = t.mul(matrix.get((r, b), zero), matrix[b, b])
+                if r < n and b < n:
+                    worst = t.max(t.unary(Op.ABS, multiplier), worst)
+                for c in self.plan.columns[b]:
+                    matrix[r, c] = t.nmadd(multiplier, matrix[b, c], matrix.get((r, c), zero))
+        return worst
+
+    def _solve(self, t: Tape, rhs: list[int], matrix: Matrix) -> list[int]:
+        """Solution for the states; the baths' rows have nothing on their right."""
+        x = [*rhs, *[t.const(0.0)] * (self.balances.unknowns - len(rhs))]
+        for b in self.plan.order:
+            for r in self.plan.rows[b]:
+                x[r] = t.nmadd(matrix[r, b], x[b], x[r])
+        for b in reversed(self.plan.order):
+            total = x[b]
+            for c in self.plan.columns[b]:
+                total = t.nmadd(matrix[b, c], x[c], total)
+            x[b] = t.mul(total, matrix[b, b])
+        return x[: self.layout.size]
+
+    def _stage(self, s: int) -> Phase:
+        layout, t, method = self.layout, Tape(), self.tableau
+        size = layout.size
+        stages = [[t.input(layout.stage(q) + i) for i in range(size)] for q in range(s)]
+        outputs: dict[int, int] = {}
+        argument = self._argument(t, s, stages)
+        if s + 1 < method.stages and self._continues(s + 1):
+            outputs.update({layout.argument + i: value for i, value in enumerate(argument)})
+        rhs = self.balances.derivative(t, argument)
+        inverse_h = t.input(layout.scalar("inverse_h"))
+        for i in range(size):
+            earlier = t.combine(
+                (float(method.c[s, q]), stages[q][i]) for q in range(s) if method.c[s, q]
+            )
+            rhs[i] = t.madd(inverse_h, earlier, rhs[i])
+        matrix = {key: t.input(slot) for key, slot in self.factors.items()}
+        new = self._solve(t, rhs, matrix)
+        outputs.update({layout.stage(s) + i: value for i, value in enumerate(new)})
+        if s + 1 == method.stages:
+            self._judge(t, argument, new, outputs)
+        return Phase(f"stage_{s}", t, outputs)
+
+    def _continues(self, s: int) -> bool:
+        """True where the argument of a stage is that of the one before plus its result."""
+        a = self.tableau.a
+        return bool(s > 1 and a[s, s - 1] == 1 and (a[s, : s - 1] == a[s - 1, : s - 1]).all())
+
+    def _argument(self, t: Tape, s: int, stages: list[list[int]]) -> list[int]:
+        layout, a = self.layout, self.tableau.a
+        if self._continues(s):
+            before = self._state(t, layout.argument)
+            return [t.add(w, u) for w, u in zip(before, stages[s - 1], strict=True)]
+        state = self._state(t, layout.state)
+        return [
+            t.combine(((float(a[s, q]), stages[q][i]) for q in range(s) if a[s, q]), state[i])
+            for i in range(layout.size)
+        ]
+
+    def _judge(self, t: Tape, argument: list[int], last: list[int], out: dict[int, int]) -> None:
+        """The new state, the square of the error over the tolerance, and the next step over h."""
+        layout = self.layout
+        old = self._state(t, layout.state)
+        rtol = t.input(layout.scalar("rtol"))
+        total = t.const(0.0)
+        for i, (y, w, u) in enumerate(zip(old, argument, last, strict=True)):
+            new = t.add(w, u)
+            out[layout.new + i] = new
+            size = t.max(t.unary(Op.ABS, y), t.unary(Op.ABS, new))
+            ratio = t.div(u, t.madd(rtol, size, self._atol(t, i)))
+            total = t.madd(ratio, ratio, total)
+        error = t.mul(total, t.const(1.0 / layout.size))
+        exponent = -0.5 / (self.tableau.error_order + 1)
+        factor = t.mul(
+            t.const(SAFETY), t.unary(Op.EXP, t.mul(t.const(exponent), t.unary(Op.LOG, error)))
+        )
+        out[layout.scalar("error")] = error
+        out[layout.scalar("factor")] = t.min(t.max(factor, t.const(SHRINK)), t.const(GROW))
+
+    def _atol(self, t: Tape, i: int) -> int:
+        """Absolute tolerance of a state, as for a single run."""
+        layout, system = self.layout, self.layout.system
+        if i < system.n_gases:
+            return t.input(layout.scalar("atol_x"))
+        if layout.has_T and i == layout.T_index:
+            return t.const(1e-11)
+        if system.volume_varies and i == system.volume_index:
+            return t.const(1e-14)
+        if system.exchanges_heat and i == system.volume_index - 1:
+            return t.input(layout.scalar("atol_heat"))
+        return t.input(layout.scalar("atol_ledger"))
+
+    def _accept(self) -> Phase:
+        layout, t = self.layout, Tape()
+        accepted = t.input(layout.scalar("accepted"))
+        outputs = {
+            layout.state + i: t.select(
+                accepted, t.input(layout.new + i), t.input(layout.state + i)
+            )
+            for i in range(layout.size)
+        }
+        return Phase("accept", t, outputs)
+
+    def _start(self) -> Phase:
+        """1 over the shortest time in which a derivative changes: max |J f|/|f| over the states."""
+        layout, t = self.layout, Tape()
+        rhs, jacobian = self.balances.both(t, self._state(t, layout.state))
+        change = [*rhs]
+        if self.balances.border:
+            change += [
+                t.combine((w, rhs[i]) for i, w in weights.items())
+                for weights in self.balances.weights
+            ]
+        second = [t.const(0.0)] * layout.size
+        for (row, column), value in jacobian.items():
+            second[row] = t.madd(value, change[column], second[row])
+        fastest = t.const(0.0)
+        for f, df in zip(rhs, second, strict=True):
+            size = t.unary(Op.ABS, f)
+            ratio = t.select(size, t.div(t.unary(Op.ABS, df), size), t.const(0.0))
+            fastest = t.max(ratio, fastest)
+        return Phase("start", t, {layout.scalar("first"): fastest})
+
+    def _assemble(self, first: int) -> tuple[Phase, dict[tuple[int, int], int]]:
+        layout, t = self.layout, Tape()
+        _, jacobian = self.balances.both(t, self._state(t, layout.state))
+        shift = t.input(layout.scalar("inverse_h_gamma"))
+        matrix = self.balances.system_matrix(t, jacobian, shift)
+        slots = {key: first + place for place, key in enumerate(sorted(matrix))}
+        return Phase("assemble", t, {slots[key]: matrix[key] for key in slots}), slots
+
+    def _evaluate(self) -> Phase:
+        layout, t = self.layout, Tape()
+        rhs = self.balances.derivative(t, self._state(t, layout.argument))
+        return Phase("evaluate", t, {layout.value + i: value for i, value in enumerate(rhs)})

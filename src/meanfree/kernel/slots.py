@@ -1,0 +1,86 @@
+"""Where everything lies in the work array, and which numbers a lane takes in.
+
+A `Layout` names the parameters of a System that a phase may read: rate constants, or the
+numbers of the laws where those are not constant, and what the vessel and the heat balance need.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+from functools import cached_property
+
+from meanfree.equations.system import System
+
+Name = tuple[str | int, ...]
+
+SCALARS = (
+    "inverse_h_gamma", "inverse_h", "accepted", "error", "factor", "bad", "first", "rtol",
+    "atol_x", "atol_ledger", "atol_heat",
+)  # fmt: skip
+"""Slots that every lane has besides its state and its parameters."""
+
+
+@dataclass
+class Layout:
+    """Slots of the work array for one System and a method with ``stages`` stages.
+
+    The state is the System's, followed by T where a program moves it: then T is a state with a
+    known slope. Parameters get their places as phases ask for them.
+    """
+
+    system: System
+    stages: int
+    parameters: dict[Name, int] = field(default_factory=dict)
+
+    @property
+    def has_T(self) -> bool:
+        """True where T is a state of the kernel."""
+        return self.system.mode != "isothermal"
+
+    @cached_property
+    def size(self) -> int:
+        """Number of states."""
+        return self.system.size + int(self.system.mode == "program")
+
+    @property
+    def T_index(self) -> int:
+        """Place of T in the state."""
+        return self.size - 1
+
+    def scalar(self, name: str) -> int:
+        """Slot of one of `SCALARS`."""
+        return SCALARS.index(name)
+
+    @property
+    def state(self) -> int:
+        """First slot of the state."""
+        return len(SCALARS)
+
+    @property
+    def new(self) -> int:
+        """First slot of the state after the step."""
+        return self.state + self.size
+
+    @property
+    def argument(self) -> int:
+        """First slot of a stage's argument, for phases that are run one stage at a time."""
+        return self.new + self.size
+
+    @property
+    def value(self) -> int:
+        """First slot of the right-hand side at that argument."""
+        return self.argument + self.size
+
+    def stage(self, index: int) -> int:
+        """First slot of a stage."""
+        return self.value + self.size * (1 + index)
+
+    @property
+    def first_parameter(self) -> int:
+        """First slot of the parameters."""
+        return self.stage(self.stages)
+
+    def parameter(self, *name: str | int) -> int:
+        """Slot of a parameter, made when first asked for."""
+        place = self.parameters.setdefault(name, len(self.parameters))
+        return self.first_parameter + place
