@@ -68,8 +68,9 @@ def _net(system: System, gas: int) -> float:
 def _by_extent(system: System, k: Floats, gas: int) -> ClosedForm | None:
     """Rates that are a polynomial of degree one or two in the extent, forward and reverse.
 
-    dxi/dt = alpha xi^2 + beta xi + gamma from xi = 0 gives xi = gamma S/(1 - beta S/2) with
-    S = tanh(D t/2)/(D/2), D^2 = beta^2 - 4 alpha gamma.
+    dxi/dt = alpha xi^2 + beta xi + gamma from xi = 0 gives xi = 2 gamma E/(1 + e - beta E) with
+    e = exp(-D t), E = (1 - e)/D, D^2 = beta^2 - 4 alpha gamma. With beta > 0 (autocatalysis) the
+    denominator cancels and is written ((D - beta) + (D + beta) e)/D instead.
     """
     w = 1.0 + system.dead * system.initial_temperature
     total = np.zeros(1)
@@ -91,8 +92,13 @@ def _by_extent(system: System, k: Floats, gas: int) -> ClosedForm | None:
     number, start = _net(system, gas), float(system.initial_x[gas])
 
     def amount(t: Floats) -> Floats:
-        S = np.tanh(D * t / 2) / (D / 2) if D > 0 else t
-        return np.asarray(start + number * gamma * S / (1 - beta * S / 2))
+        e = np.exp(-D * t)
+        E = -np.expm1(-D * t) / D if D > 0 else t
+        if beta > 0:
+            below = ((D + beta) * e - 4 * alpha * gamma / (D + beta)) / D
+        else:
+            below = 1 + e - beta * E
+        return np.asarray(start + number * 2 * gamma * E / below)
 
     name, formula = _name_of(system)
     return ClosedForm(name, formula, system.gases[gas], amount)
@@ -107,7 +113,7 @@ def _name_of(system: System) -> tuple[str, str]:
         back = sum(order for _, order in system.orders.row(1))
         if {overall, back} == {1.0, 2.0}:
             words = "reversible, first order one way and second the other"
-        return words, "ξ = γ S/(1 − β S/2), S = tanh(D t/2)/(D/2)"
+        return words, "ξ = 2 γ E/(1 + e − β E), e = exp(−D t), E = (1 − e)/D"
     if overall == 1:
         return "first order", "n = n0 exp(−a k t)"
     if len(orders) == 1:

@@ -11,6 +11,7 @@ from numpy.typing import ArrayLike
 
 from meanfree.constants import R
 from meanfree.equations.arrays import ArrayEquations
+from meanfree.equations.powers import STOP
 from meanfree.equations.system import Floats, System
 from meanfree.experiment.experiment import Experiment
 from meanfree.integrate.checks import Invariants
@@ -19,6 +20,9 @@ from meanfree.integrate.stepping import Counters
 from meanfree.integrate.trajectory import Trajectory
 
 MOST_HALF_LIVES = 10
+
+EXHAUSTED = 10 * STOP
+"""Fraction of the initial total below which a rate of order below one has left its power law."""
 
 
 class Status(Enum):
@@ -155,6 +159,25 @@ class Run:
             for i, gas in enumerate(self.system.gases)
             if i in losing and self.system.initial_x[i] > 0
         )
+
+    @cached_property
+    def ran_out(self) -> tuple[tuple[str, float], ...]:
+        """(gas, time [s]) where a rate of order below one, or none, stopped because a gas ran out.
+
+        Below `EXHAUSTED` of the initial total such a rate leaves its power law and stops smoothly.
+        """
+        system, found = self.system, []
+        below_one = set(system.orders.column[(system.orders.value > 0) & (system.orders.value < 1)])
+        level = EXHAUSTED * system.total_concentration
+        for i in sorted({int(j) for j in below_one | set(system.guards.column)}):
+
+            def amount(t: Floats, i: int = i) -> Floats:
+                return np.asarray(self.state(t)[i])
+
+            time = first_crossing(self.trajectory, amount, level)
+            if time is not None and time > 0:
+                found.append((system.gases[i], time))
+        return tuple(found)
 
     def reaction_time(self, gas: str, conversion: float) -> float | None:
         """First time [s] at which a filled gas reaches a conversion; None if it does not."""
