@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from meanfree.rates.arrhenius import Arrhenius
+from meanfree.rates.capture import Capture
 from meanfree.rates.collision import Collision
 from meanfree.rates.cross_section import CrossSection
 from meanfree.rates.falloff import Falloff
@@ -16,6 +17,7 @@ _ALL: tuple[type[Law], ...] = (
     Arrhenius,
     Collision,
     CrossSection,
+    Capture,
     Table,
     Falloff,
     Termolecular,
