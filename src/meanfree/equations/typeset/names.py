@@ -1,0 +1,125 @@
+"""What gases, numbers and units look like, and how text of a case is made harmless.
+
+A name from a case may hold anything. It never reaches an output but through `visible` and the
+output's own escaping.
+"""
+
+from __future__ import annotations
+
+import re
+import unicodedata
+from collections.abc import Sequence
+
+from meanfree.equations.typeset.tree import Label, Symbol, Unit
+from meanfree.errors import InputError
+from meanfree.gases.formula import parse_formula
+from meanfree.gases.gas import Gas
+
+_PIECE = re.compile(r"(?P<charge>\^?\d*[+-]+$)|(?P<count>(?<=[A-Za-z)\]])\d+)|(?P<rest>.)")
+
+SLOTS: dict[str, tuple[Symbol, str]] = {
+    "k": (Symbol("k"), "k"),
+    "A": (Symbol("A"), "k"),
+    "n": (Symbol("n"), ""),
+    "T_ref": (Symbol("T", "ref"), "K"),
+    "E": (Symbol("E"), "J mol^-1"),
+    "P": (Symbol("P"), ""),
+    "s": (Symbol("s"), ""),
+    "sigma": (Symbol("σ"), "m^2"),
+    "mu": (Symbol("μ"), "kg"),
+    "E0": (Symbol("E", "0"), "J mol^-1"),
+}
+"""Symbol and unit of a law's numbers; the unit "k" is that of the rate constant itself."""
+
+SERIES: dict[str, tuple[str, str]] = {
+    "T": ("T", "K"),
+    "k": ("k", "k"),
+    "E": ("E", "J mol^-1"),
+    "sigma": ("σ", "m^2"),
+}
+"""Numbers that come in several: letter and unit of ``T_1``, ``k_2``, …"""
+
+
+def visible(text: str) -> str:
+    """Text with control and direction characters made visible, on one line."""
+    return "".join(
+        c if unicodedata.category(c)[0] != "C" else f"\\u{ord(c):04x}"
+        for c in " ".join(text.split())
+    )
+
+
+def gas_label(gas: Gas) -> Label:
+    """A gas by its formula with subscripts where its name is one, else by its name as it stands."""
+    if gas.formula is None:
+        return Label((("text", visible(gas.name)),))
+    try:
+        if parse_formula(gas.name) != gas.formula:
+            return Label((("text", visible(gas.name)),))
+    except InputError:
+        return Label((("text", visible(gas.name)),))
+    pieces: list[tuple[str, str]] = []
+    for match in _PIECE.finditer(gas.name):
+        text = match.group()
+        if match["charge"]:
+            pieces.append(("sup", _charge(text, gas.formula.charge)))
+        elif match["count"]:
+            pieces.append(("sub", text))
+        elif pieces and pieces[-1][0] == "text":
+            pieces[-1] = ("text", pieces[-1][1] + text)
+        else:
+            pieces.append(("text", text))
+    return Label(tuple(pieces))
+
+
+def _charge(text: str, charge: int) -> str:
+    size = "" if abs(charge) == 1 else str(abs(charge))
+    return size + ("+" if charge > 0 else "−")
+
+
+def slot(name: str) -> tuple[Symbol, str]:
+    """Symbol and unit of a law's number; ``k_3`` is the third of its kind: k with (3) below.
+
+    A number that this page does not know keeps its name and stands in SI.
+    """
+    if name in SLOTS:
+        return SLOTS[name]
+    letter, _, rest = name.partition("_")
+    if letter in SERIES:
+        return Symbol(SERIES[letter][0], f"({rest})"), SERIES[letter][1]
+    return Symbol(letter, rest), "SI"
+
+
+def number_parts(value: float) -> tuple[str, str]:
+    """Mantissa and power of ten of a number with six digits; the power empty where it is small."""
+    text = f"{value:.6g}"
+    if "e" not in text:
+        return text.replace("-", "−"), ""
+    mantissa, exponent = text.split("e")
+    return mantissa.replace("-", "−"), str(int(exponent)).replace("-", "−")
+
+
+def unit(text: str) -> Unit:
+    """``m^3 mol^-1 s^-1`` as a unit."""
+    factors = []
+    for part in text.split():
+        name, _, exponent = part.partition("^")
+        factors.append((name, float(exponent or 1)))
+    return Unit(tuple(factors))
+
+
+def rate_constant_unit(order: float) -> Unit:
+    """(m^3/mol)^(order-1)/s."""
+    more = order - 1
+    factors = [("m", 3 * more), ("mol", -more), ("s", -1.0)]
+    return ordered_unit(factors)
+
+
+def ordered_unit(factors: Sequence[tuple[str, float]]) -> Unit:
+    """Powers above zero first, powers of zero left out: mol m^-3 s^-1."""
+    above = [(name, exponent) for name, exponent in factors if exponent > 0]
+    return Unit((*above, *((name, exponent) for name, exponent in factors if exponent < 0)))
+
+
+def exponent_text(value: float) -> str:
+    """A power of a unit, six digits."""
+    return f"{value:.6g}".replace("-", "−")

@@ -1,0 +1,45 @@
+"""What the three outputs have in common: who is asked for which part, and where brackets go."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from typing import Any
+
+from meanfree.equations.typeset import tree
+from meanfree.equations.typeset.tree import Node
+
+SUM, PRODUCT, POWER, ATOM = 1, 2, 3, 4
+
+
+class Writer:
+    """Writes a formula as text of one kind. Subclasses have one method a kind of part."""
+
+    flat = False
+    """True where a fraction is written in one line and so binds like a product."""
+
+    def write(self, part: Node) -> str:
+        """A part and all that it holds."""
+        method: Callable[[Any], str] = getattr(self, type(part).__name__.lower())
+        return method(part)
+
+    def inside(self, part: Node, least: int) -> str:
+        """A part, in brackets where it binds less than ``least``."""
+        written = self.write(part)
+        return written if self.binding(part) >= least else self.bracket(written)
+
+    def binding(self, part: Node) -> int:
+        """How strongly a part holds together."""
+        if isinstance(part, tree.Sum | tree.Relation | tree.Total | tree.Cases):
+            return SUM
+        if isinstance(part, tree.Number):
+            plain = part.value >= 0 and "e" not in f"{part.value:.6g}"
+            return ATOM if plain else PRODUCT
+        if isinstance(part, tree.Product) or (self.flat and isinstance(part, tree.Fraction)):
+            return PRODUCT
+        if isinstance(part, tree.Power | tree.Fraction):
+            return POWER
+        return ATOM
+
+    def bracket(self, written: str) -> str:
+        """Round brackets around what is written."""
+        raise NotImplementedError
