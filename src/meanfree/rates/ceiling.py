@@ -15,6 +15,7 @@ from meanfree.collisions import encounters, line_of_centres, speeds
 from meanfree.constants import R
 from meanfree.gases.gas import Gas
 
+_RAISED = str.maketrans("0123456789", "⁰¹²³⁴⁵⁶⁷⁸⁹")
 OVER = 1e-9
 """How far, relatively, P or k/Z must lie above 1 to count: rounding lies below."""
 
@@ -71,7 +72,7 @@ class Judgement:
     def verdict(self) -> str:
         """What that means, in words."""
         if self.exceeds_ceiling:
-            return f"above the collision limit: {self.k / self.Z:.3g} times Z, so suspect"
+            return f"above the collision limit: {_count(self.k / self.Z)} times Z, so suspect"
         if self.k == 0:
             return "no reaction"
         if self.steric is None:
@@ -81,7 +82,7 @@ class Judgement:
             )
         if self.exceeds_barrier:
             return (
-                f"above the limit for its barrier: {self.steric:.3g} times the encounters "
+                f"above the limit for its barrier: {_count(self.steric)} times the encounters "
                 "that have the energy, so suspect"
             )
         flag = "; Ea is below RT/2, so E0 = 0" if self.below_half_rt else ""
@@ -94,7 +95,14 @@ class Judgement:
 def _one_in(share: float, which: str = "encounters") -> str:
     if share > 0.1:
         return f"a share of {share:.2g} of the {which}"
-    return f"one in {1 / share:.3g} {which}"
+    return f"one in {_count(1 / share)} {which}"
+
+
+def _count(value: float) -> str:
+    if value < 1e5:
+        return f"{value:.3g}" if value < 1e3 else f"{value:.0f}"
+    mantissa, power = f"{value:.2e}".split("e")
+    return f"{mantissa} × 10{str(int(power)).translate(_RAISED)}"
 
 
 def ceiling(

@@ -105,7 +105,8 @@ def assumptions_of(experiment: Experiment) -> Iterator[str]:
     yield from _of_temperature(experiment)
     if experiment.fill.at is not None:
         at = wording.temperature(experiment.fill.at.value)
-        yield f"What was filled was read at {at}; then the gas is at the run's temperature."
+        start = wording.temperature(experiment.temperature.initial)
+        yield f"What was filled was read at {at}; at time zero all of the gas is at {start}."
     if any(isinstance(step.law, Collision) for step in experiment.steps):
         yield (
             "Collision rate constants are those of hard spheres that react where the energy along "

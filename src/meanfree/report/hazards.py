@@ -68,7 +68,7 @@ def _condensation(run: Run, gas: Gas) -> Iterator[str]:
 
 def _fire(run: Run, gas: Gas, known: Hazards) -> Iterator[str]:
     assert known.lower_flammable is not None
-    limits = wording.percent(known.lower_flammable.value)
+    limits = f"from {wording.percent(known.lower_flammable.value)}"
     if known.upper_flammable is not None:
         limits += f" to {wording.percent(known.upper_flammable.value)}"
     text = f"{wording.chemical(gas)} is flammable: {limits} in air ({known.lower_flammable.source})"
@@ -116,4 +116,4 @@ def _poison(gas: Gas, known: Hazards) -> Iterator[str]:
 
 def _concentration(value: Sourced) -> str:
     """Mole fractions in ppm, mass concentrations in mg/m^3: both are 1e6 times the SI value."""
-    return f"{wording.number(1e6 * value.value)} {wording.pretty_unit(value.unit)}"
+    return f"{1e6 * value.value:.4g} {wording.pretty_unit(value.unit)}"

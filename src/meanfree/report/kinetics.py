@@ -182,7 +182,7 @@ def _reverse(experiment: Experiment, step: Step, T: float) -> RateConstant:
         _energy(step, k_of, T),
         _encounter(experiment, orders) if step.bath is None else (),
         None,
-        f"forward over Kc from {basis}",
+        f"Kc from {basis}",
         True,
     )
 

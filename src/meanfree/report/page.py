@@ -8,16 +8,19 @@ from __future__ import annotations
 
 import re
 from collections.abc import Sequence
+from dataclasses import dataclass
 from html import escape
 
 from jinja2 import Environment, PackageLoader, StrictUndefined, select_autoescape
 from markupsafe import Markup
 
+from meanfree.equations.typeset import equation_sheet
 from meanfree.integrate.run import Run
 from meanfree.report import sheets, wording
 from meanfree.report.answers import answers
 from meanfree.report.cautions import assumptions_of, grave_cautions
 from meanfree.report.figures.profiles import drawn_gases
+from meanfree.report.fill_sheet import fill
 from meanfree.report.kinetics import RateConstant
 from meanfree.report.record import CaseRecord, versions
 from meanfree.report.summary import RunSummary
@@ -60,10 +63,11 @@ def page(
         half_lives=sheets.half_lives(run, summary),
         amounts=sheets.amounts(run, summary),
         asked=sheets.asked(run),
-        fill=sheets.fill(run),
+        fill=fill(run),
         constants=sheets.constants(rows),
+        ceilings=sheets.ceilings(rows),
         convention=sheets.convention(rows),
-        equations=sheets.equations(run),
+        equations=equations_of(run),
         assumptions=list(assumptions_of(run.experiment)),
         inputs=sheets.inputs_in_use(run),
         gases=sheets.gases(run),
@@ -84,6 +88,35 @@ def inlined(svg: str, name: str, caption: str) -> Markup:
     body = _ID.sub(lambda match: f"{match.group(1)}{name}-", body)
     head = f'<svg role="img" aria-label="{escape(caption, quote=True)}"'
     return Markup(body.replace("<svg", head, 1))
+
+
+@dataclass(frozen=True)
+class Formula:
+    """One equation: MathML, or text where there are too many to set."""
+
+    mathml: Markup | None
+    text: str
+    remark: str
+
+
+def equations_of(run: Run) -> list[tuple[str, list[Formula]]]:
+    """The equations under their headings, and a remark where not all are shown."""
+    sheet = equation_sheet(run.experiment)
+    groups = [
+        (
+            wording.clean(group.heading),
+            [
+                Formula(
+                    None if sheet.as_text_only else Markup(entry.mathml),
+                    entry.text,
+                    wording.clean(entry.remark),
+                )
+                for entry in group.entries
+            ],
+        )
+        for group in sheet.groups
+    ]
+    return [*groups, (wording.clean(sheet.remark), [])] if sheet.remark else groups
 
 
 def captions_of(run: Run, summary: RunSummary) -> dict[str, str]:
@@ -107,6 +140,8 @@ def captions_of(run: Run, summary: RunSummary) -> dict[str, str]:
         "half_lives": (
             f"What is left of the reactants; half-lives of {name}, each from where the one "
             "before it ends."
+            if _has_half_life(summary)
+            else f"What is left of the reactants; {name} does not fall to half."
         ),
         "rates": "Rates of the steps, in events; a thin line is the reverse of the same colour.",
     }

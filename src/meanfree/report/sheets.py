@@ -7,7 +7,6 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from meanfree.constants import N_A, R
 from meanfree.experiment.inputs import inputs
 from meanfree.integrate.run import Run
 from meanfree.report import wording
@@ -17,6 +16,7 @@ from meanfree.sourced import Sourced
 
 Row = list[str]
 NONE = "–"
+"""What stands where there is no value."""
 
 
 @dataclass(frozen=True)
@@ -67,17 +67,18 @@ def amounts(run: Run, summary: RunSummary) -> Sheet:
     rows = []
     for amount in summary.amounts:
         row = [wording.chemical(run.experiment.gas_named[amount.gas])]
-        row += [_amount(amount.start_mol, shown.amount), _amount(amount.peak_mol, shown.amount)]
-        row += [_when(run, amount.gas, amount.peak_time_s), _amount(amount.end_mol, shown.amount)]
+        row += [amount_in(amount.start_mol, shown.amount), amount_in(amount.peak_mol, shown.amount)]
+        row += [_when(run, amount.gas, amount.peak_time_s), amount_in(amount.end_mol, shown.amount)]
         row += [wording.number(amount.end_mol_per_m3, 4)]
         row += [wording.quantity(amount.end_Pa, shown.pressure, "pressure", 4).rsplit(" ", 1)[0]]
         if resting:
-            row.append(_amount(amount.equilibrium_mol, shown.amount))
+            row.append(amount_in(amount.equilibrium_mol, shown.amount))
         rows.append(row)
     return Sheet(heading, rows)
 
 
-def _amount(mol: float | None, unit: str) -> str:
+def amount_in(mol: float | None, unit: str) -> str:
+    """An amount without its unit, which the heading says."""
     if mol is None:
         return NONE
     return wording.quantity(mol, unit, "amount", 4).rsplit(" ", 1)[0]
@@ -120,94 +121,47 @@ def asked(run: Run) -> Sheet | None:
     return Sheet(heading, rows)
 
 
-def fill(run: Run) -> Sheet:
-    """The fill sheet: partial pressures at filling and in the run, moles, mass, number density."""
-    experiment = run.experiment
-    shown = wording.units_in_use(experiment)
-    initial = experiment.temperature.initial
-    filling = experiment.fill.temperature(initial)
-    p_fill = experiment.fill.pressure(experiment.vessel, initial)
-    total = sum(experiment.moles.values())
-    unit = wording.pretty_unit(shown.pressure)
-    heading = ["Gas", "as given", f"at filling, {wording.temperature(filling)} ({unit})"]
-    heading += [f"at the start, {wording.temperature(initial)} ({unit})", "mole fraction"]
-    heading += [f"amount ({wording.pretty_unit(shown.amount)})", "mass (mg)"]
-    heading += ["at filling (1/cm³)", "at the start (1/cm³)"]
-    rows, mass, complete = [], 0.0, True
-    for name in experiment.fill.names:
-        n, gas = experiment.moles[name], experiment.gas_named[name]
-        share = n / total if total > 0 else 0.0
-        grams = None if gas.molar_mass is None else n * gas.molar_mass.value * 1e6
-        mass, complete = mass + (grams or 0.0), complete and grams is not None
-        given = "balance"
-        if name in experiment.fill.gases:
-            given = wording.as_written(experiment.fill.gases[name].quantity)
-        row = [wording.chemical(gas), given]
-        row += _filled(
-            share, n, grams, p_fill, filling, experiment.initial_pressure, initial, shown
-        )
-        rows.append(row)
-    given = (
-        "" if experiment.fill.total is None else wording.as_written(experiment.fill.total.quantity)
-    )
-    whole = mass if complete else None
-    sums = _filled(1.0, total, whole, p_fill, filling, experiment.initial_pressure, initial, shown)
-    rows.append(["Total", given, *sums])
-    return Sheet(heading, rows, words=(0,))
-
-
-def _filled(
-    share: float,
-    n: float,
-    milligrams: float | None,
-    p_fill: float,
-    T_fill: float,
-    p_start: float,
-    T_start: float,
-    shown: wording.UnitsInUse,
-) -> Row:
-    def pressure(p: float) -> str:
-        return wording.quantity(p, shown.pressure, "pressure", 4).rsplit(" ", 1)[0]
-
-    def density(p: float, T: float) -> str:
-        return wording.number(1e-6 * p * N_A / (R * T), 4)
-
-    return [
-        pressure(share * p_fill),
-        pressure(share * p_start),
-        wording.number(share, 4),
-        _amount(n, shown.amount),
-        NONE if milligrams is None else wording.number(milligrams, 4),
-        density(share * p_fill, T_fill),
-        density(share * p_start, T_start),
-    ]
-
-
 def constants(rows: Sequence[RateConstant]) -> Sheet:
-    """Rate constants per event against their ceiling."""
-    heading = ["Step", "Reaction", "Law", "T", "k per event", "k as the case counts it", "Ea at T"]
-    heading += ["Z (ceiling)", "steric factor P", "A over Z", "verdict", "source"]
+    """Rate constants per event, and as the case counts them where that differs."""
+    counted = any(row.shown_as_counted for row in rows)
+    heading = ["Step", "Reaction", "Law", "T", "k per event"]
+    heading += ["k in the case"] if counted else []
+    heading += ["Ea at T", "Source"]
     table = []
     for row in rows:
+        cells = [
+            wording.clean(row.step),
+            row.printed,
+            row.law,
+            wording.temperature(row.temperature),
+        ]
+        cells += [row.shown]
+        cells += [row.shown_as_counted or "the same"] if counted else []
+        cells += [NONE if row.Ea is None else f"{wording.number(row.Ea / 1e3, 4)} kJ/mol"]
+        table.append([*cells, row.source])
+    return Sheet(heading, table, words=(0, 1, 2, len(heading) - 1))
+
+
+def ceilings(rows: Sequence[RateConstant]) -> Sheet | None:
+    """Rate constants of encounters against Z; None where no step is one."""
+    table = []
+    for row in rows:
+        if row.order != 2:
+            continue
         judged = row.judgement
         Z = None if row.ceiling is None else row.ceiling.Z
         table.append(
             [
                 wording.clean(row.step),
-                row.printed,
-                row.law,
                 wording.temperature(row.temperature),
-                row.shown,
-                row.shown_as_counted or "same",
-                NONE if row.Ea is None else f"{wording.number(row.Ea / 1e3, 4)} kJ/mol",
                 NONE if Z is None else wording.rate(Z, row.shown_unit, 2.0),
                 _number(None if judged is None else judged.steric),
                 _number(None if judged is None else judged.A_over_Z),
                 row.verdict,
-                row.source,
             ]
         )
-    return Sheet(heading, table, words=(0, 1, 2, 10, 11))
+    heading = ["Step", "T", "Z", "Steric factor P", "A over Z", "Verdict"]
+    return Sheet(heading, table, words=(0, 5)) if table else None
 
 
 def _number(value: float | None) -> str:
@@ -231,17 +185,11 @@ def convention(rows: Sequence[RateConstant]) -> list[str]:
     return found
 
 
-def equations(run: Run) -> list[str]:
-    """The equations as MathML, empty where none can be typeset."""
-    del run
-    return []
-
-
 def inputs_in_use(run: Run) -> Sheet:
     """Every number of the case with its address and source."""
     rows = []
     for address, found in inputs(run.experiment).items():
-        value = f"{wording.number(found.value, 6)} {wording.pretty_unit(found.unit)}".strip()
+        value = f"{wording.given(found.value)} {wording.pretty_unit(found.unit)}".strip()
         source = wording.clean(found.source) or ("by default" if found.quantity.default else "")
         rows.append([wording.clean(address), value, source or "the case file"])
     return Sheet(["Address", "Value", "Source"], rows, words=(0, 2))
@@ -270,7 +218,7 @@ def gases(run: Run) -> Sheet:
 
 
 def _shown(value: Sourced, factor: float, unit: str, digits: int) -> tuple[str, str]:
-    shown = f"{wording.number(value.value * factor, digits)} {unit}"
+    shown = f"{wording.given(value.value * factor, digits)} {unit}"
     return shown, wording.clean(value.source) or "the case file"
 
 
@@ -278,7 +226,7 @@ def solver(summary: RunSummary) -> list[str]:
     """How it was integrated and what the run checked about itself, in sentences."""
     work, drift = summary.solver, summary.drift
     found = [
-        f"{work.method} with a relative tolerance of {wording.number(work.rtol)}: {work.steps} "
+        f"{work.method} with a relative tolerance of {wording.given(work.rtol)}: {work.steps} "
         f"steps, {work.nfev} right-hand sides, {work.njev} Jacobians, {work.nlu} factorisations."
     ]
     if drift.elements:

@@ -55,6 +55,19 @@ def number(value: float, digits: int = 3) -> str:
     return sign + f"{rounded:,.{decimals}f}".replace(",", " ")
 
 
+def given(value: float, digits: int = 7) -> str:
+    """A number as someone gave it: no digits beyond those that say something.
+
+    >>> given(1.8), given(9.4e9), given(102.0), given(0.27)
+    ('1.8', '9.4 × 10⁹', '102', '0.27')
+    """
+    text = number(value, digits)
+    mantissa, times, power = text.partition(" × ")
+    if "." in mantissa:
+        mantissa = mantissa.rstrip("0").rstrip(".")
+    return mantissa + times + power
+
+
 def percent(fraction: float, digits: int = 3) -> str:
     """A fraction as per cent: ``37.2 %``; what is nearly all is not rounded to all.
 
@@ -142,12 +155,12 @@ def rate(value: float, unit: str, order: float, digits: int = 4) -> str:
     return quantity(value, unit, units.rate_constant(order), digits)
 
 
-def as_written(sourced: Sourced, digits: int = 4) -> str:
+def as_written(sourced: Sourced) -> str:
     """A value of the case in the unit and the counting it was written in."""
     value = sourced.value * sourced.per
     if sourced.unit and sourced.dimension:
         value = units.from_si(value, sourced.unit, sourced.dimension)
-    return f"{number(value, digits)} {pretty_unit(sourced.unit)}".strip()
+    return f"{given(value)} {pretty_unit(sourced.unit)}".strip()
 
 
 def temperature(kelvin: float) -> str:

@@ -42,13 +42,13 @@ DASHES: Final[tuple[Any, ...]] = (
 )
 INK: Final[str] = "#222222"
 GUIDE: Final[str] = "#8a8a8a"
-WIDTH: Final[float] = 7.0
+WIDTH: Final[float] = 6.2
 DPI: Final[int] = 160
 
 _RC: Final[dict[str, Any]] = {
     "font.family": "sans-serif",
     "font.sans-serif": ["DejaVu Sans"],
-    "font.size": 9.0,
+    "font.size": 9.5,
     "axes.labelsize": 9.5,
     "axes.edgecolor": INK,
     "axes.labelcolor": INK,
@@ -57,14 +57,14 @@ _RC: Final[dict[str, Any]] = {
     "axes.spines.right": False,
     "xtick.color": INK,
     "ytick.color": INK,
-    "xtick.labelsize": 8.5,
-    "ytick.labelsize": 8.5,
+    "xtick.labelsize": 9.0,
+    "ytick.labelsize": 9.0,
     "lines.linewidth": 1.8,
     "text.parse_math": False,  # text of a case may hold dollar signs
     "svg.fonttype": "path",
     "svg.hashsalt": "meanfree",
     "savefig.dpi": DPI,
-    "path.simplify_threshold": 0.2,
+    "path.simplify_threshold": 0.04,
 }
 
 
@@ -83,7 +83,7 @@ def panels(heights: Sequence[float], beside: float, above: float) -> tuple[Figur
 
     ``beside`` is the room for words right of the axes, ``above`` that over the first panel.
     """
-    space, below, left = 0.28, 0.55, 0.8
+    space, below, left = 0.28, 0.52, 0.75
     whole = sum(heights) + space * (len(heights) - 1) + below + above
     figure = Figure(figsize=(WIDTH, whole))
     axes: list[Axes] = []
