@@ -15,7 +15,7 @@ LONGEST = 100  # characters; no honest quantity is longer
 
 _NUMBER = re.compile(r"[+-]?(?:[0-9]+(?:\.[0-9]*)?|\.[0-9]+)(?:[eE][+-]?[0-9]+)?")
 _FACTOR = re.compile(
-    r"(?P<name>[A-Za-zµÅ°Ω]+(?:_[A-Za-z]+)*|%|‰)"
+    r"(?P<name>[A-Za-zµÅ]+(?:_[A-Za-z]+)*|%|‰)"
     r"(?:(?:\^|\*\*)?(?P<bare>[+-]?[0-9]+(?:\.[0-9]+)?)|(?:\^|\*\*)\((?P<braced>[+-]?[0-9]+"
     r"(?:\.[0-9]+)?)\))?"
 )
@@ -25,7 +25,7 @@ _GAUGE = re.compile(
 _PERCENT = re.compile(r"\b(?:mol|mole|vol)\s*%")
 _SUPERSCRIPTS = str.maketrans("⁰¹²³⁴⁵⁶⁷⁸⁹⁻⁺", "0123456789-+")
 _SAME = str.maketrans({"μ": "µ", "\u212b": "Å", "·": "*", "×": "*", "⋅": "*", "\u00a0": " "})
-_LETTERS = "µÅ°%‰"
+_LETTERS = "µÅ‰"
 
 Factors = tuple[tuple[str, float], ...]
 
@@ -60,7 +60,7 @@ def quoted(text: object) -> str:
     shown = str(text)
     if len(shown) > 60:
         shown = shown[:45] + "… (" + str(len(shown)) + " characters)"
-    shown = "".join(c if unicodedata.category(c)[0] != "C" else f"\\u{ord(c):04x}" for c in shown)
+    shown = "".join(c if c.isprintable() else f"\\u{ord(c):04x}" for c in shown)
     return f'"{shown}"'
 
 
@@ -136,6 +136,7 @@ def _plain(text: str) -> str:
     """Superscripts as powers, one micro sign; look-alike letters are refused by name."""
     powered = re.sub("[⁰¹²³⁴⁵⁶⁷⁸⁹⁻⁺]+", lambda m: "^" + m.group().translate(_SUPERSCRIPTS), text)
     plain = powered.translate(_SAME).replace("℃", "°C")
+    plain = plain.replace("°C", "degC").replace("°F", "degF")
     for character in plain:
         if not (character.isascii() and character.isprintable()) and character not in _LETTERS:
             name = unicodedata.name(character, "a control character")

@@ -5,6 +5,7 @@ no exotic unit ("10 C" is no charge here), and so that start-up stays short.
 from __future__ import annotations
 
 import difflib
+import math
 from functools import cache
 from typing import TYPE_CHECKING, Any, NamedTuple
 
@@ -35,8 +36,8 @@ gram = [mass] = g
 kelvin = [temperature] = K
 mole = [substance] = mol
 ampere = [current] = A
-degree_Celsius = kelvin; offset: 273.15 = degC = celsius = °C = degreeC
-degree_Fahrenheit = 5 / 9 * kelvin; offset: 233.15 + 200 / 9 = degF = fahrenheit = °F
+degree_Celsius = kelvin; offset: 273.15 = degC = celsius
+degree_Fahrenheit = 5 / 9 * kelvin; offset: 233.15 + 200 / 9 = degF = fahrenheit
 degree_Rankine = 5 / 9 * kelvin = degR = rankine
 molecule = 1 / {constants.N_A!r} * mole = molecule = molec = particle = atom
 angstrom = 1e-10 * meter = Å = Angstrom = ångström
@@ -119,7 +120,13 @@ def size(parts: Factors) -> Size:
         return Size(_si(one), zero, powers)
     if any(_offset_scale(name) for name, _ in parts):
         raise RefusedError("with a temperature scale inside a compound unit", "K instead")
-    return Size(_si(registry.Quantity(1.0, unit).to_base_units()), 0.0, powers)
+    try:
+        factor = _si(registry.Quantity(1.0, unit).to_base_units())
+    except OverflowError:
+        factor = math.inf
+    if not 0 < factor < math.inf:
+        raise RefusedError("with a unit too large or too small to hold")
+    return Size(factor, 0.0, powers)
 
 
 def _si(quantity: Any) -> float:
