@@ -43,14 +43,23 @@ def report_errors(call: Callable[[], Any], *, as_json: bool, commands: Sequence[
     except (KeyboardInterrupt, typer.Abort):
         print("Interrupted.", file=sys.stderr)  # noqa: T201
         return INTERRUPTED
-    except BrokenPipeError:  # the reader of our output has gone; that is no error of ours
-        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
-        return 0
+    except BrokenPipeError:
+        return _reader_gone()
+    except SystemExit as stop:  # typer's own answer to a broken pipe, among others
+        if isinstance(stop.__context__, BrokenPipeError):
+            return _reader_gone()
+        return stop.code if isinstance(stop.code, int) else 1
     except MemoryError:
         return _tell_failure("There is not enough memory for this.", 1, as_json)
     except Exception as error:  # noqa: BLE001 -- the last net: one line instead of a traceback
         return _tell_failure(_unexpected(error), 1, as_json)
     return status if isinstance(status, int) else 0
+
+
+def _reader_gone() -> int:
+    """The reader of our output (`| head`) has gone, which is no error of ours."""
+    os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+    return 0
 
 
 def problems_as_text(problems: Sequence[Problem]) -> str:
@@ -65,7 +74,12 @@ def problems_as_text(problems: Sequence[Problem]) -> str:
             lines.append(f"  {problem.key or 'the file'}")
             lines.append(f"    found     {problem.found}")
             lines.append(f"    expected  {problem.expected}")
-    return "\n".join(lines)
+    return "\n".join(_visible(line) for line in lines)
+
+
+def _visible(line: str) -> str:
+    """Control characters of a file name or a key as text, so that they cannot act on a terminal."""
+    return "".join(c if c.isprintable() else f"\\u{ord(c):04x}" for c in line)
 
 
 def problems_as_json(problems: Sequence[Problem]) -> str:
