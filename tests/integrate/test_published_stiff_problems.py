@@ -4,62 +4,10 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
-from laboratory import experiment, step
+from published_problems import HIRES_END, ROBER_END, hires, ladder, rober
 
 from meanfree.experiment.plan import Solver
 from meanfree.integrate.single import integrate
-
-# Robertson (1966); reference values at t = 1e11 from the Bari/CWI test set for IVP solvers
-# and Hairer & Wanner, Solving Ordinary Differential Equations II. All printed digits.
-ROBER_END = np.array([2.0833401497e-08, 8.33336077033e-14, 0.999999979167])
-
-# Schafer (1975), Gottwald (1977); reference values at t = 321.8122 from the IVP test set.
-HIRES_END = np.array(
-    [
-        0.000737131257333,
-        0.000144248572632,
-        5.88872974097e-05,
-        0.00117565134328,
-        0.00238635619883,
-        0.00623896825274,
-        0.00284999839519,
-        0.00285000160481,
-    ]
-)
-
-
-def rober():
-    steps = [
-        step("A -> B", 0.04),
-        step("2 B -> B + C", 3e7),
-        step("B + C -> A + C", 1e4),
-    ]
-    return experiment(steps, {"A": 1.0}, until=1e11)
-
-
-def hires():
-    """As a mechanism: conversions of labels, one bimolecular step, and a zero-order source."""
-    steps = [
-        step("y1 -> y2", 1.71),
-        step("y2 -> y1", 0.43),
-        step("y3 -> y1", 8.32),
-        step(" -> y1", 0.0007, "source"),
-        step("y2 -> y4", 8.32),
-        step("y3 -> y4", 1.71),
-        step("y4 -> y3", 0.43),
-        step("y5 -> y3", 0.035),
-        step("y4 -> y6", 0.69),
-        step("y5 -> y6", 1.71),
-        step("y6 -> y5", 0.43),
-        step("y7 -> y5 + y8", 0.43),
-        step("y6 + y8 -> y7", 280.0),
-        step("y7 -> y6 + y8", 0.69),
-        step("y7 -> y8", 0.69),
-    ]
-    gases = [f"y{i}" for i in range(1, 9)]
-    fill = dict.fromkeys(gases, 0.0) | {"y1": 1.0, "y8": 0.0057}
-    return experiment(steps, fill, until=321.8122)
-
 
 # What Radau, BDF and LSODA reach at rtol 1e-8: Radau's error control is of third order while
 # the method is of fifth, so it is far better than asked; the multistep methods add up about
@@ -100,3 +48,37 @@ def test_hires_is_the_published_system():
     state = np.concatenate([y, np.zeros(system.n_ledger)])
     ours = ArrayEquations(system).derivative(0.0, state, system.segments[0])[:8]
     assert ours == pytest.approx(published, rel=1e-13, abs=1e-13)
+
+
+def test_cost_grows_linearly_with_the_mechanism():
+    """Entries of the Jacobian and of the index arrays a gas stay the same from 100 to 1,000."""
+    from meanfree.equations.arrays import ArrayEquations
+    from meanfree.equations.build import build_system
+
+    per_gas = []
+    for n in (100, 1000):
+        system = build_system(ladder(n))
+        equations = ArrayEquations(system)
+        jacobian = equations.jacobian(0.0, system.initial_state + 1.0, system.segments[0])
+        arrays = (system.net.value, system.orders.value, equations.term_gas)
+        per_gas.append((jacobian.nnz / n, sum(a.size for a in arrays) / n))
+    # five diagonals and four steps a gas, less what the two ends lack (about 1/n)
+    assert per_gas[0] == pytest.approx(per_gas[1], rel=0.03)
+    assert per_gas[1][0] == pytest.approx(5.0, rel=0.01)
+
+
+def test_a_thousand_gases_are_solved_with_sparse_arrays():
+    """Against the same mechanism through the compiled path, where that is small enough."""
+    from meanfree.equations.arrays import ArrayEquations
+    from meanfree.equations.build import build_system
+    from meanfree.integrate.stepping import equations_for, step_through
+
+    large = integrate(ladder(1000, until=10.0), Solver("BDF", rtol=1e-6, atol=1e-14))
+    assert isinstance(equations_for(large.system), ArrayEquations)
+    assert large.amounts(10.0).sum() == pytest.approx(large.amounts(0.0).sum(), rel=1e-9)
+    small = build_system(ladder(30, until=10.0))
+    ends = [
+        step_through(equations, Solver(), 10.0).trajectory(10.0)[:, 0]
+        for equations in (ArrayEquations(small), equations_for(small))
+    ]
+    assert ends[0] == pytest.approx(ends[1], rel=1e-8, abs=1e-16)
