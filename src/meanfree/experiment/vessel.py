@@ -6,6 +6,7 @@ import math
 from dataclasses import dataclass
 from typing import Literal
 
+from meanfree.rates.law import Interior
 from meanfree.sourced import Sourced
 
 
@@ -77,3 +78,17 @@ class Vessel:
         if self.shape is None:
             return None
         return self.shape.area(self.volume.value) / self.volume.value
+
+    @property
+    def interior(self) -> Interior | None:
+        """Form and sizes of the inside; None where only the surface, or nothing, is stated."""
+        if self.shape is None or self.shape.form == "stated":
+            return None
+        radius = 0.5 * self.shape.width(self.volume.value)
+        length = None if self.shape.length is None else self.shape.length.value
+        return Interior(self.shape.form, radius, length)
+
+    @property
+    def filling_volume(self) -> float:
+        """Volume at filling [m^3]."""
+        return self.volume.value

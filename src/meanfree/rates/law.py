@@ -10,7 +10,7 @@ from __future__ import annotations
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass, fields, is_dataclass
 from itertools import pairwise
-from typing import Any, ClassVar, Protocol
+from typing import Any, ClassVar, Literal, Protocol
 
 import numpy as np
 
@@ -75,11 +75,26 @@ class Numbers:
 NUMBERS = Numbers()
 
 
+@dataclass(frozen=True)
+class Interior:
+    """The inside of a sphere or a cylinder: radius and length [m]; no length: a long one."""
+
+    form: Literal["sphere", "cylinder"]
+    radius: float
+    length: float | None = None
+
+
 class Surroundings(Protocol):
-    """What a law may ask of the vessel: its size, and its area where that is known."""
+    """What a law may ask of the vessel: its form and area, where those are known."""
 
     @property
     def surface_to_volume(self) -> float | None: ...  # [1/m]
+    @property
+    def interior(self) -> Interior | None: ...
+    @property
+    def filling_volume(self) -> float: ...  # [m^3]
+    @property
+    def is_rigid(self) -> bool: ...
 
 
 @dataclass(frozen=True)
@@ -137,6 +152,8 @@ class Law:
         the first of several that follow it alike), or "".
     bath_inside : True where `coefficient` itself uses M (falloff); otherwise a step
         written with ``+ M`` multiplies the coefficient by M.
+    pair_needed : True where the step must be an encounter of two molecules.
+    reversible : False where detailed balance gives no reverse (walls, light, sources).
     """
 
     word: ClassVar[str] = ""
@@ -144,6 +161,7 @@ class Law:
     counted: ClassVar[str] = ""
     bath_inside: ClassVar[bool] = False
     pair_needed: ClassVar[bool] = False
+    reversible: ClassVar[bool] = True
 
     @staticmethod
     def coefficient(fn: Functions, T: Any, p: Any, M: Any, numbers: Sequence[Any]) -> Any:

@@ -11,6 +11,7 @@ from meanfree.rates.fixed import Fixed
 from meanfree.rates.law import Law
 from meanfree.rates.table import Table
 from meanfree.rates.termolecular import Termolecular
+from meanfree.rates.wall import Wall
 
 _ALL: tuple[type[Law], ...] = (
     Fixed,
@@ -21,6 +22,7 @@ _ALL: tuple[type[Law], ...] = (
     Table,
     Falloff,
     Termolecular,
+    Wall,
 )
 
 LAWS: dict[str, type[Law]] = {law.word: law for law in _ALL}
