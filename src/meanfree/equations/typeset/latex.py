@@ -35,6 +35,8 @@ _ESCAPED = {
     "⇌": r"\ensuremath{\rightleftharpoons}",
     "Δ": r"\ensuremath{\Delta}",
     "σ": r"\ensuremath{\sigma}",
+    "∞": r"\ensuremath{\infty}",
+    "ν": r"\ensuremath{\nu}",
     "μ": r"\ensuremath{\mu}",
 }
 _LETTERS = {"σ": r"\sigma", "μ": r"\mu", "π": r"\pi", "γ": r"\gamma", "λ": r"\lambda"}
@@ -69,6 +71,8 @@ class LaTeX(Writer):
             written += f"_{{{self.write(part.below)}}}"
         elif part.below:
             below = part.below.replace("−", "-")
+            if below == "∞":
+                return rf"{written}_{{\infty}}"
             plain = below.removeprefix("-").isdigit()
             written += f"_{{{below}}}" if plain else rf"_{{\mathrm{{{escape(below)}}}}}"
         return written + (f"^{{{_MARKS[part.mark]}}}" if part.mark else "")

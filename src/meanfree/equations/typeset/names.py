@@ -28,14 +28,32 @@ SLOTS: dict[str, tuple[Symbol, str]] = {
     "sigma": (Symbol("σ"), "m^2"),
     "mu": (Symbol("μ"), "kg"),
     "E0": (Symbol("E", "0"), "J mol^-1"),
+    "sigma_0": (Symbol("σ", "0"), "m^2"),
+    "gs": (Symbol("g"), ""),
+    "C6": (Symbol("C", "6"), "J m^6"),
+    "q2alpha": (Symbol("B", "ind"), "J m^4"),
+    "d2_over_alpha": (Symbol("W", "dip"), "J"),
+    "R_jump": (Symbol("d", "jump"), "m"),
+    "A_0": (Symbol("A", "0"), "k+"),
+    "n_0": (Symbol("n", "0"), ""),
+    "T_0": (Symbol("T", "ref,0"), "K"),
+    "E_0": (Symbol("E", "0"), "J mol^-1"),
+    "A_inf": (Symbol("A", "∞"), "k"),
+    "n_inf": (Symbol("n", "∞"), ""),
+    "T_inf": (Symbol("T", "ref,∞"), "K"),
+    "E_inf": (Symbol("E", "∞"), "J mol^-1"),
+    "F_0": (Symbol("f", "0"), ""),
 }
-"""Symbol and unit of a law's numbers; the unit "k" is that of the rate constant itself."""
+"""Symbol and unit of a law's numbers; the unit "k" is that of the rate constant itself, "k+" one
+order more."""
 
 SERIES: dict[str, tuple[str, str]] = {
     "T": ("T", "K"),
     "k": ("k", "k"),
     "E": ("E", "J mol^-1"),
     "sigma": ("σ", "m^2"),
+    "a": ("a", ""),
+    "b": ("b", "K"),
 }
 """Numbers that come in several: letter and unit of ``T_1``, ``k_2``, …"""
 
@@ -50,15 +68,26 @@ def visible(text: str) -> str:
 
 def gas_label(gas: Gas) -> Label:
     """A gas by its formula with subscripts where its name is one, else by its name as it stands."""
-    if gas.formula is None:
-        return Label((("text", visible(gas.name)),))
+    before, dash, last = gas.name.rpartition("-")
+    isomer = (before + dash, last) if last else ("", gas.name)
+    for prefix, name in (("", gas.name), isomer):
+        if _is_formula(name, gas):
+            prefixed = [("text", visible(prefix))] if prefix else []
+            return Label((*prefixed, *_pieces(name, gas)))
+    return Label((("text", visible(gas.name)),))
+
+
+def _is_formula(name: str, gas: Gas) -> bool:
     try:
-        if parse_formula(gas.name) != gas.formula:
-            return Label((("text", visible(gas.name)),))
+        return gas.formula is not None and parse_formula(name) == gas.formula
     except InputError:
-        return Label((("text", visible(gas.name)),))
+        return False
+
+
+def _pieces(name: str, gas: Gas) -> list[tuple[str, str]]:
+    assert gas.formula is not None
     pieces: list[tuple[str, str]] = []
-    for match in _PIECE.finditer(gas.name):
+    for match in _PIECE.finditer(name):
         text = match.group()
         if match["charge"]:
             pieces.append(("sup", _charge(text, gas.formula.charge)))
@@ -68,7 +97,7 @@ def gas_label(gas: Gas) -> Label:
             pieces[-1] = ("text", pieces[-1][1] + text)
         else:
             pieces.append(("text", text))
-    return Label(tuple(pieces))
+    return pieces
 
 
 def _charge(text: str, charge: int) -> str:

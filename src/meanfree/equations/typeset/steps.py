@@ -10,6 +10,7 @@ from typing import Any
 from meanfree.constants import STANDARD_PRESSURE, R
 from meanfree.equations.build import is_open
 from meanfree.equations.typeset import names
+from meanfree.equations.typeset.falloff import falloff_lines
 from meanfree.equations.typeset.plain import Plain
 from meanfree.equations.typeset.tree import (
     Call,
@@ -34,6 +35,7 @@ from meanfree.experiment.equilibrium import ln_K
 from meanfree.experiment.experiment import Experiment
 from meanfree.experiment.mechanism import GivenEquilibrium, Step
 from meanfree.experiment.temperature import has_energy_balance
+from meanfree.rates.falloff import Falloff
 
 LARGEST_FORMULA = 60
 """Parts of a formula beyond which words say it better."""
@@ -142,7 +144,7 @@ class StepWriter:
         law, numbers = self.step.law, self.step.law.numbers(self.context)
         given, values = law.inputs(), []
         for name, value in zip(self.template.slots, numbers, strict=True):
-            fixed = name == "s" or (name in given and given[name].default)
+            fixed = name in {"s", "gs"} or (address(name) in given and given[address(name)].default)
             values.append(self._half(value) if fixed else names.slot(name)[0])
         formula = self.template.coefficient(Written(), T, Symbol("p"), self.M, values)
         remark = f"law: {law.word}" + self._counting()
@@ -151,12 +153,16 @@ class StepWriter:
             remark += f"; {told}"
         if size(formula) > LARGEST_FORMULA:
             formula = Call("k", T)
-        if formula != names.slot("k")[0]:
+        if isinstance(law, Falloff):
+            first, *rest = falloff_lines(law, self.forward, self.M, values)
+            yield Line(first, "equation", f"law: {law.word}" + self._counting())
+            yield from map(Line, rest)
+        elif formula != names.slot("k")[0]:
             yield Line(equals(self.forward, formula), "equation", remark)
         for name, value, symbol in zip(self.template.slots, numbers, values, strict=True):
             if isinstance(symbol, Symbol):
                 unit = self._unit(names.slot(name)[1])
-                source = given[name].source if name in given else ""
+                source = given[address(name)].source if address(name) in given else ""
                 same = formula == symbol
                 shown = self.forward if same else symbol
                 note = "; ".join(filter(None, [remark if same else "", names.visible(source)]))
@@ -178,10 +184,10 @@ class StepWriter:
         return f", k counts events; the case counts {case}, {counted.per:g} an event"
 
     def _unit(self, word: str) -> Unit:
-        if word != "k":
+        if word not in {"k", "k+"}:
             return names.unit(word)
         outside = self.step.bath is not None and not self.step.law.bath_inside
-        return names.rate_constant_unit(self.step.order + outside)
+        return names.rate_constant_unit(self.step.order + outside + (word == "k+"))
 
     # Equilibrium
 
@@ -269,6 +275,17 @@ class StepWriter:
         if self.experiment.vessel.is_rigid:
             work = multiply(step.change_of_moles, RT)
             yield Line(equals(Symbol("ΔU", number), add(H, negative(work))))
+
+
+def address(slot: str) -> str:
+    """Where the inputs of a law hold one of its numbers."""
+    letter, _, limit = slot.partition("_")
+    key = {"E": "Ea", "T": "T_ref", "F": "Fc.constant"}.get(letter, letter)
+    if slot == "F_0":
+        return key
+    if limit in {"0", "inf"}:
+        return f"{'k0' if limit == '0' else 'kinf'}.{key}"
+    return {"E": "Ea", "E0": "threshold", "P": "steric"}.get(slot, slot)
 
 
 def valued(symbol: Node, value: float, unit: Unit) -> Relation:

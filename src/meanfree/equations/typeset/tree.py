@@ -217,16 +217,20 @@ def add(*things: Any) -> Node:
 
 def multiply(*things: Any) -> Node:
     """The product of parts; signs go in front, numbers too."""
-    sign, number, factors = 1, 1.0, []
-    for thing in map(node, things):
-        for factor in thing.factors if isinstance(thing, Product) else (thing,):
-            if isinstance(factor, Number):
-                number *= factor.value
-            elif isinstance(factor, Sum) and len(factor.terms) == 1:
-                sign *= factor.terms[0][0]
-                factors.append(factor.terms[0][1])
-            else:
-                factors.append(factor)
+    sign, number = 1, 1.0
+    factors: list[Node] = []
+    waiting = [node(thing) for thing in reversed(things)]
+    while waiting:
+        factor = waiting.pop()
+        if isinstance(factor, Product):
+            waiting.extend(reversed(factor.factors))
+        elif isinstance(factor, Number):
+            number *= factor.value
+        elif isinstance(factor, Sum) and len(factor.terms) == 1:
+            sign *= factor.terms[0][0]
+            waiting.append(factor.terms[0][1])
+        else:
+            factors.append(factor)
     if number < 0:
         sign, number = -sign, -number
     if number == 0:
@@ -256,6 +260,10 @@ def power(base: Any, exponent: Any) -> Node:
         return below
     if is_number(above, 0.5):
         return Root(below)
+    if isinstance(above, Number):
+        for parts in (3, 6):
+            if abs(above.value * parts - 1) < 1e-12:
+                return Power(below, Fraction(Number(1.0), Number(float(parts))))
     return Power(below, above)
 
 
