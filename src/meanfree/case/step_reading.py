@@ -7,14 +7,13 @@ from dataclasses import dataclass, replace
 
 from meanfree.case.findings import Findings
 from meanfree.case.meaning.reaction import Reaction
+from meanfree.case.schema.base import AS_GIVEN
 from meanfree.case.schema.steps import StepTable
 from meanfree.experiment.temperature import Temperature, is_constant
 from meanfree.gases.gas import Gas
 from meanfree.sourced import Sourced
 from meanfree.units import QuantityError, phrase, rate_constant, read
 from meanfree.units.reading import described
-
-AS_GIVEN = "the case file"
 
 
 @dataclass

@@ -15,7 +15,8 @@ def check(
     if quiet:
         typer.echo(str(case))
         return
-    from meanfree.cli.understood import as_text, understood
+    from meanfree.cli.understood import understood
+    from meanfree.cli.understood_text import as_text
 
     summary = understood(loaded)
     typer.echo(summary.model_dump_json(indent=2) if as_json else as_text(summary))

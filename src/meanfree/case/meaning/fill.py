@@ -6,7 +6,7 @@ from typing import Any, cast
 
 from meanfree.case.findings import Findings
 from meanfree.case.meaning.names import gas_name_problem
-from meanfree.case.schema.base import shape
+from meanfree.case.schema.base import AS_GIVEN, shape
 from meanfree.case.schema.tables import FillTable
 from meanfree.experiment.fill import Fill, Kind, Portion
 from meanfree.experiment.vessel import Vessel
@@ -65,11 +65,11 @@ def _portion(key: str, value: Any, with_total: bool, findings: Findings) -> Port
     """One gas: a quantity with a unit, or a fraction of the total."""
     try:
         if isinstance(value, str) and not _is_bare(value):
-            quantity = read_any(value, (*MEASURES, "fraction"))
+            quantity = read_any(value, (*MEASURES, "fraction"), AS_GIVEN)
         elif with_total:
-            quantity = read_number(value, "fraction")
+            quantity = read_number(value, "fraction", AS_GIVEN)
         else:
-            quantity = read_any(value, MEASURES)
+            quantity = read_any(value, MEASURES, AS_GIVEN)
     except QuantityError as error:
         wanted = (*MEASURES, "fraction") if with_total else MEASURES
         expected = error.expected.replace(any_phrase((*MEASURES, "fraction")), any_phrase(wanted))

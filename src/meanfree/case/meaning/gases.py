@@ -8,9 +8,8 @@ from typing import Any
 
 from meanfree.case.findings import Findings, did_you_mean
 from meanfree.case.meaning.names import gas_name_problem
-from meanfree.case.schema.base import shape
+from meanfree.case.schema.base import AS_GIVEN, shape
 from meanfree.case.schema.tables import GasTable
-from meanfree.case.step_reading import AS_GIVEN
 from meanfree.errors import InputError
 from meanfree.gases.gas import Gas
 from meanfree.gases.identity import find_gas
@@ -73,7 +72,21 @@ def find_gases(
             _refuse_label_values(name, table, findings)
         else:
             gases[name] = _known(name, table, findings)
+    _refuse_two_names(gases, findings)
     return gases
+
+
+def _refuse_two_names(gases: Mapping[str, Gas | None], findings: Findings) -> None:
+    """Under two names one gas would be two: what one step forms another would not find."""
+    first: dict[str, str] = {}
+    for name, gas in gases.items():
+        if gas is None or gas.cas is None:
+            continue
+        if gas.cas in first:
+            found = f"{name}, which is {first[gas.cas]} under another name (CAS {gas.cas})"
+            expected = f'{first[gas.cas]} throughout, or cas = "none" for a species of its own'
+            findings.wrong(f"gases.{name}", found, expected)
+        first.setdefault(gas.cas, name)
 
 
 def _known(name: str, table: GasTable | None, findings: Findings) -> Gas | None:

@@ -40,6 +40,9 @@ def _refuse_impossible(reading: StepReading) -> None:
     reaction = reading.reaction
     if reaction is None:
         return
+    if reading.table.has("photon"):
+        found = "a reverse of a step that takes in light"
+        reading.wrong("reverse", found, "no reverse, or no photon")
     fractional = [gas for gas, n in reaction.products if not float(n).is_integer()]
     if fractional:
         found = f"a reverse of a step with a fractional yield of {', '.join(fractional)}"

@@ -5,7 +5,7 @@ from __future__ import annotations
 from typing import Any
 
 from meanfree.case.findings import Findings, did_you_mean, one_of
-from meanfree.case.schema.base import shape
+from meanfree.case.schema.base import AS_GIVEN, shape
 from meanfree.case.schema.tables import RunTable, SolverTable
 from meanfree.experiment.plan import RunPlan, Solver
 from meanfree.sourced import Sourced
@@ -38,7 +38,7 @@ def _until(raw: Any, findings: Findings) -> Sourced | None:
     if raw is None or raw == "auto":
         return None
     try:
-        until = read(raw, "time")
+        until = read(raw, "time", AS_GIVEN)
     except QuantityError as error:
         findings.wrong("run.until", error.found, f'"auto", or {error.expected}')
         return None

@@ -29,6 +29,7 @@ from meanfree.units.gate import quoted
 from meanfree.units.reading import described
 
 _WRONG = object()
+AS_GIVEN = "the case file"
 TOP_KEYS = ("labels", "title", "purpose")
 
 
@@ -178,7 +179,7 @@ class Quantity:
 
     def _read(self, value: object) -> Sourced:
         try:
-            return read_any(value, self.dimensions)
+            return read_any(value, self.dimensions, AS_GIVEN)
         except QuantityError as error:
             raise _refusal(error) from None
 

@@ -149,7 +149,8 @@ class GasTable(Table):
     """Who a gas is, and values that replace the library's."""
 
     hints: ClassVar[dict[str, str]] = {
-        "mass": "molar_mass, with a unit such as g/mol",
+        "mass": "formula, from which the mass follows",
+        "molar_mass": "formula, from which the mass follows",
         "sigma": 'diameter, such as "4.1 angstrom"',
     }
     formula: Line | None = Field(None, description='chemical formula, such as "NOCl"')
