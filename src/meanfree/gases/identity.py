@@ -10,7 +10,7 @@ from __future__ import annotations
 from collections.abc import Iterable
 from difflib import get_close_matches
 
-from meanfree.errors import InputError
+from meanfree.errors import InputError, Problem
 from meanfree.gases.formula import Formula, parse_formula, refuse_look_alikes
 from meanfree.gases.gas import Gas
 from meanfree.gases.pinned import (
@@ -26,6 +26,33 @@ NO_CAS = "none"
 
 _LISTED = 12
 _LABEL_HINT = 'a bare label is declared with labels = ["..."] at the top of the case'
+
+
+class UnknownGasError(InputError):
+    """No list has a gas of that name; ``near`` holds pinned names that look like it."""
+
+    def __init__(self, problem: Problem, near: tuple[str, ...]) -> None:
+        self.near = near
+        super().__init__([problem])
+
+
+class SeveralGasesError(InputError):
+    """Several compounds answer to a name; ``candidates`` says which, for whoever asks next."""
+
+    def __init__(self, problem: Problem, candidates: str) -> None:
+        self.candidates = candidates
+        super().__init__([problem])
+
+
+def are_same(first: Gas, second: Gas) -> bool:
+    """Whether two gases are one: by name, or by CAS number, never by equal masses.
+
+    A species without a CAS number is the same as another only under its own name.
+
+    >>> are_same(find_gas("OH"), find_gas("HO")), are_same(find_gas("N2"), find_gas("CO"))
+    (True, False)
+    """
+    return first.name == second.name or (first.cas is not None and first.cas == second.cas)
 
 
 def find_gas(name: str, *, formula: str | None = None, cas: str | None = None) -> Gas:
@@ -203,7 +230,8 @@ def _several(key: str, found: str, candidates: Iterable[tuple[str, str]]) -> Inp
     shown = "; ".join(f"{cas} {name}" for cas, name in listed[:_LISTED])
     if len(listed) > _LISTED:
         shown += f"; and {len(listed) - _LISTED} more"
-    return InputError.at(key, found, f'cas = "..." with one of: {shown}; or "none"')
+    problem = Problem(key, found, f'cas = "..." with one of: {shown}; or "none"')
+    return SeveralGasesError(problem, shown)
 
 
 def _unknown(name: str, key: str) -> InputError:
@@ -214,4 +242,4 @@ def _unknown(name: str, key: str) -> InputError:
         f"a gas that is known{hint}, or one with formula and cas stated under [gases];"
         f" {_LABEL_HINT}"
     )
-    return InputError.at(key, f'"{shown}", which no list has', expected)
+    return UnknownGasError(Problem(key, f'"{shown}", which no list has', expected), tuple(near))

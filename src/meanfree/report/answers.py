@@ -2,22 +2,12 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
-
 from meanfree.integrate.run import Run
 from meanfree.report import wording
+from meanfree.report.rows import Answer
 from meanfree.report.summary import GasAnswer, RunSummary
 
 HALF_LIVES_SHOWN = 3
-
-
-@dataclass(frozen=True)
-class Answer:
-    """One question and its answer; ``note`` says what goes with it."""
-
-    question: str
-    answer: str
-    note: str = ""
 
 
 def answers(run: Run, summary: RunSummary) -> tuple[Answer, ...]:

@@ -8,7 +8,8 @@ from dataclasses import dataclass
 from meanfree.constants import N_A, R
 from meanfree.integrate.run import Run
 from meanfree.report import wording
-from meanfree.report.sheets import NONE, Row, Sheet, amount_in
+from meanfree.report.rows import NONE, Row, Sheet
+from meanfree.report.sheets import amount_in
 
 
 @dataclass(frozen=True)

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 
 import numpy as np
 
@@ -11,21 +10,9 @@ from meanfree.experiment.inputs import inputs
 from meanfree.integrate.run import Run
 from meanfree.report import wording
 from meanfree.report.kinetics import RateConstant
+from meanfree.report.rows import NONE, Row, Sheet
 from meanfree.report.summary import LEVELS, RunSummary
 from meanfree.sourced import Sourced
-
-Row = list[str]
-NONE = "–"
-"""What stands where there is no value."""
-
-
-@dataclass(frozen=True)
-class Sheet:
-    """A table: heading, rows, and which columns hold words rather than numbers."""
-
-    heading: Row
-    rows: list[Row]
-    words: tuple[int, ...] = (0,)
 
 
 def conversions(run: Run, summary: RunSummary) -> Sheet:

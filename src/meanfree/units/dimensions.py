@@ -70,6 +70,21 @@ def _plain_dimensions() -> list[Dimension]:
         D("amount", _powers("N1"), "mol", "2 mmol", highest=1e15, article="an"),
         D("concentration", _powers("N1 L-3"), "mol/m^3", "0.01 mol/L", highest=1e9, molecules=True),
         D(
+            "surface concentration",
+            _powers("N1 L-2"),
+            "mol/m^2",
+            "1e14 1/cm^2",
+            highest=1e6,
+            molecules=True,
+        ),
+        D(
+            "rate constant in a plane",
+            _powers("L2 N-1 T-1"),
+            "m^2/mol/s",
+            "1e13 cm^2/mol/s",
+            molecules=True,
+        ),
+        D(
             "number density",
             _powers("L-3"),
             "1/m^3",
