@@ -10,6 +10,7 @@ from scipy import constants
 from small_cases import GOOD, LABELS, LAW, PISTON, edited, load_edited, load_text
 
 from meanfree.case import load_case
+from meanfree.errors import InputError
 from meanfree.experiment.experiment import Experiment
 from meanfree.experiment.inputs import inputs
 from meanfree.experiment.mechanism import GivenEquilibrium
@@ -199,6 +200,26 @@ def test_constants_around_a_cycle_may_close(tmp_path: Path) -> None:
     )
     text = LABELS[: LABELS.index("[[steps]]")].replace('"A", "B"', '"A", "B", "C"') + steps
     assert len(load_text(tmp_path, text).experiment.steps) == 3
+
+
+def test_constants_of_several_kinds_around_a_cycle_may_close(tmp_path: Path) -> None:
+    # K = Kp/p° = 0.2 and K = Kc (RT/p°)^-1 = 5 at 480 K multiply to the third, 1.
+    Kc = 5 * R * 480 / 1e5 * 1e3  # L/mol
+    given = (
+        ("ab", "A -> 2 B", 'Kp = "0.2 bar"'),
+        ("bc", "2 B -> C", f'Kc = "{Kc:.6f} L/mol"'),
+        ("ac", "A -> C", "K = 1"),
+    )
+    steps = "\n".join(
+        f'[[steps]]\nname = "{name}"\nreaction = "{reaction}"\nlaw = "arrhenius"\n'
+        f'A = "1 {"L/mol/s" if name == "bc" else "1/s"}"\nEa = "0 J/mol"\n'
+        f'reverse = {{ {constant}, at = "480 K" }}\n'
+        for name, reaction, constant in given
+    )
+    text = LABELS[: LABELS.index("[[steps]]")].replace('"A", "B"', '"A", "B", "C"') + steps
+    assert len(load_text(tmp_path, text).experiment.steps) == 3
+    with pytest.raises(InputError):
+        load_text(tmp_path, text, {"steps.ac.reverse.K": "1.02"})
 
 
 def test_energies_are_there_where_they_are_needed_and_only_there(tmp_path: Path) -> None:

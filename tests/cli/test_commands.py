@@ -95,6 +95,7 @@ Assumed
 def test_check_as_json(capsys: Printed, case: Path) -> None:
     assert run(["check", str(case), "--json", "--set", "fill.gases.Ar=200 torr"]) == 0
     summary = json.loads(capsys.readouterr().out)
+    assert summary["schema"] == "meanfree-check-1"
     assert summary["case"] == "bulb"
     assert [filled["given"] for filled in summary["fill"]] == ["50 torr", "200 torr"]
     # p = 250 torr x 480/296, by hand

@@ -19,4 +19,4 @@ def check(
     from meanfree.cli.understood_text import as_text
 
     summary = understood(loaded)
-    typer.echo(summary.model_dump_json(indent=2) if as_json else as_text(summary))
+    typer.echo(summary.model_dump_json(indent=2, by_alias=True) if as_json else as_text(summary))

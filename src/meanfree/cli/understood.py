@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
-from pydantic import BaseModel, ConfigDict
+from typing import Literal
+
+from pydantic import BaseModel, ConfigDict, Field
 
 from meanfree import units
 from meanfree.case.loaded import LoadedCase
@@ -58,7 +60,9 @@ class StepUnderstood(_Record):
 class Understood(_Record):
     """A case as it was understood."""
 
-    schema_version: int = 1
+    schema_: Literal["meanfree-check-1"] = Field(
+        default="meanfree-check-1", serialization_alias="schema"
+    )
     case: str
     file: str
     hash: str

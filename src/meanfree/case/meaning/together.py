@@ -11,7 +11,7 @@ from meanfree.case.findings import Findings
 from meanfree.case.meaning.energies import energies_needed, with_energies
 from meanfree.case.meaning.temperature import span
 from meanfree.case.schema.tables import GasTable
-from meanfree.constants import STANDARD_PRESSURE, R
+from meanfree.experiment.equilibrium import ln_K
 from meanfree.experiment.experiment import Experiment
 from meanfree.experiment.mechanism import GivenEquilibrium, Step
 from meanfree.experiment.temperature import Temperature, has_energy_balance
@@ -153,21 +153,3 @@ def _check_cycle(
         f"constants around the cycle {around} that do not multiply to 1 at {T:g} K",
         f"this one {factor:.4g} times as large, or another of them changed",
     )
-
-
-def ln_K(step: Step, gases: Mapping[str, Gas], T: float) -> float:
-    """ln K (standard state 1 bar) of a reversible step at ``T`` [K]."""
-    reverse = step.reverse
-    if isinstance(reverse, GivenEquilibrium):
-        at, change = reverse.at.value, step.change_of_moles
-        value = math.log(reverse.constant.value)
-        if reverse.kind == "Kp":
-            value -= change * math.log(STANDARD_PRESSURE)
-        elif reverse.kind == "Kc":
-            value += change * math.log(R * at / STANDARD_PRESSURE)
-        if reverse.enthalpy is not None:
-            value -= reverse.enthalpy.value / R * (1 / T - 1 / at)
-        return value
-    energies = {gas: gases[gas].thermochemistry for gas in step.net}
-    total = sum(n * float(e.gibbs(T)) for gas, n in step.net.items() if (e := energies[gas]))
-    return -total / (R * T)
