@@ -76,7 +76,11 @@ def _targets(cases: list[LoadedCase], out: Path | None) -> list[Path]:
         for case in cases
     ]
     problems = [
-        Problem("CASE", f"{case.path}, whose results would also go to {folder}", "other names")
+        Problem(
+            "CASE",
+            f"{case.path}, whose results would also go to {folder}",
+            "cases whose files have different names",
+        )
         for place, (case, folder) in enumerate(zip(cases, folders, strict=True))
         if folder in folders[:place]
     ]

@@ -77,7 +77,7 @@ class RateConstant:
         if self.counts == "events":
             return ""
         k = f"{wording.number(self.in_case, 4)} {wording.pretty_unit(self.shown_unit)}"
-        return f"{k} ({self.counts})"
+        return f"{k} ({wording.clean(self.counts)})"
 
 
 def rate_constants(run: Run) -> tuple[RateConstant, ...]:

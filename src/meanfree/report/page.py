@@ -82,9 +82,9 @@ def page(
 
 
 def inlined(svg: str, name: str, caption: str) -> Markup:
-    """An SVG file as a part of a page: its ids made unique, its metadata left out."""
+    """An SVG file as a part of a page: its ids made unique, metadata and comments left out."""
     start = svg.index("<svg")
-    body = re.sub(r"<metadata>.*?</metadata>", "", svg[start:], flags=re.DOTALL)
+    body = re.sub(r"<metadata>.*?</metadata>|<!--.*?-->", "", svg[start:], flags=re.DOTALL)
     body = _ID.sub(lambda match: f"{match.group(1)}{name}-", body)
     head = f'<svg role="img" aria-label="{escape(caption, quote=True)}"'
     return Markup(body.replace("<svg", head, 1))

@@ -1,0 +1,1 @@
+"""What `collide` says about two gases: the question, the summary, the tables, the page."""
