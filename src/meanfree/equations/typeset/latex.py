@@ -110,7 +110,7 @@ class LaTeX(Writer):
 
     def product(self, part: tree.Product) -> str:
         r"""a \, b"""
-        return r" \, ".join(self.inside(factor, PRODUCT) for factor in part.factors)
+        return r" \, ".join(self.factors(part))
 
     def fraction(self, part: tree.Fraction) -> str:
         r"""\frac{a}{b}"""
@@ -148,9 +148,14 @@ class LaTeX(Writer):
 
     def row(self, part: tree.Row) -> str:
         """Parts in a row"""
-        return " ".join(
-            _OPERATORS.get(p, p) if isinstance(p, str) else self.write(p) for p in part.parts
-        )
+        written = ""
+        before: Node | str = ""
+        for p in part.parts:
+            here = _OPERATORS.get(p, p) if isinstance(p, str) else self.write(p)
+            thin = isinstance(p, Node) and isinstance(before, Node)
+            written += (r" \, " if thin else " ") + here
+            before = p
+        return written.strip()
 
     def relation(self, part: tree.Relation) -> str:
         """left = right, further rows aligned"""

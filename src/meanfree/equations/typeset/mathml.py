@@ -30,7 +30,7 @@ class MathML(Writer):
 
     def bracket(self, written: str) -> str:
         """(x)"""
-        return f"<mrow><mo>(</mo>{written}<mo>)</mo></mrow>"
+        return f"<mrow>{_fence('(')}{written}{_fence(')')}</mrow>"
 
     def number(self, part: tree.Number) -> str:
         """<mn>"""
@@ -89,8 +89,7 @@ class MathML(Writer):
 
     def product(self, part: tree.Product) -> str:
         """Factors with a thin space"""
-        written = [self.inside(factor, PRODUCT) for factor in part.factors]
-        return f"<mrow>{_SPACE.join(written)}</mrow>"
+        return f"<mrow>{_SPACE.join(self.factors(part))}</mrow>"
 
     def fraction(self, part: tree.Fraction) -> str:
         """<mfrac>"""
@@ -110,7 +109,7 @@ class MathML(Writer):
 
     def concentration(self, part: tree.Concentration) -> str:
         """[x]"""
-        return f"<mrow><mo>[</mo>{self.write(part.gas)}<mo>]</mo></mrow>"
+        return f"<mrow>{_fence('[')}{self.write(part.gas)}{_fence(']')}</mrow>"
 
     def derivative(self, part: tree.Derivative) -> str:
         """dx/dt"""
@@ -131,11 +130,15 @@ class MathML(Writer):
         return f"<mrow><mo>{{</mo><mtable>{''.join(rows)}</mtable></mrow>"
 
     def row(self, part: tree.Row) -> str:
-        """Parts in a row"""
-        written = [
-            f"<mo>{escape(p)}</mo>" if isinstance(p, str) else self.write(p) for p in part.parts
-        ]
-        return f"<mrow>{''.join(written)}</mrow>"
+        """Parts in a row, a thin space between two that are no operators"""
+        written = ""
+        before: Node | str = ""
+        for p in part.parts:
+            if isinstance(p, Node) and isinstance(before, Node):
+                written += _SPACE
+            written += self.write(p) if isinstance(p, Node) else f"<mo>{escape(p)}</mo>"
+            before = p
+        return f"<mrow>{written}</mrow>"
 
     def relation(self, part: tree.Relation) -> str:
         """left = right, further rows under the right side"""
@@ -161,8 +164,15 @@ def _letters(text: str) -> str:
 def _below(text: str) -> str:
     if not text:
         return ""
+    if text in {"i", "j"}:
+        return f"<mi>{text}</mi>"
     number = text.removeprefix("−")
     return _signed(text) if number.isdigit() else f"<mtext>{escape(text)}</mtext>"
+
+
+def _fence(mark: str) -> str:
+    """A bracket without the space that browsers give to an operator."""
+    return f'<mo lspace="0" rspace="0">{mark}</mo>'
 
 
 def _signed(text: str) -> str:

@@ -43,6 +43,14 @@ SLOTS: dict[str, tuple[Symbol, str]] = {
     "T_inf": (Symbol("T", "ref,∞"), "K"),
     "E_inf": (Symbol("E", "∞"), "J mol^-1"),
     "F_0": (Symbol("f", "0"), ""),
+    "gamma": (Symbol("γ"), ""),
+    "M_gas": (Symbol("m", "mol"), "kg mol^-1"),
+    "S_over_V": (Symbol("a", "S"), "m^-1"),
+    "D_0": (Symbol("D", "0"), "m^2 s^-1"),
+    "p_0": (Symbol("p", "0"), "Pa"),
+    "m": (Symbol("m"), ""),
+    "r": (Symbol("r"), "m"),
+    "L": (Symbol("L"), "m"),
 }
 """Symbol and unit of a law's numbers; the unit "k" is that of the rate constant itself, "k+" one
 order more."""

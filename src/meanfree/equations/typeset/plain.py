@@ -60,11 +60,7 @@ class Plain(Writer):
 
     def product(self, part: tree.Product) -> str:
         """a b c"""
-        *first, last = part.factors
-        # a/b c would be read as a/(b c) by some
-        least = [POWER if isinstance(factor, tree.Fraction) else PRODUCT for factor in first]
-        written = [self.inside(f, n) for f, n in zip(first, least, strict=True)]
-        return " ".join([*written, self.inside(last, PRODUCT)])
+        return " ".join(self.factors(part))
 
     def fraction(self, part: tree.Fraction) -> str:
         """a/(b c)"""

@@ -40,6 +40,17 @@ class Writer:
             return POWER
         return ATOM
 
+    def factors(self, part: tree.Product) -> list[str]:
+        """The factors of a product; a sum over an index needs no brackets where it stands last.
+
+        In one line a/b c would be read as a/(b c) by some.
+        """
+        *first, last = part.factors
+        flat = self.flat
+        least = [POWER if flat and isinstance(f, tree.Fraction) else PRODUCT for f in first]
+        written = [self.inside(f, n) for f, n in zip(first, least, strict=True)]
+        return [*written, self.inside(last, SUM if isinstance(last, tree.Total) else PRODUCT)]
+
     def bracket(self, written: str) -> str:
         """Round brackets around what is written."""
         raise NotImplementedError
