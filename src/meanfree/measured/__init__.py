@@ -1,0 +1,1 @@
+"""From measured runs to rate constants: readings, fits, intervals, and the comparison with Z."""

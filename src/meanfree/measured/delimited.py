@@ -1,0 +1,193 @@
+"""Columns of numbers out of a text file: any delimiter, decimal comma, headings, comments.
+
+Nothing is guessed that could change a number: a comma inside one is refused until the case says
+that it is the decimal mark, and every refusal names the line and the column.
+"""
+
+from __future__ import annotations
+
+import csv
+import io
+import math
+import re
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+from meanfree.errors import Problem
+from meanfree.units.gate import quoted
+
+LARGEST = 1 << 26  # bytes; a logger at 10 Hz fills this in a month
+MOST_PROBLEMS = 20
+_NUMBER = re.compile(r"[+-]?(?:[0-9]+(?:\.[0-9]*)?|\.[0-9]+)(?:[eE][+-]?[0-9]+)?")
+_DELIMITERS = ("\t", ";", ",", "|")
+_COMMENTS = ("#", "%")
+NAMES = {"\t": "tab", ";": "semicolon", ",": "comma", "|": "bar", " ": "blanks"}
+
+
+@dataclass(frozen=True)
+class Layout:
+    """How a file is written. Empty ``delimiter``: found from the lines; a blank: any white space.
+
+    ``skip`` lines stand before the table; ``heading`` counts its heading lines, of which the first
+    has the names (None: one, where a column is called by name or its first cell is no number).
+    """
+
+    delimiter: str = ""
+    decimal: str = "."
+    skip: int = 0
+    heading: int | None = None
+
+
+@dataclass(frozen=True)
+class Cells:
+    """The table of a file as text: ``heading`` names, and rows with the line each stood on."""
+
+    heading: tuple[str, ...]
+    rows: tuple[tuple[int, tuple[str, ...]], ...]
+    delimiter: str
+
+
+def decoded(content: bytes) -> str | Problem:
+    """Text of a file's bytes, or what is wrong with them."""
+    if len(content) > LARGEST:
+        return Problem("", "a file larger than 64 MiB", "a file of at most 64 MiB")
+    encoding = "utf-16" if content.startswith((b"\xff\xfe", b"\xfe\xff")) else "utf-8-sig"
+    try:
+        text = content.decode(encoding)
+    except UnicodeDecodeError as error:
+        line = content[: error.start].count(b"\n") + 1
+        return Problem(f"line {line}", "bytes that are not UTF-8", "a text file in UTF-8")
+    if "\0" in text:
+        line = text[: text.index("\0")].count("\n") + 1
+        return Problem(f"line {line}", "a zero byte", "a text file")
+    return text
+
+
+def cells_of(text: str, layout: Layout, wanted: Sequence[str | int]) -> Cells | Problem:
+    """The table in a text. ``wanted`` are the columns that will be asked for."""
+    lines = [
+        (place, line)
+        for place, line in enumerate(text.splitlines(), start=1)
+        if place > layout.skip and line.strip() and not line.lstrip().startswith(_COMMENTS)
+    ]
+    if not lines:
+        return Problem("", "no line that is not blank or a comment", "a table of readings")
+    delimiter = layout.delimiter or _delimiter([line for _, line in lines], layout.decimal)
+    table = [(place, _split(line, delimiter)) for place, line in lines]
+    count = layout.heading
+    if count is None:
+        count = 0 if _is_data(table[0][1], layout, wanted) else 1
+    if count >= len(table):
+        return Problem("", f"{len(table)} lines, all of them heading", "lines of readings")
+    heading = tuple(table[0][1]) if count else ()
+    return Cells(heading, tuple((place, tuple(row)) for place, row in table[count:]), delimiter)
+
+
+def _is_data(row: Sequence[str], layout: Layout, wanted: Sequence[str | int]) -> bool:
+    """True where the first line holds numbers and no names."""
+    if any(isinstance(column, str) for column in wanted):
+        return False
+    places = [column - 1 for column in wanted if isinstance(column, int) and column <= len(row)]
+    return any(number(row[place], layout.decimal) is not None for place in places)
+
+
+def _delimiter(lines: Sequence[str], decimal: str) -> str:
+    """The first delimiter that every line has equally often; white space where none does."""
+    for delimiter in _DELIMITERS:
+        if delimiter == decimal:
+            continue
+        counts = {len(_split(line, delimiter)) for line in lines[:50]}
+        if len(counts) == 1 and counts.pop() > 1:
+            return delimiter
+    for delimiter in _DELIMITERS:
+        if delimiter != decimal and sum(delimiter in line for line in lines[:50]) > len(lines) / 2:
+            return delimiter
+    return " "
+
+
+def _split(line: str, delimiter: str) -> list[str]:
+    if delimiter == " ":
+        return line.split()
+    row = next(csv.reader(io.StringIO(line), delimiter=delimiter), [])
+    return [cell.strip() for cell in row]
+
+
+def number(text: str, decimal: str = ".") -> float | None:
+    """A number as a person writes it, None for anything else.
+
+    >>> number("1.5e3"), number("1,5", decimal=","), number("1,5"), number("nan")
+    (1500.0, 1.5, None, None)
+    """
+    plain = text.strip().replace("\N{MINUS SIGN}", "-")
+    if decimal == ",":
+        if "." in plain:
+            return None
+        plain = plain.replace(",", ".", 1)
+    if _NUMBER.fullmatch(plain) is None:
+        return None
+    value = float(plain)
+    return value if math.isfinite(value) else None
+
+
+@dataclass(frozen=True)
+class Column:
+    """The numbers of one column and the lines on which they stood."""
+
+    name: str
+    values: tuple[float, ...]
+    lines: tuple[int, ...]
+
+
+def column(
+    cells: Cells, wanted: str | int, layout: Layout, key: str
+) -> tuple[Column | None, list[Problem]]:
+    """One column by its name or number; ``key`` is where the case asks for it."""
+    place = _place(cells, wanted, key)
+    if isinstance(place, Problem):
+        return None, [place]
+    name = cells.heading[place] if place < len(cells.heading) else f"{place + 1}"
+    problems: list[Problem] = []
+    values, lines = [], []
+    for line, row in cells.rows:
+        where = f"line {line}, column {name}"
+        text = row[place] if place < len(row) else ""
+        value = number(text, layout.decimal)
+        if value is None:
+            problems.append(_no_number(where, text, row, place, layout))
+            continue
+        values.append(value)
+        lines.append(line)
+    if len(problems) > MOST_PROBLEMS:
+        more = len(problems) - MOST_PROBLEMS
+        problems = problems[:MOST_PROBLEMS]
+        problems.append(Problem(f"column {name}", f"{more} more cells of that kind", "numbers"))
+    return Column(name, tuple(values), tuple(lines)), problems
+
+
+def _no_number(where: str, text: str, row: Sequence[str], place: int, layout: Layout) -> Problem:
+    if not text:
+        found = f"{len(row)} cells" if place >= len(row) else "an empty cell"
+        return Problem(where, found, "a number; a comment (#) takes a line out")
+    if "," in text and layout.decimal == "." and number(text, ",") is not None:
+        return Problem(where, f"{quoted(text)}, with a comma", 'a decimal point, or decimal = ","')
+    if "." in text and layout.decimal == "," and number(text) is not None:
+        return Problem(where, f"{quoted(text)}, with a point", 'a decimal comma, or decimal = "."')
+    return Problem(where, quoted(text), "a number")
+
+
+def _place(cells: Cells, wanted: str | int, key: str) -> int | Problem:
+    widest = max(len(row) for _, row in cells.rows)
+    if isinstance(wanted, int):
+        if 1 <= wanted <= widest:
+            return wanted - 1
+        return Problem(key, f"column {wanted}", f"a column from 1 to {widest}")
+    hits = [place for place, name in enumerate(cells.heading) if name == wanted]
+    if len(hits) == 1:
+        return hits[0]
+    if hits:
+        numbers = " or ".join(str(hit + 1) for hit in hits)
+        return Problem(
+            key, f"{quoted(wanted)}, a name of {len(hits)} columns", f"its number, {numbers}"
+        )
+    names = ", ".join(quoted(name) for name in cells.heading[:20])
+    return Problem(key, f"{quoted(wanted)}, which heads no column", f"one of {names}, or a number")

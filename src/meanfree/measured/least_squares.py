@@ -1,0 +1,270 @@
+"""Nonlinear least squares: scaled parameters, bounds, robust losses, several starts.
+
+It knows nothing of chemistry: residuals in units of their standard deviation come in, estimates
+with their covariance go out. scipy does the minimising; the scaling, the differences, the choice
+of method and what is said about the result are here.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass, replace
+from typing import Any, Final, Literal
+
+import numpy as np
+
+from meanfree.equations.system import Floats
+
+Residuals = Callable[[Floats], Floats]
+Jacobian = Callable[[Floats], Floats]
+Loss = Literal["linear", "soft_l1", "huber", "cauchy"]
+
+STEP: Final[float] = 3e-5
+"""Step of central differences over the size of a parameter: errors of 1e-9 by curvature, and by
+rounding where the residuals are good to 1e-14."""
+
+TOLERANCE: Final[float] = 1e-14
+
+
+@dataclass(frozen=True)
+class Scales:
+    """Where each parameter starts, its bounds and its size; all of shape (n,).
+
+    ``basis`` [shape (n, n)] maps inner coordinates to the parameters (over their sizes), so that
+    parameters that move together can be taken apart; None: each stands for itself.
+    """
+
+    start: Floats
+    low: Floats
+    high: Floats
+    size: Floats
+    basis: Floats | None = None
+
+    @classmethod
+    def of(
+        cls,
+        start: Sequence[float],
+        low: Sequence[float] | None = None,
+        high: Sequence[float] | None = None,
+        size: Sequence[float] | None = None,
+        basis: Floats | None = None,
+    ) -> Scales:
+        """Scales with what is not given left open: no bounds, the start itself as size."""
+        x = np.asarray(start, float)
+        return cls(
+            x,
+            np.full(len(x), -np.inf) if low is None else np.asarray(low, float),
+            np.full(len(x), np.inf) if high is None else np.asarray(high, float),
+            np.where(x == 0, 1.0, np.abs(x)) if size is None else np.asarray(size, float),
+            basis,
+        )
+
+    @property
+    def is_bounded(self) -> bool:
+        """True where some parameter has a bound."""
+        return bool(np.any(np.isfinite(self.low)) or np.any(np.isfinite(self.high)))
+
+
+@dataclass(frozen=True)
+class Solution:
+    """A minimum.
+
+    ``values`` [shape (n,)], ``residuals`` [shape (m,)] and their ``jacobian`` by the parameters
+    [shape (m, n)], all before any robust loss; ``cost`` is half the sum of the losses.
+    ``at_bound`` marks parameters that rest on a bound. ``converged`` is False where the method
+    gave up, with its reason in ``message``. ``minima`` are the costs the other starts ended at.
+    """
+
+    values: Floats
+    residuals: Floats
+    jacobian: Floats
+    cost: float
+    at_bound: np.ndarray
+    converged: bool
+    message: str
+    evaluations: int
+    loss: Loss = "linear"
+    width: float = 1.0
+    minima: tuple[float, ...] = ()
+
+    @property
+    def sum_of_squares(self) -> float:
+        """Sum of the squared residuals."""
+        return float(self.residuals @ self.residuals)
+
+    @property
+    def free(self) -> np.ndarray:
+        """Parameters that do not rest on a bound, as a mask [shape (n,)]."""
+        return ~self.at_bound
+
+
+def differences(f: Residuals, x: Floats, size: Floats, low: Floats, high: Floats) -> Floats:
+    """Jacobian by central differences, one-sided (second order) at a bound [shape (m, n)]."""
+    columns = []
+    for i in range(len(x)):
+        h = STEP * max(size[i], abs(x[i]))
+        up, down = x.copy(), x.copy()
+        up[i], down[i] = x[i] + h, x[i] - h
+        if up[i] > high[i]:
+            far = x.copy()
+            far[i] = x[i] - 2 * h
+            columns.append((3 * f(x) - 4 * f(down) + f(far)) / (2 * h))
+        elif down[i] < low[i]:
+            far = x.copy()
+            far[i] = x[i] + 2 * h
+            columns.append((-3 * f(x) + 4 * f(up) - f(far)) / (2 * h))
+        else:
+            columns.append((f(up) - f(down)) / (up[i] - down[i]))
+    return np.column_stack(columns) if columns else np.zeros((len(f(x)), 0))
+
+
+def solve(
+    residuals: Residuals,
+    scales: Scales,
+    *,
+    jacobian: Jacobian | None = None,
+    loss: Loss = "linear",
+    width: float = 1.0,
+    starts: Sequence[Floats] = (),
+    most: int = 2000,
+) -> Solution:
+    """The parameters that minimise the sum of losses of the residuals.
+
+    Parameters
+    ----------
+    residuals : parameters [shape (n,)] to residuals [shape (m,)] in units of their deviation
+    scales : start, bounds and sizes of the parameters
+    jacobian : its derivative [shape (m, n)]; None: central differences
+    loss, width : robust loss, and the residual beyond which it takes effect
+    starts : further starting points, each of shape (n,); the lowest minimum counts
+    most : evaluations after which a start is given up
+    """
+    found = [
+        _from(
+            residuals, replace(scales, start=np.asarray(start, float)), jacobian, loss, width, most
+        )
+        for start in (scales.start, *starts)
+    ]
+    best = min(found, key=lambda one: (not np.isfinite(one.cost), one.cost))
+    evaluations = sum(one.evaluations for one in found)
+    return replace(best, evaluations=evaluations, minima=tuple(one.cost for one in found))
+
+
+class _Inner:
+    """The problem in inner coordinates z: parameters = start + size (basis z)."""
+
+    def __init__(self, f: Residuals, scales: Scales, jacobian: Jacobian | None) -> None:
+        self.f, self.scales, self.given = f, scales, jacobian
+        size = scales.size
+        basis = np.eye(len(size)) if scales.basis is None else scales.basis
+        self.matrix = size[:, None] * basis
+        self.evaluations = 0
+
+    def outer(self, z: Floats) -> Floats:
+        x: Floats = self.scales.start + self.matrix @ z
+        return np.asarray(np.clip(x, self.scales.low, self.scales.high))
+
+    def residuals(self, z: Floats) -> Floats:
+        return self.at(self.outer(z))
+
+    def at(self, x: Floats) -> Floats:
+        self.evaluations += 1
+        with np.errstate(all="ignore"):
+            r = np.asarray(self.f(x), float)
+        # A step too far may overflow; a large finite residual makes the method take a smaller one.
+        return np.clip(np.nan_to_num(r, nan=1e150, posinf=1e150, neginf=-1e150), -1e150, 1e150)
+
+    def slope(self, x: Floats) -> Floats:
+        if self.given is not None:
+            return np.asarray(self.given(x), float)
+        return differences(self.at, x, self.scales.size, self.scales.low, self.scales.high)
+
+    def jacobian(self, z: Floats) -> Floats:
+        return np.asarray(self.slope(self.outer(z)) @ self.matrix)
+
+
+def _from(
+    f: Residuals,
+    scales: Scales,
+    jacobian: Jacobian | None,
+    loss: Loss,
+    width: float,
+    most: int,
+) -> Solution:
+    """One start, and once more from where it led: a far start makes poor sizes for differences."""
+    first = _once(f, scales, jacobian, loss, width, most)
+    size = np.where(first.values == 0, scales.size, np.abs(first.values))
+    closer = replace(scales, start=first.values, size=np.minimum(scales.size, size))
+    second = _once(f, closer, jacobian, loss, width, most)
+    better = second.converged and second.cost <= first.cost * (1 + 1e-12)
+    kept = second if better else first
+    return replace(kept, evaluations=first.evaluations + second.evaluations)
+
+
+def _once(
+    f: Residuals,
+    scales: Scales,
+    jacobian: Jacobian | None,
+    loss: Loss,
+    width: float,
+    most: int,
+) -> Solution:
+    from scipy.optimize import least_squares
+
+    inner = _Inner(f, scales, jacobian)
+    n = len(scales.start)
+    # Sizes are the scaling: MINPACK's own, by the columns of J, jumps too far from a poor start.
+    options: dict[str, Any] = {
+        "ftol": TOLERANCE,
+        "xtol": TOLERANCE,
+        "gtol": TOLERANCE,
+        "x_scale": 1.0,
+    }
+    options |= {"jac": inner.jacobian, "max_nfev": most, "loss": loss, "f_scale": width}
+    bounded = scales.is_bounded and scales.basis is None
+    if bounded:
+        low, high = (side - scales.start for side in (scales.low, scales.high))
+        options["bounds"] = (low / scales.size, high / scales.size)
+    plain = loss == "linear" and not bounded and len(inner.residuals(np.zeros(n))) >= n
+    options["method"] = "lm" if plain else "trf"
+    with np.errstate(all="ignore"):
+        try:
+            found = least_squares(inner.residuals, np.zeros(n), **options)
+            message, status, z = str(found.message), int(found.status), np.asarray(found.x)
+        except (ValueError, ArithmeticError, np.linalg.LinAlgError) as error:
+            message, status, z = str(error), -1, np.zeros(n)
+    x = inner.outer(z)
+    residuals = inner.at(x)
+    return Solution(
+        values=x,
+        residuals=residuals,
+        jacobian=inner.slope(x),
+        cost=_cost(residuals, loss, width),
+        at_bound=_at_bound(x, scales),
+        converged=status > 0 and bool(np.all(np.abs(residuals) < 1e149)),
+        message=message,
+        evaluations=inner.evaluations,
+        loss=loss,
+        width=width,
+    )
+
+
+def _at_bound(x: Floats, scales: Scales) -> np.ndarray:
+    near = 1e-9 * np.maximum(scales.size, np.abs(x))
+    return (x - scales.low <= near) | (scales.high - x <= near)
+
+
+def _cost(residuals: Floats, loss: Loss, width: float) -> float:
+    z = (residuals / width) ** 2
+    return float(0.5 * width**2 * np.sum(_rho(z, loss)))
+
+
+def _rho(z: Floats, loss: Loss) -> Floats:
+    """The loss of squared residuals z, as scipy.optimize.least_squares defines it."""
+    if loss == "soft_l1":
+        return np.asarray(2 * (np.sqrt(1 + z) - 1))
+    if loss == "huber":
+        return np.where(z <= 1, z, 2 * np.sqrt(np.maximum(z, 1)) - 1)
+    if loss == "cauchy":
+        return np.log1p(z)
+    return z
