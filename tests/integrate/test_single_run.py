@@ -269,6 +269,37 @@ def test_thermal_runaway_keeps_its_energy():
     assert run.invariants.energy < 1e-8
 
 
+def test_energies_are_not_used_where_they_are_not_known():
+    """NOCl's heat capacity ends at 1000 K; a few kelvin more are said, many more are refused."""
+    known = gas("NOCl")
+    assert known.thermochemistry is not None
+    assert known.thermochemistry.high == 1000.0
+    gases = [known, gas("NO"), gas("Cl2")]
+
+    def started_at(T, gases=gases):
+        return experiment(
+            [step("2 NO + Cl2 -> 2 NOCl", 1e-3)],
+            {"NO": 2.0, "Cl2": 1e-3},
+            temperature=Adiabatic(si(T)),
+            gases=gases,
+            until=1.0,
+        )
+
+    assert integrate(started_at(900.0)).notes == ()
+    (note,) = integrate(started_at(1004.0)).notes
+    assert note == (
+        "the run went from 1004 to 1004 K, but energies of NOCl are known from 298 to 1000 K"
+    )
+    with pytest.raises(ComputationError) as caught:
+        integrate(started_at(1100.0))
+    assert str(caught.value).endswith(
+        "energies of NOCl are known from 298 to 1000 K; "
+        "extrapolate = true under [gases.NOCl] allows it"
+    )
+    allowed = [dataclasses.replace(known, extrapolate=True), *gases[1:]]
+    assert len(integrate(started_at(1100.0, allowed)).notes) == 1
+
+
 def test_a_failed_check_is_an_error(monkeypatch):
     """A right-hand side that loses matter is caught by the elements."""
     from meanfree.equations.arrays import ArrayEquations

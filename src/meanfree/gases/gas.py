@@ -22,6 +22,7 @@ class Gas:
     diameter) are None where nothing is known. ``thermochemistry`` is what the reader
     gave; `meanfree.gases.energies.thermochemistry_of` finds the rest when it is needed.
     ``cautions`` are said wherever the gas appears; those of energies stand with the energies.
+    ``extrapolate`` allows energies at temperatures that their source does not cover.
     """
 
     name: str
@@ -32,6 +33,7 @@ class Gas:
     thermochemistry: Thermochemistry | None = None
     well_depth: Sourced | None = None
     cautions: tuple[str, ...] = ()
+    extrapolate: bool = False
 
     @property
     def is_label(self) -> bool:

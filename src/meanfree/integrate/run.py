@@ -53,7 +53,8 @@ class Run:
     """One integrated experiment.
 
     Times are in s; every method takes an array of times and gives one entry a time along the
-    last axis, SI units. ``settled_state`` is where the vessel comes to rest, where that is known.
+    last axis, SI units. ``beyond`` says where energies were used a little beyond their range, or
+    as far as the case allows. ``settled_state`` is where the vessel comes to rest, where that is known.
     """
 
     experiment: Experiment
@@ -66,6 +67,7 @@ class Run:
     rtol: float
     invariants: Invariants
     settled_state: Floats | None = None
+    beyond: tuple[str, ...] = ()
 
     @property
     def end(self) -> float:
@@ -178,6 +180,15 @@ class Run:
             if time is not None and time > 0:
                 found.append((system.gases[i], time))
         return tuple(found)
+
+    @cached_property
+    def notes(self) -> tuple[str, ...]:
+        """What the reader must know about this run beside its numbers."""
+        stopped = (
+            f"{gas} ran out at {time:.6g} s; a rate of order below one in it stops smoothly at zero"
+            for gas, time in self.ran_out
+        )
+        return (*self.beyond, *stopped)
 
     def reaction_time(self, gas: str, conversion: float) -> float | None:
         """First time [s] at which a filled gas reaches a conversion; None if it does not."""

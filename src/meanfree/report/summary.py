@@ -191,7 +191,7 @@ def summarise(run: Run, *, case: str, case_sha256: str, version: str) -> RunSumm
         amounts=[_amount(run, gas.name, resting) for gas in experiment.gases],
         rate_constants=[_step_answer(row) for row in rows],
         cautions=list(cautions_of(run, rows)),
-        notes=list(experiment.notes),
+        notes=[*experiment.notes, *run.notes],
         solver=SolverWork(
             method=run.method,
             rtol=run.rtol,

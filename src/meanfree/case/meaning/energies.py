@@ -51,7 +51,8 @@ def with_energies(
         _check_range(gas, found, span, table, needed_by, findings)
     for caution in found.cautions:
         findings.note(f"{gas.name}: {caution}.")
-    return replace(gas, thermochemistry=found)
+    extrapolate = table is not None and table.extrapolate
+    return replace(gas, thermochemistry=found, extrapolate=extrapolate)
 
 
 def _own(
