@@ -116,6 +116,11 @@ def _unexpected(error: Exception) -> str:
     )
 
 
+def _shown(parameter: Any) -> str:
+    """A parameter as the help shows it."""
+    return str(getattr(parameter, "metavar", None) or getattr(parameter, "name", "argument"))
+
+
 def _usage_problem(error: Exception, commands: Sequence[str]) -> Problem:
     """A mistake on the command line as a problem like any other."""
     message = " ".join(str(getattr(error, "message", "") or error).split()).rstrip(".")
@@ -137,9 +142,10 @@ def _usage_problem(error: Exception, commands: Sequence[str]) -> Problem:
     if option is not None:
         return Problem(where, f"{option} without its value", listed)
     if type(error).__name__ == "MissingParameter":
-        parameter = getattr(error, "param", None)
-        name = getattr(parameter, "metavar", None) or getattr(parameter, "name", "argument")
-        return Problem(where, f"no {name}", f"{where} {name}")
+        name = _shown(getattr(error, "param", None))
+        every = getattr(getattr(context, "command", None), "params", [])
+        wanted = [_shown(p) for p in every if getattr(p, "param_type_name", "") == "argument"]
+        return Problem(where, f"no {name}", " ".join([where, *(wanted or [name])]))
     extra = message.partition("unexpected extra argument")[2]
     if extra:
         return Problem(where, f"too many arguments: {extra.rpartition('(')[2][:-1]}", listed)

@@ -2,63 +2,52 @@
 
 from __future__ import annotations
 
-import io
+from collections.abc import Iterator
 from pathlib import Path
 
-from rich.console import Console
+from rich.console import RenderableType
 from rich.table import Table
 from rich.text import Text
 
+from meanfree.cli.screen import answers_grid, as_text, hanging
 from meanfree.integrate.run import Run
 from meanfree.report import wording
 from meanfree.report.answers import answers
-from meanfree.report.cautions import GUIDANCE
+from meanfree.report.cautions import GUIDANCE, grave_cautions
 from meanfree.report.kinetics import RateConstant, rate_constants
 from meanfree.report.summary import RunSummary
+
+MOST_CONSTANTS = 12
+"""Rate constants that are listed on the screen; the tables have them all."""
 
 
 def told(run: Run, summary: RunSummary, folder: Path) -> str:
     """The answer of a run as text for this screen; plain where it is no screen."""
-    out = io.StringIO()
-    screen = Console()
-    console = Console(
-        file=out,
-        force_terminal=screen.is_terminal,
-        color_system=screen.color_system if screen.is_terminal else None,  # type: ignore[arg-type]
-        width=screen.width,
-        highlight=False,
-        markup=False,
-        emoji=False,
-    )
-    console.print(Text(wording.clean(run.experiment.title), style="bold"))
+    return as_text(_parts(run, summary, folder))
+
+
+def _parts(run: Run, summary: RunSummary, folder: Path) -> Iterator[RenderableType]:
+    yield Text(wording.clean(run.experiment.title), style="bold")
     if run.experiment.purpose:
-        console.print(Text(wording.clean(run.experiment.purpose), style="italic"))
-    console.print()
-    console.print(_answers(run, summary))
-    console.print()
-    for row in rate_constants(run):
-        console.print(_constant(row))
-    cautions = [text for text in summary.cautions if text != GUIDANCE]
-    if cautions:
-        console.print()
-        for text in cautions:
-            console.print(_hanging("Caution:", text))
-    console.print()
-    console.print(Text(f"{folder / 'report.html'} has the figures, tables and sources."))
-    console.print(Text(GUIDANCE, style="dim"))
-    return "\n".join(line.rstrip() for line in out.getvalue().rstrip().split("\n"))
-
-
-def _answers(run: Run, summary: RunSummary) -> Table:
-    grid = Table.grid(padding=(0, 2))
-    grid.add_column(no_wrap=True)
-    grid.add_column()
-    for entry in answers(run, summary):
-        line = Text(entry.answer, style="bold")
-        if entry.note:
-            line.append(f"  {entry.note}", style="not bold")
-        grid.add_row(Text(entry.question), line)
-    return grid
+        yield Text(wording.clean(run.experiment.purpose), style="italic")
+    yield ""
+    yield answers_grid(answers(run, summary))
+    yield ""
+    rows = rate_constants(run)
+    for row in rows[:MOST_CONSTANTS]:
+        yield _constant(row)
+    if len(rows) > MOST_CONSTANTS:
+        yield f"• and {len(rows) - MOST_CONSTANTS} more, in rate_constants.csv"
+    yield ""
+    grave = list(grave_cautions(run, rows))
+    for text in grave:
+        yield hanging("Caution:", text)
+    others = len(set(summary.cautions) - {*grave, GUIDANCE})
+    if others:
+        many = "1 more caution" if others == 1 else f"{others} more cautions"
+        yield Text(f"The page has {many if grave else many.replace(' more', '')} to be read.")
+    yield Text(f"{folder / 'report.html'} has the figures, tables and sources.")
+    yield Text(GUIDANCE, style="dim")
 
 
 def _constant(row: RateConstant) -> Table:
@@ -75,13 +64,4 @@ def _constant(row: RateConstant) -> Table:
         line.append(f", A over Z = {wording.number(judged.A_over_Z)}")
     if judged is not None:
         line.append(f"; {judged.verdict}")
-    return _hanging("•", line)
-
-
-def _hanging(head: str, body: str | Text) -> Table:
-    """Text whose further lines are set in."""
-    grid = Table.grid(padding=(0, 1, 0, 0))
-    grid.add_column(no_wrap=True)
-    grid.add_column()
-    grid.add_row(Text(head), body if isinstance(body, Text) else Text(body))
-    return grid
+    return hanging("•", line)

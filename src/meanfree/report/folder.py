@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 import os
+from collections.abc import Mapping
 from pathlib import Path
 
 from meanfree.files import MANIFEST, OWNER_KEY, fresh_folder
@@ -43,12 +44,27 @@ def write_run(
     vectors = {name: svg for name, (svg, _) in figures.items()}
     texts["report.html"] = page(run, summary, rows, record, vectors)
     texts[MANIFEST] = _manifest(summary, record, owner)
+    images = {f"{name}.png": png for name, (_, png) in figures.items()}
+    return leave(folder, texts, images, owner=owner, replace=replace)
+
+
+def leave(
+    folder: Path,
+    texts: Mapping[str, str],
+    images: Mapping[str, bytes],
+    *,
+    owner: str,
+    replace: bool,
+) -> list[Path]:
+    """Write files by their names, all or none, and return the paths, the page first.
+
+    ``texts`` holds the manifest. Raises as `write_run`.
+    """
     with fresh_folder(folder, owner=owner, replace=replace) as new:
         for name, text in texts.items():
             (new / name).write_text(text, encoding="utf-8", newline="")
-        for name, (_, png) in figures.items():
-            (new / f"{name}.png").write_bytes(png)
-    images = [f"{name}.png" for name in figures]
+        for name, content in images.items():
+            (new / name).write_bytes(content)
     order = ["report.html", "summary.json", *sorted({*texts, *images})]
     return [folder / name for name in dict.fromkeys(order)]
 

@@ -36,13 +36,7 @@ def page(
     figures: dict[str, str],
 ) -> str:
     """The page of a run as HTML; ``figures`` maps each figure's name to its SVG text."""
-    environment = Environment(
-        loader=PackageLoader("meanfree.report", "templates"),
-        autoescape=select_autoescape(default=True, default_for_string=True),
-        undefined=StrictUndefined,
-        trim_blocks=True,
-        lstrip_blocks=True,
-    )
+    environment = templates()
     title = wording.clean(run.experiment.title)
     captions = captions_of(run, summary)
     grave = list(grave_cautions(run, rows))
@@ -79,6 +73,17 @@ def page(
         case_text=_lines(record.text),
     )
     return text
+
+
+def templates() -> Environment:
+    """Our templates; whatever goes into them is escaped."""
+    return Environment(
+        loader=PackageLoader("meanfree.report", "templates"),
+        autoescape=select_autoescape(default=True, default_for_string=True),
+        undefined=StrictUndefined,
+        trim_blocks=True,
+        lstrip_blocks=True,
+    )
 
 
 def inlined(svg: str, name: str, caption: str) -> Markup:

@@ -7,7 +7,7 @@ and what is per area in space.
 from __future__ import annotations
 
 from importlib import metadata
-from typing import Literal
+from typing import Any, Literal
 
 from pydantic import BaseModel, ConfigDict, Field
 
@@ -152,7 +152,7 @@ def summarise_pair(question: PairQuestion) -> CollideSummary:
     )
 
 
-def _in_units(name: str, value: float | None, in_plane: bool) -> dict[str, float | None]:
+def _in_units(name: str, value: float | None, in_plane: bool) -> dict[str, Any]:
     """A rate constant under each of its units; None in those that do not apply."""
 
     def shown(unit: str, dimension: str, applies: bool) -> float | None:
@@ -170,7 +170,7 @@ def _in_units(name: str, value: float | None, in_plane: bool) -> dict[str, float
     }
 
 
-def _density(value: float | None, in_plane: bool) -> dict[str, float | None]:
+def _density(value: float | None, in_plane: bool) -> dict[str, Any]:
     """Encounters of the two in a second, per volume or per area."""
     counted = None if value is None else value * constants.N_A
     return {
