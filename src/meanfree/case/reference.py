@@ -6,6 +6,7 @@ the two the same.
 
 from __future__ import annotations
 
+import re
 from typing import Any
 
 from meanfree.case.json_schema import case_schema
@@ -25,6 +26,9 @@ are no real gas.
 """
 
 SHARED = "Keys of every step"
+
+PLACED = ("vessel", "shape", "dead_space", "fill", "run", "solver", "reverse", "uncertainty")
+"""Tables whose place on the page is chosen; further ones follow before the laws."""
 
 
 def reference_markdown() -> str:
@@ -54,6 +58,10 @@ def reference_markdown() -> str:
     parts += [
         _section(f"`{key}` of a step", _named(tables, key)) for key in ("reverse", "uncertainty")
     ]
+    told = {*steps, *modes, "GasTable", *map(_table_name, PLACED)}
+    parts += [
+        _section(f"`{_key_of(name)}`", table) for name, table in tables.items() if name not in told
+    ]
     for name in steps:
         word = tables[name]["properties"]["law"]["const"]
         parts.append(_section(f'`law = "{word}"`', tables[name], shared | {"law"}))
@@ -62,7 +70,16 @@ def reference_markdown() -> str:
 
 def _named(tables: dict[str, dict[str, Any]], key: str) -> dict[str, Any]:
     """The table of a key: ``dead_space`` is DeadSpaceTable."""
-    return tables["".join(word.capitalize() for word in key.split("_")) + "Table"]
+    return tables[_table_name(key)]
+
+
+def _table_name(key: str) -> str:
+    return "".join(word.capitalize() for word in key.split("_")) + "Table"
+
+
+def _key_of(name: str) -> str:
+    """DeadSpaceTable is the table of ``dead_space``."""
+    return re.sub(r"(?<=[a-z])(?=[A-Z])", "_", name.removesuffix("Table")).lower()
 
 
 def _section(heading: str, table: dict[str, Any], without: set[str] | None = None) -> str:
