@@ -100,7 +100,9 @@ def _vessel(run: Run, summary: RunSummary) -> list[Answer]:
     if spread > 0.01:
         start = wording.temperature(vessel.initial_temperature_K)
         end = wording.temperature(vessel.final_temperature_K)
-        note = f"at most {wording.temperature(vessel.highest_temperature_K)}"
+        note = ""
+        if vessel.highest_temperature_K > vessel.final_temperature_K + 0.1:
+            note = f"at most {wording.temperature(vessel.highest_temperature_K)}"
         found.append(Answer("Temperature", f"{start} → {end}", note))
     return found
 

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping
 
 from meanfree.experiment.experiment import Experiment
 from meanfree.gases.condensation import condenses, vapour_pressure
@@ -11,6 +11,9 @@ from meanfree.gases.hazards import Hazards, hazards_of
 from meanfree.integrate.run import Run
 from meanfree.report import wording
 from meanfree.sourced import Sourced
+
+OF_LIMIT = 0.25
+"""Share of the lower limit in air from which a mixture is warned of; common practice, no source."""
 
 OXIDISERS = frozenset({"O2", "O3", "N2O", "NO2", "N2O4", "F2", "Cl2", "ClO2", "ClF3"})
 """Formulas (Hill order) with which a flammable gas may burn; common practice, no source."""
@@ -29,7 +32,7 @@ def dangers_in(run: Run) -> Iterator[str]:
     burning = [gas for gas in real if known[gas.name].lower_flammable is not None]
     for gas in burning:
         yield from _fire(run, gas, known[gas.name])
-    yield from _mixture(run.experiment, burning)
+    yield from _mixture(run.experiment, known)
     for gas in real:
         yield from _poison(gas, known[gas.name])
     silent = [wording.chemical(gas) for gas in real if not known[gas.name].anything_known]
@@ -79,19 +82,25 @@ def _fire(run: Run, gas: Gas, known: Hazards) -> Iterator[str]:
     yield f"{text}."
 
 
-def _mixture(experiment: Experiment, burning: list[Gas]) -> Iterator[str]:
-    filled = {gas for gas, n in experiment.moles.items() if n > 0}
-    fuels = [gas for gas in burning if gas.name in filled]
+def _mixture(experiment: Experiment, known: Mapping[str, Hazards]) -> Iterator[str]:
+    """A filled mixture that may burn; far below its limit in air it is left alone."""
+    total = sum(experiment.moles.values())
+    share = {gas: n / total for gas, n in experiment.moles.items() if n > 0}
+    fuels = []
+    for gas in experiment.gases:
+        danger = known.get(gas.name)
+        limit = None if danger is None else danger.lower_flammable
+        if limit is not None and share.get(gas.name, 0.0) > OF_LIMIT * limit.value:
+            fuels.append(wording.chemical(gas))
     oxidisers = [
-        gas
+        wording.chemical(gas)
         for gas in experiment.gases
-        if gas.name in filled and gas.formula is not None and gas.formula.hill in OXIDISERS
+        if gas.name in share and gas.formula is not None and gas.formula.hill in OXIDISERS
     ]
     if fuels and oxidisers:
-        fuel, oxidiser = wording.chemical(fuels[0]), wording.chemical(oxidisers[0])
         yield (
-            f"{fuel} is filled together with {oxidiser}: the mixture may ignite; "
-            "no ignition or explosion is predicted here."
+            f"{', '.join(fuels)} filled together with {', '.join(oxidisers)}: the mixture may "
+            "ignite; no ignition or explosion is predicted here."
         )
 
 
@@ -111,7 +120,7 @@ def _poison(gas: Gas, known: Hazards) -> Iterator[str]:
             for v in (known.ceiling, known.short_term, known.time_weighted)
             if v is not None
         )
-        yield f"{wording.chemical(gas)} is toxic: exposure limits {', '.join(limits)} ({source})."
+        yield f"{wording.chemical(gas)} has exposure limits: {', '.join(limits)} ({source})."
 
 
 def _concentration(value: Sourced) -> str:

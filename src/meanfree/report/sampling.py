@@ -17,6 +17,9 @@ SPREAD = 40.0
 DECADES_BEFORE = 2.0
 """How long before the fastest half-change a logarithmic axis begins, in powers of ten."""
 
+POINTS = 300
+"""Evenly spaced points of a curve."""
+
 ROWS = 200
 """Evenly spaced rows of a table, before the times that someone asked about."""
 
@@ -77,6 +80,15 @@ def fastest_half_change(run: Run) -> float | None:
         return None
     halves = [float(np.interp(0.5 * total[i], travelled[i], times[1:])) for i in moving]
     return min(half for half in halves if half > 0)
+
+
+def figure_times(run: Run, axis: TimeAxis) -> Floats:
+    """Times at which curves are drawn [s]: even on the axis, and where the integrator stepped."""
+    steps = run.trajectory.times
+    thinned = steps[:: max(1, len(steps) // POINTS)]
+    breaks = [segment.start for segment in run.system.segments]
+    every = np.concatenate([axis.times(POINTS), thinned, breaks])
+    return np.unique(every[(every >= axis.start) & (every <= axis.end)])
 
 
 def table_times(run: Run, summary: RunSummary) -> Floats:

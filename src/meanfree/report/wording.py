@@ -55,6 +55,16 @@ def number(value: float, digits: int = 3) -> str:
     return sign + f"{rounded:,.{decimals}f}".replace(",", " ")
 
 
+def power_of_ten(value: float) -> str:
+    """The power of ten nearest to a value.
+
+    >>> power_of_ten(1e-7), power_of_ten(1.0)
+    ('10⁻⁷', '1')
+    """
+    power = round(math.log10(value))
+    return f"10{str(power).translate(_SUPERSCRIPT)}" if power else "1"
+
+
 def given(value: float, digits: int = 7) -> str:
     """A number as someone gave it: no digits beyond those that say something.
 
@@ -73,8 +83,12 @@ def percent(fraction: float, digits: int = 3) -> str:
 
     >>> percent(0.3721), percent(0.999), percent(0.99996), percent(0.5), percent(-0.25)
     ('37.2 %', '99.9 %', '99.996 %', '50 %', '−25 %')
+    >>> percent(1 - 1e-9)
+    'over 99.999 %'
     """
     value = 100 * float(fraction)
+    if 99.999 < value < 100:
+        return "over 99.999 %"
     text = f"{abs(value):.{digits}g}"
     if 99 < abs(value) < 100 and float(text) >= 100:
         text = f"{100 - float(f'{100 - abs(value):.1g}'):.10g}"

@@ -11,10 +11,9 @@ from matplotlib.figure import Figure
 from meanfree.integrate.run import Run
 from meanfree.report import wording
 from meanfree.report.figures import labels, style
-from meanfree.report.sampling import SPREAD, TimeAxis, time_axis, unit_for
+from meanfree.report.sampling import SPREAD, TimeAxis, figure_times, time_axis, unit_for
 from meanfree.report.summary import GasAnswer, RunSummary
 
-POINTS = 400
 MARKED = 4
 """Half-lives marked in the figure; the table has them all."""
 
@@ -26,7 +25,7 @@ def figure(run: Run, summary: RunSummary) -> Figure:
     """Fraction left of every filled gas that is consumed; half-lives of the watched one."""
     watched = summary.gas(summary.watched_gas) if summary.watched_gas else None
     axis = _axis(run, watched)
-    times = axis.times(POINTS)
+    times = figure_times(run, axis)
     names = _names(run, summary)
     printed = [wording.chemical(run.experiment.gas_named[gas]) for gas in names]
     drawn, (ax,) = style.panels([3.1], beside=labels.room_for(printed), above=0.12)
@@ -61,7 +60,7 @@ def _axis(run: Run, watched: GasAnswer | None) -> TimeAxis:
     done = [t for t in (watched.half_lives_s if watched else []) if t is not None][:MARKED]
     if not done:
         return axis
-    end = min(axis.end, 1.25 * sum(done))
+    end = min(axis.end, 1.4 * sum(done))
     if end <= SPREAD * done[0]:
         return TimeAxis(False, 0.0, end, *unit_for(end))
     return replace(axis, end=end)
@@ -78,9 +77,10 @@ def _mark(ax: Axes, watched: GasAnswer, axis: TimeAxis) -> None:
         ax.plot([left, right], [level, level], color=style.GUIDE, linewidth=0.9, zorder=0.6)
         ax.plot([left], [level], marker="|", color=style.GUIDE, markersize=6, zorder=0.6)
         ax.plot([right], [level], marker="o", color=style.PALETTE[0], markersize=4.5)
-        far = right > 0.72 * axis.end / axis.seconds and not axis.logarithmic
+        text = f"{ORDINALS[place]}: {wording.duration(lasted)}"
+        far = labels.place_of(ax, right) + labels.width_of(ax, text) > 1.02
         ax.annotate(
-            f"{ORDINALS[place]}: {wording.duration(lasted)}",
+            text,
             (right, level),
             xytext=(-7, -10) if far else (8, 5),
             textcoords="offset points",

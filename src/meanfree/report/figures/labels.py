@@ -115,6 +115,19 @@ def legend_beside(ax: Axes) -> None:
     )
 
 
+def place_of(ax: Axes, x: float) -> float:
+    """Where a value of x lies, 0 at the left end of the axis and 1 at the right."""
+    low, high = ax.get_xlim()
+    if ax.get_xscale() == "log":
+        return float(np.log(x / low) / np.log(high / low))
+    return (x - low) / (high - low)
+
+
+def width_of(ax: Axes, text: str) -> float:
+    """About how wide a text is, as a fraction of the axis."""
+    return (0.064 * len(text) + 0.12) / size_of(ax)[0]
+
+
 def along_top(ax: Axes, marks: Sequence[tuple[float, str]]) -> None:
     """Dotted lines at times (in data units of x) with a word above each, where there is room."""
     low, high = ax.get_xlim()
@@ -123,10 +136,7 @@ def along_top(ax: Axes, marks: Sequence[tuple[float, str]]) -> None:
     for x, text in marks:
         if not low <= x <= high:
             continue
-        if ax.get_xscale() == "log":
-            place = float(np.log(x / low) / np.log(high / low))
-        else:
-            place = (x - low) / (high - low)
+        place = place_of(ax, x)
         # A long word ends at its line, so that the next line may follow closely.
         before = 0.068 * (len(text) - 1) + 0.034
         if before / width > place:

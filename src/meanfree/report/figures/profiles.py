@@ -14,11 +14,10 @@ from meanfree.equations.system import Floats
 from meanfree.integrate.run import Run
 from meanfree.report import wording
 from meanfree.report.figures import labels, style
-from meanfree.report.sampling import TimeAxis, time_axis
+from meanfree.report.sampling import TimeAxis, figure_times, time_axis
 from meanfree.report.summary import RunSummary
 
-POINTS = 400
-FAINT = 1e-3
+FAINT = 0.03
 """Ratio of the smallest to the largest peak below which concentrations are shown logarithmic."""
 
 MOST_GASES = 16
@@ -45,7 +44,7 @@ def drawn_gases(run: Run) -> list[str]:
 def figure(run: Run, summary: RunSummary) -> Figure:
     """Species against time, with a panel for everything else that moves."""
     axis = time_axis(run)
-    times = _times(run, axis)
+    times = figure_times(run, axis)
     others = _moving(run, times)
     names = drawn_gases(run)
     room = labels.room_for([wording.chemical(run.experiment.gas_named[name]) for name in names])
@@ -63,11 +62,6 @@ def figure(run: Run, summary: RunSummary) -> Figure:
     _name(axes[0], run, names)
     labels.along_top(axes[0], _marks(summary, axis))
     return drawn
-
-
-def _times(run: Run, axis: TimeAxis) -> Floats:
-    breaks = [s.start for s in run.system.segments if axis.start < s.start < axis.end]
-    return np.unique(np.concatenate([axis.times(POINTS), breaks]))
 
 
 def _moving(run: Run, times: Floats) -> list[tuple[str, Floats]]:
@@ -106,7 +100,7 @@ def _species(ax: Axes, run: Run, names: list[str], times: Floats, axis: TimeAxis
         name = wording.chemical(run.experiment.gas_named[names[n]])
         ax.plot(times / axis.seconds, shown / size, label=_literal(name), **style.style_of(n))
     if faint:
-        low = max(float(peaks[peaks > 0].min()) * 1e-2, highest * 1e-20)
+        low = max(float(peaks[peaks > 0].min()) * 5e-4, highest * 1e-20)
         style.set_logarithmic(ax, low / size, 3 * highest / size)
     else:
         style.set_linear(ax, 0.0, highest / size)

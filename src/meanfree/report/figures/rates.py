@@ -11,9 +11,8 @@ from meanfree.equations.system import Floats
 from meanfree.integrate.run import Run
 from meanfree.report import wording
 from meanfree.report.figures import labels, style
-from meanfree.report.sampling import time_axis
+from meanfree.report.sampling import figure_times, time_axis
 
-POINTS = 200
 MOST_STEPS = 8
 FAINT = 1e-3
 """Ratio of the smallest to the largest peak below which rates are shown logarithmic."""
@@ -30,7 +29,7 @@ _PREFIXES = (
 def figure(run: Run) -> Figure:
     """Rates of the fastest steps against time; a reverse step is the thin line of its forward."""
     axis = time_axis(run)
-    times = axis.times(POINTS)
+    times = figure_times(run, axis)
     rates = run.rates(times) if run.system.n_steps else np.zeros((0, len(times)))
     pairs = _pairs(run, rates)
     words = [_short(wording.clean(run.system.steps[j])) for pair in pairs for j in pair]

@@ -18,7 +18,7 @@ from matplotlib.figure import Figure
 from matplotlib.ticker import FuncFormatter, LogLocator, MaxNLocator, NullFormatter, ScalarFormatter
 
 from meanfree.report.sampling import TimeAxis
-from meanfree.report.wording import number
+from meanfree.report.wording import number, power_of_ten
 
 PALETTE: Final[tuple[str, ...]] = (
     "#002299",
@@ -43,6 +43,9 @@ DASHES: Final[tuple[Any, ...]] = (
 INK: Final[str] = "#222222"
 GUIDE: Final[str] = "#8a8a8a"
 WIDTH: Final[float] = 6.2
+LEFT: Final[float] = 0.88
+LABEL_FROM_AXIS: Final[float] = 0.52
+"""Where the words of every y axis stand, left of it [inch], so that panels line up."""
 DPI: Final[int] = 160
 
 _RC: Final[dict[str, Any]] = {
@@ -83,7 +86,7 @@ def panels(heights: Sequence[float], beside: float, above: float) -> tuple[Figur
 
     ``beside`` is the room for words right of the axes, ``above`` that over the first panel.
     """
-    space, below, left = 0.28, 0.52, 0.75
+    space, below, left = 0.28, 0.52, LEFT
     whole = sum(heights) + space * (len(heights) - 1) + below + above
     figure = Figure(figsize=(WIDTH, whole))
     axes: list[Axes] = []
@@ -96,6 +99,7 @@ def panels(heights: Sequence[float], beside: float, above: float) -> tuple[Figur
             height / whole,
         )
         axes.append(figure.add_axes(box, sharex=axes[0] if axes else None))
+        axes[-1].yaxis.set_label_coords(-LABEL_FROM_AXIS / (WIDTH - LEFT - beside), 0.5)
         top -= height + space
     for ax in axes[:-1]:
         ax.tick_params(labelbottom=False)
@@ -144,14 +148,19 @@ def set_logarithmic(ax: Axes, low: float, high: float) -> None:
 def plain_decades(axis: Any) -> None:
     """Powers of ten as a person writes them, few enough to be read."""
     axis.set_major_locator(LogLocator(10, numticks=9))
-    axis.set_major_formatter(FuncFormatter(lambda x, _: decade(x)))
+    axis.set_major_formatter(FuncFormatter(lambda x, _: decade(x, *axis.get_view_interval())))
     axis.set_minor_formatter(NullFormatter())
 
 
-def decade(value: float) -> str:
-    """A power of ten: ``0.01``, ``100``, ``10⁻⁷``."""
-    text = number(value, 1)
-    return text.removeprefix("1 × ")
+def decade(value: float, low: float, high: float) -> str:
+    """A power of ten: ``0.01`` on a short axis, ``10⁻²`` on one that goes far.
+
+    >>> decade(0.01, 0.005, 500.0), decade(0.01, 1e-9, 1.0)
+    ('0.01', '10⁻²')
+    """
+    if low >= 1e-4 and high <= 1e5:
+        return number(value, 1)
+    return power_of_ten(value)
 
 
 def label(ax: Axes, x: str = "", y: str = "") -> None:
