@@ -9,6 +9,7 @@ import numpy as np
 import sympy
 
 from meanfree.equations.arrays import ArrayEquations
+from meanfree.equations.branches import FOR_NUMBERS
 from meanfree.equations.symbolic import symbolic_system
 from meanfree.equations.system import Floats, Segment, System
 
@@ -27,7 +28,7 @@ class CompiledEquations:
         arguments = [
             form.t, form.states, form.k, form.switches, form.T_start, form.slope, form.start
         ]  # fmt: skip
-        modules = [self._gas_functions(), "math"]
+        modules = [{**self._gas_functions(), **FOR_NUMBERS}, "math"]
         before = list(form.flows.items())
         self._derivative = sympy.lambdify(
             arguments, list(form.derivative), modules, cse=_after(before)

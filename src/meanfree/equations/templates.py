@@ -7,6 +7,7 @@ coefficient is constant during a run never comes here, so short runs need no sym
 from __future__ import annotations
 
 from collections.abc import Callable
+from itertools import pairwise
 from typing import Any
 
 from meanfree.rates.law import Template
@@ -38,15 +39,23 @@ class Symbols:
 
     def below(self, x: Any, limit: Any, then: Any, otherwise: Any) -> Any:
         """``then`` where x < limit, else ``otherwise``."""
-        return self._sympy.Piecewise((then, x < limit), (otherwise, True))
+        from meanfree.equations.branches import choose
+
+        return choose(x, limit, then, otherwise)
+
+    def fall_moment(self, n: int, h: Any) -> Any:
+        """The integral of s^n exp(-h s) over s from 0 to 1."""
+        from meanfree.equations.branches import fall_moment
+
+        return fall_moment(n, h)
 
     def piecewise_linear(self, x: Any, xs: Any, ys: Any) -> Any:
         """Linear between the points, the outer pieces continued beyond them."""
-        pieces = []
-        for x0, x1, y0, y1 in zip(xs, xs[1:], ys, ys[1:], strict=False):
-            pieces.append((y0 + (y1 - y0) / (x1 - x0) * (x - x0), x < x1))
-        pieces[-1] = (pieces[-1][0], True)
-        return self._sympy.Piecewise(*pieces)
+        value = None
+        for (x0, x1), (y0, y1) in zip(pairwise(xs), pairwise(ys), strict=True):
+            piece = y0 + (y1 - y0) / (x1 - x0) * (x - x0)
+            value = piece if value is None else self.below(x, x0, value, piece)
+        return value
 
 
 def formula(law: Template, n_slots: int | None = None, readable: bool = False) -> tuple[Any, Any]:
@@ -69,10 +78,12 @@ def compiled(law: Template) -> Compiled:
     if law not in _COMPILED:
         import sympy
 
+        from meanfree.equations.branches import FOR_ARRAYS
+
         expression, symbols = formula(law)
         T, p, M = symbols[:3]
         parts = [expression, *(sympy.diff(expression, symbol) for symbol in (T, p, M))]
-        _COMPILED[law] = sympy.lambdify(symbols, parts, modules="numpy", cse=True)
+        _COMPILED[law] = sympy.lambdify(symbols, parts, [FOR_ARRAYS, "numpy"], cse=True)
     return _COMPILED[law]
 
 

@@ -10,6 +10,7 @@ are elementary.
 
 from __future__ import annotations
 
+from math import factorial
 from typing import Any
 
 from meanfree.rates.law import Functions
@@ -24,22 +25,40 @@ _TERMS = 16
 def moments(fn: Functions, h: Any) -> tuple[Any, Any, Any]:
     """Integrals of s^n exp(-h s) over s from 0 to 1, for n = 0, 1, 2 and h > 0.
 
-    The closed form of the second, (2 - exp(-h)(2 + 2h + h^2))/h^3, loses all digits at small
-    h. There the second is exp(-h) sum h^k 2!/(k+3)!, all of it positive, and the others follow
-    from g_(n-1) = (h g_n + exp(-h))/n, which only adds.
+    A namespace that carries them as functions of their own has ``fall_moment(n, h)``: sympy's,
+    for which differentiating the series term by term would take seconds a point.
 
     >>> from meanfree.rates.law import NUMBERS
     >>> [round(float(g), 12) for g in moments(NUMBERS, 1e-14)]
     [1.0, 0.5, 0.333333333333]
     """
-    fall = fn.exp(-h)
+    own = getattr(fn, "fall_moment", None)
+    if own is not None:
+        return own(0, h), own(1, h), own(2, h)
+    first, second, third = moments_up_to(fn, 2, h)
+    return first, second, third
+
+
+def moments_up_to(fn: Functions, highest: int, h: Any) -> tuple[Any, ...]:
+    """The same for n = 0 to ``highest``; d/dh of the n-th is minus the next.
+
+    The closed form of the second, (2 - exp(-h)(2 + 2h + h^2))/h^3, loses all digits at small
+    h. There the highest is exp(-h) sum h^k n!/(n+k+1)!, all of it positive, and the others follow
+    from g_(n-1) = (h g_n + exp(-h))/n, which only adds.
+    """
+    n, fall = highest, fn.exp(-h)
     series: Any = 0.0
     for k in range(_TERMS - 1, -1, -1):
-        series = (1.0 + h * series) / (k + 3.0)
-    # (1 + h(1 + h(...)/5)/4)/3: Horner's form of the sum
-    second = fn.below(h, _NARROW, fall * series, (2 - fall * (2 + 2 * h + h * h)) / h**3)
-    first = (h * second + fall) / 2
-    return h * first + fall, first, second
+        series = (1.0 + h * series) / (k + n + 1.0)
+    # n! (1 - exp(-h) sum_{k<=n} h^k/k!)/h^(n+1)
+    powers: Any = 0.0
+    for k in range(n, -1, -1):
+        powers = factorial(n) / factorial(k) + h * powers
+    last = fn.below(h, _NARROW, fall * series, (factorial(n) - fall * powers) / h ** (n + 1))
+    found = [last]
+    for k in range(n, 0, -1):
+        found.append((h * found[-1] + fall) / k)
+    return tuple(reversed(found))
 
 
 def piece(fn: Functions, a: Any, b: Any, sigma_a: Any, sigma_b: Any) -> Any:
