@@ -10,9 +10,6 @@ from scipy.optimize import brentq
 from meanfree.equations.system import Floats
 from meanfree.integrate.trajectory import Trajectory
 
-INSIDE = np.array([0.0, 0.25, 0.5, 0.75])
-"""Where each step is looked at, so that a crossing and its return in one step are seen."""
-
 Quantity = Callable[[Floats], Floats]
 """A quantity as a function of times [shape (n_times,)]."""
 
@@ -24,9 +21,7 @@ def crossings(
 
     A jump over the level at a break counts as a crossing at the break.
     """
-    times = trajectory.times
-    grid = (times[:-1, None] + np.diff(times)[:, None] * INSIDE).ravel()
-    grid = np.append(grid, times[-1])
+    grid = trajectory.fine_times
     difference = quantity(grid) - level
     found: list[float] = []
     if difference[0] == 0:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass, field
+from functools import cached_property
 
 import numpy as np
 from numpy.typing import ArrayLike
@@ -37,8 +38,13 @@ class Stretch:
         # Interpolants are not exact at their own ends; accepted states are.
         place = np.searchsorted(self.times, t)
         hit = (place < len(self.times)) & (np.take(self.times, place, mode="clip") == t)
-        out[:, hit] = np.column_stack(self.states)[:, place[hit]]
+        if np.any(hit):
+            out[:, hit] = np.column_stack([self.states[i] for i in place[hit]])
         return out
+
+
+INSIDE = np.array([0.0, 0.25, 0.5, 0.75])
+"""Where each step is looked at, so that a crossing and its return in one step are seen."""
 
 
 class Trajectory:
@@ -64,6 +70,26 @@ class Trajectory:
     def __call__(self, t: ArrayLike, after_break: bool = False) -> Floats:
         """States at times between 0 and the end [s]; ValueError outside."""
         asked = np.atleast_1d(np.asarray(t, float))
+        if asked is self.fine_times and not after_break:
+            return self._on_fine_times
+        return self._at(asked, after_break)
+
+    @cached_property
+    def fine_times(self) -> Floats:
+        """Four times in every step and the end [s]: where crossings are looked for."""
+        times = self.times
+        fine = (times[:-1, None] + np.diff(times)[:, None] * INSIDE).ravel()
+        return np.append(fine, times[-1])
+
+    @cached_property
+    def _on_fine_times(self) -> Floats:
+        """States there, worked out once: every level of every gas is looked for on them."""
+        states = self._at(self.fine_times, False)
+        states.flags.writeable = False
+        return states
+
+    def _at(self, asked: Floats, after_break: bool) -> Floats:
+        """States at times that nobody has asked for before."""
         if np.any(asked < 0) or np.any(asked > self.end):
             raise ValueError(f"times must lie between 0 and {self.end:g} s")
         out = np.empty((len(self.stretches[0].states[0]), len(asked)))
