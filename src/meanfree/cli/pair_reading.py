@@ -82,9 +82,10 @@ def question_of(arguments: PairArguments) -> PairQuestion:
         asked = question.coverage or question.pressure
         assert asked is not None
         room = "surface" if question.in_plane else "volume"
+        taken = f" ({asked.source})" if asked.default else ""
         raise InputError.at(
             option,
-            f"{wording.as_written(asked)}, at which the molecules would need "
+            f"{wording.as_written(asked)}{taken}, at which the molecules would need "
             f"{wording.percent(filled.filled_fraction)} of the {room}",
             "a dilute gas, in which molecules fill next to nothing",
         )
@@ -161,10 +162,10 @@ class _Reader:
         """Threshold or activation energy."""
         said = self.arguments
         threshold = self.quantity("--threshold", said.threshold, "molar energy")
-        Ea = self.quantity("--Ea", said.Ea, "molar energy")
         if threshold is not None and threshold.value < 0:
             expected = f"{units.phrase('molar energy')}, at least 0; a negative Ea goes to --Ea"
             self.wrong("--threshold", quoted(said.threshold), expected)
+        Ea = self.quantity("--Ea", said.Ea, "molar energy")
         if said.threshold is not None and said.Ea is not None:
             self.wrong("--Ea", "--threshold beside it", "one of the two: E0 is Ea - RT/2")
         return threshold, Ea

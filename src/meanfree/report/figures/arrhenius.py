@@ -18,8 +18,8 @@ POINTS: Final[int] = 120
 SPAN: Final[float] = 2.0
 """The figure reaches from the temperature asked for divided by this to it times this."""
 
-LEAST: Final[float] = 1e-290
-"""Below this a rate constant is no longer drawn."""
+LEAST: Final[float] = 1e-100
+"""Below this a rate constant is no longer drawn: nothing happens, whatever the unit."""
 
 
 def figure(question: PairQuestion) -> Figure:
