@@ -6,6 +6,7 @@ from collections.abc import Iterator, Sequence
 
 from meanfree.experiment.experiment import Experiment
 from meanfree.experiment.temperature import Adiabatic, Exchange, Isothermal, Program
+from meanfree.gases.gas import Gas
 from meanfree.integrate.run import Run, Status
 from meanfree.rates.collision import Collision
 from meanfree.report import wording
@@ -31,15 +32,18 @@ def cautions_of(run: Run, rows: Sequence[RateConstant]) -> Iterator[str]:
     yield from _of_orders(run)
     yield from _of_ranges(run)
     for gas in run.experiment.gases:
-        cautions = gas.cautions
-        if gas.thermochemistry is not None:
-            cautions = (*cautions, *gas.thermochemistry.cautions)
-        for caution in dict.fromkeys(cautions):
+        for caution in cautions_about(gas):
             yield f"{wording.chemical(gas)}: {wording.clean(caution)}."
     yield from dangers_in(run)
     if run.status is Status.HORIZON:
         yield f"The run is {run.status.value}; nothing here says where it ends."
     yield GUIDANCE
+
+
+def cautions_about(gas: Gas) -> tuple[str, ...]:
+    """What the tables say about the data of a gas, each once."""
+    energies = () if gas.thermochemistry is None else gas.thermochemistry.cautions
+    return tuple(dict.fromkeys((*gas.cautions, *energies)))
 
 
 def _of_pressure(run: Run) -> Iterator[str]:

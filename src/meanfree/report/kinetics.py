@@ -58,6 +58,8 @@ class RateConstant:
             return self.judgement.verdict
         if self.order != 2:
             return "no encounter of two molecules"
+        if " + M" in self.reaction:
+            return "no ceiling: the partner M is a mixture"
         return "no ceiling: a mass or a diameter is not known"
 
     @property

@@ -33,9 +33,9 @@ def half_lives(run: Run, summary: RunSummary) -> Sheet:
     count = max(most, 1)
     rows = []
     for gas in summary.gases:
-        times = [*gas.half_lives_s, *([None] * count)][:count]
         name = wording.chemical(run.experiment.gas_named[gas.gas])
-        rows.append([name, *(wording.duration(time) for time in times)])
+        times = [wording.duration(time) for time in gas.half_lives_s[:count]]
+        rows.append([name, *times, *([NONE] * (count - len(times)))])
     return Sheet(["Gas", *(_ordinal(n) for n in range(1, count + 1))], rows)
 
 

@@ -13,7 +13,7 @@ from meanfree.errors import ComputationError
 from meanfree.experiment.equilibrium import Equilibrium, equilibrium, why_none
 from meanfree.experiment.experiment import Experiment
 from meanfree.integrate.run import Run
-from meanfree.report.cautions import cautions_of
+from meanfree.report.cautions import cautions_about, cautions_of
 from meanfree.report.kinetics import RateConstant, rate_constants
 
 LEVELS = (0.1, 0.25, 0.5, 0.75, 0.9, 0.99)
@@ -191,7 +191,7 @@ def summarise(run: Run, *, case: str, case_sha256: str, version: str) -> RunSumm
         amounts=[_amount(run, gas.name, resting) for gas in experiment.gases],
         rate_constants=[_step_answer(row) for row in rows],
         cautions=list(cautions_of(run, rows)),
-        notes=[*experiment.notes, *run.notes],
+        notes=_notes(run),
         solver=SolverWork(
             method=run.method,
             rtol=run.rtol,
@@ -207,6 +207,15 @@ def summarise(run: Run, *, case: str, case_sha256: str, version: str) -> RunSumm
             most_negative=run.invariants.most_negative,
         ),
     )
+
+
+def _notes(run: Run) -> list[str]:
+    """Notes of the case and of the run, without those that stand among the cautions."""
+    cautioned = {
+        f"{gas.name}: {caution}" for gas in run.experiment.gases for caution in cautions_about(gas)
+    }
+    notes = dict.fromkeys([*run.experiment.notes, *run.notes])
+    return [note for note in notes if note.rstrip(".") not in cautioned]
 
 
 def find_equilibrium(experiment: Experiment) -> tuple[Equilibrium | None, str]:
