@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import itertools
 import math
 from collections.abc import Sequence
 
@@ -10,12 +9,12 @@ import numpy as np
 from numpy.polynomial.chebyshev import chebder
 
 from meanfree.constants import STANDARD_PRESSURE, R
+from meanfree.equations.segments import segments
 from meanfree.equations.system import (
     Floats,
     LawBlock,
     Reverses,
     Rows,
-    Segment,
     System,
     Thermal,
 )
@@ -62,7 +61,7 @@ def build_system(experiment: Experiment) -> System:
         exchange=0.0 if exchange is None else exchange.conductance.value / volume,
         surroundings=0.0 if exchange is None else exchange.surroundings.value,
         wall=0.0 if wall is None else wall.value / volume,
-        segments=_segments(experiment),
+        segments=segments(experiment, [step for _, step, _ in ways]),
         initial_x=np.array([experiment.moles[name] for name in gases]) / volume,
         initial_temperature=experiment.temperature.initial,
     )
@@ -208,16 +207,3 @@ def _thermal(experiment: Experiment) -> Thermal:
         h=table("enthalpy_coefficients"),
         s=table("entropy_coefficients"),
     )
-
-
-def _segments(experiment: Experiment) -> tuple[Segment, ...]:
-    """Stretches between breaks; the last one has no end."""
-    mode = experiment.temperature
-    if not isinstance(mode, Program):
-        return (Segment(0.0, math.inf, mode.initial),)
-    points = [(time.value, T.value) for time, T in mode.points]
-    segments = [
-        Segment(t0, t1, T0, (T1 - T0) / (t1 - t0))
-        for (t0, T0), (t1, T1) in itertools.pairwise(points)
-    ]
-    return (*segments, Segment(points[-1][0], math.inf, points[-1][1]))

@@ -118,6 +118,7 @@ class Segment:
     slope: float = 0.0
     switches: Floats | None = None
     retained: float = 1.0
+    drawn: float = 0.0
 
 
 @dataclass(frozen=True)

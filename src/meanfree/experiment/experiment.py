@@ -14,6 +14,7 @@ from meanfree.constants import R
 from meanfree.experiment.fill import Fill
 from meanfree.experiment.mechanism import Step
 from meanfree.experiment.plan import RunPlan
+from meanfree.experiment.samples import Sample
 from meanfree.experiment.temperature import Temperature, is_constant, known_range
 from meanfree.experiment.vessel import Vessel
 from meanfree.gases.gas import Gas
@@ -36,6 +37,7 @@ class Experiment:
     plan: RunPlan = field(default_factory=RunPlan)
     purpose: str = ""
     notes: tuple[str, ...] = ()
+    samples: tuple[Sample, ...] = ()
 
     @cached_property
     def gas_named(self) -> Mapping[str, Gas]:

@@ -146,8 +146,11 @@ def _energy(system: System, stretches: tuple[Stretch, ...], states: list[Floats]
     if len(system.open_steps) or np.any(system.photon) or not np.all(np.isnan(system.heat_given)):
         return None
     T_row = system.temperature_index
-    values, heats = [], []
-    for part in states:
+    values: list[float] = []
+    heats: list[float] = []
+    with_samples = 0.0  # energy that drawn samples took along
+    for stretch, part in zip(stretches, states, strict=True):
+        first = len(values)
         for y in part.T:
             T = float(y[T_row])
             of_gases = thermal.properties(system.thermal, T)
@@ -157,6 +160,9 @@ def _energy(system: System, stretches: tuple[Stretch, ...], states: list[Floats]
             taken = y[system.volume_index - 1] if system.exchanges_heat else 0.0
             values.append(float(y[: system.n_gases] @ each) + system.wall * T - taken)
             heats.append(float(y[: system.n_gases] @ of_gases.cp) * T)
+        if first and stretch.segment.retained < 1:
+            with_samples = values[first] - values[first - 1]
+        values[first:] = [value - with_samples for value in values[first:]]
     return float(np.max(np.abs(np.array(values) - values[0])) / max(heats))
 
 

@@ -33,7 +33,8 @@ class Settling:
         self.states: list[Floats] = [system.initial_state]
         self.most = np.abs(system.initial_state)
         self.reason = ""
-        self.goal = 1.0 - CONVERTED
+        # n/(theta n0) is what counts: drawn samples take their share without converting it.
+        self.goal = (1.0 - CONVERTED) * float(np.prod([s.retained for s in system.segments]))
 
     def __call__(self, t: float, y: Floats, last_segment: bool) -> bool:
         """True when the run is done; ``reason`` then says why."""

@@ -8,7 +8,7 @@ from __future__ import annotations
 
 import warnings
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any, Protocol
 
 import numpy as np
@@ -16,6 +16,7 @@ from scipy.integrate import BDF, LSODA, Radau
 
 from meanfree.equations.arrays import ArrayEquations
 from meanfree.equations.system import Floats, Segment, System
+from meanfree.errors import ComputationError
 from meanfree.experiment.plan import Solver
 from meanfree.integrate.trajectory import Stretch, Trajectory
 
@@ -88,7 +89,8 @@ def step_through(
     for index, segment in enumerate(system.segments):
         if segment.start >= end:
             break
-        y = drawn(system, y, segment.retained)
+        segment = as_drawn(system, y, segment)
+        y = drawn(system, y, segment)
         last = index == len(system.segments) - 1
         stretch = Stretch(segment, [segment.start], [y.copy()])
         stretches.append(stretch)
@@ -105,15 +107,39 @@ def _bound(watcher: Watcher, last: bool) -> Callable[[float, Floats], bool]:
     return lambda t, y: watcher(t, y, last)
 
 
-def drawn(system: System, y: Floats, retained: float) -> Floats:
-    """The state after a sample was drawn that leaves the fraction ``retained``."""
-    if retained == 1.0:
+def as_drawn(system: System, y: Floats, segment: Segment) -> Segment:
+    """The segment with what its sample leaves, where that was stated as a volume.
+
+    A volume v at vessel conditions takes v c of what is V0 w c, vessel and dead space together.
+    """
+    if segment.drawn == 0.0:
+        return segment
+    retained = 1.0 - segment.drawn / _spread(system, y, segment.temperature)
+    if retained <= 0:
+        volume = segment.drawn * system.initial_volume
+        raise ComputationError(
+            f"the sample at {segment.start:g} s, {volume:.3g} m^3, is more than the vessel holds"
+        )
+    return replace(segment, retained=retained, drawn=0.0)
+
+
+def drawn(system: System, y: Floats, segment: Segment) -> Floats:
+    """The state just after the segment's sample was drawn; its temperature stays."""
+    if segment.retained == 1.0:
         return y
     y = y.copy()
-    y[: system.n_gases] *= retained
     if system.volume_varies:
-        y[system.volume_index] *= retained
+        # n and v + dead T shrink alike; the dead space keeps its size.
+        spread = _spread(system, y, segment.temperature)
+        y[system.volume_index] -= (1 - segment.retained) * spread
+    y[: system.n_gases] *= segment.retained
     return y
+
+
+def _spread(system: System, y: Floats, temperature: float) -> float:
+    """w = v + dead T, the volume over V0 at which all the gas would have the vessel's c."""
+    T = float(y[system.temperature_index]) if system.temperature_varies else temperature
+    return (float(y[system.volume_index]) if system.volume_varies else 1.0) + system.dead * T
 
 
 def tolerances(system: System, solver: Solver) -> Floats:

@@ -190,6 +190,14 @@ class Law:
         """What a reader should know about this law in this step, in whole sentences."""
         yield from ()
 
+    def switch_times(self) -> tuple[float, ...]:
+        """Times at which the clock switches the step on or off [s], zero left out."""
+        return ()
+
+    def is_on(self, t: float) -> bool:
+        """Whether the step runs just after a time [s]."""
+        return True
+
     @property
     def temperature_range(self) -> tuple[float, float] | None:
         """Lowest and highest temperature the law may be asked for [K]; None: any."""

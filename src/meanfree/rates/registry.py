@@ -9,6 +9,8 @@ from meanfree.rates.cross_section import CrossSection
 from meanfree.rates.falloff import Falloff
 from meanfree.rates.fixed import Fixed
 from meanfree.rates.law import Law
+from meanfree.rates.photolysis import Photolysis
+from meanfree.rates.source import Source
 from meanfree.rates.table import Table
 from meanfree.rates.termolecular import Termolecular
 from meanfree.rates.wall import Wall
@@ -23,6 +25,8 @@ _ALL: tuple[type[Law], ...] = (
     Falloff,
     Termolecular,
     Wall,
+    Photolysis,
+    Source,
 )
 
 LAWS: dict[str, type[Law]] = {law.word: law for law in _ALL}
