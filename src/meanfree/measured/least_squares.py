@@ -127,6 +127,8 @@ def solve(
     width: float = 1.0,
     starts: Sequence[Floats] = (),
     most: int = 2000,
+    polish: bool = True,
+    tolerance: float = TOLERANCE,
 ) -> Solution:
     """The parameters that minimise the sum of losses of the residuals.
 
@@ -138,16 +140,26 @@ def solve(
     loss, width : robust loss, and the residual beyond which it takes effect
     starts : further starting points, each of shape (n,); the lowest minimum counts
     most : evaluations after which a start is given up
+    polish : minimise once more from the minimum, with the sizes found there
+    tolerance : relative change of squares, parameters and slope below which it is done
     """
+    once = _from if polish else _once
+    how = _How(loss, width, most, tolerance)
     found = [
-        _from(
-            residuals, replace(scales, start=np.asarray(start, float)), jacobian, loss, width, most
-        )
-        for start in (scales.start, *starts)
+        once(residuals, replace(scales, start=np.asarray(x, float)), jacobian, how)
+        for x in (scales.start, *starts)
     ]
     best = min(found, key=lambda one: (not np.isfinite(one.cost), one.cost))
     evaluations = sum(one.evaluations for one in found)
     return replace(best, evaluations=evaluations, minima=tuple(one.cost for one in found))
+
+
+@dataclass(frozen=True)
+class _How:
+    loss: Loss
+    width: float
+    most: int
+    tolerance: float
 
 
 class _Inner:
@@ -172,7 +184,8 @@ class _Inner:
         with np.errstate(all="ignore"):
             r = np.asarray(self.f(x), float)
         # A step too far may overflow; a large finite residual makes the method take a smaller one.
-        return np.clip(np.nan_to_num(r, nan=1e150, posinf=1e150, neginf=-1e150), -1e150, 1e150)
+        r = np.nan_to_num(r, nan=1e150, posinf=1e150, neginf=-1e150)
+        return np.asarray(np.clip(r, -1e150, 1e150))
 
     def slope(self, x: Floats) -> Floats:
         if self.given is not None:
@@ -187,15 +200,13 @@ def _from(
     f: Residuals,
     scales: Scales,
     jacobian: Jacobian | None,
-    loss: Loss,
-    width: float,
-    most: int,
+    how: _How,
 ) -> Solution:
     """One start, and once more from where it led: a far start makes poor sizes for differences."""
-    first = _once(f, scales, jacobian, loss, width, most)
+    first = _once(f, scales, jacobian, how)
     size = np.where(first.values == 0, scales.size, np.abs(first.values))
     closer = replace(scales, start=first.values, size=np.minimum(scales.size, size))
-    second = _once(f, closer, jacobian, loss, width, most)
+    second = _once(f, closer, jacobian, how)
     better = second.converged and second.cost <= first.cost * (1 + 1e-12)
     kept = second if better else first
     return replace(kept, evaluations=first.evaluations + second.evaluations)
@@ -205,9 +216,7 @@ def _once(
     f: Residuals,
     scales: Scales,
     jacobian: Jacobian | None,
-    loss: Loss,
-    width: float,
-    most: int,
+    how: _How,
 ) -> Solution:
     from scipy.optimize import least_squares
 
@@ -215,17 +224,17 @@ def _once(
     n = len(scales.start)
     # Sizes are the scaling: MINPACK's own, by the columns of J, jumps too far from a poor start.
     options: dict[str, Any] = {
-        "ftol": TOLERANCE,
-        "xtol": TOLERANCE,
-        "gtol": TOLERANCE,
+        "ftol": how.tolerance,
+        "xtol": how.tolerance,
+        "gtol": how.tolerance,
         "x_scale": 1.0,
     }
-    options |= {"jac": inner.jacobian, "max_nfev": most, "loss": loss, "f_scale": width}
+    options |= {"jac": inner.jacobian, "max_nfev": how.most, "loss": how.loss, "f_scale": how.width}
     bounded = scales.is_bounded and scales.basis is None
     if bounded:
         low, high = (side - scales.start for side in (scales.low, scales.high))
         options["bounds"] = (low / scales.size, high / scales.size)
-    plain = loss == "linear" and not bounded and len(inner.residuals(np.zeros(n))) >= n
+    plain = how.loss == "linear" and not bounded and len(inner.residuals(np.zeros(n))) >= n
     options["method"] = "lm" if plain else "trf"
     with np.errstate(all="ignore"):
         try:
@@ -239,13 +248,13 @@ def _once(
         values=x,
         residuals=residuals,
         jacobian=inner.slope(x),
-        cost=_cost(residuals, loss, width),
+        cost=_cost(residuals, how.loss, how.width),
         at_bound=_at_bound(x, scales),
         converged=status > 0 and bool(np.all(np.abs(residuals) < 1e149)),
         message=message,
         evaluations=inner.evaluations,
-        loss=loss,
-        width=width,
+        loss=how.loss,
+        width=how.width,
     )
 
 

@@ -1,0 +1,179 @@
+"""Profile-likelihood intervals: how far a parameter can go while all others make up for it.
+
+Source: Bates and Watts, Nonlinear Regression Analysis and Its Applications, 1988, section 6.1;
+Venzon and Moolgavkar, Appl. Statist. 37 (1988) 87.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable
+from dataclasses import dataclass
+from typing import Final
+
+import numpy as np
+
+from meanfree.equations.system import Floats
+from meanfree.measured.least_squares import Residuals, Scales, Solution, solve
+
+FAR: Final[float] = 60.0
+"""Steps of one standard error after which an interval counts as open; no source."""
+
+BETTER: Final[float] = 1e-6
+"""A sum of squares lower by this is a better minimum and not rounding."""
+
+
+class BetterMinimum(Exception):  # noqa: N818 -- nothing went wrong: there is news
+    """A profile met a lower minimum, at ``values``."""
+
+    def __init__(self, values: Floats) -> None:
+        self.values = values
+        super().__init__("a better minimum")
+
+
+@dataclass(frozen=True)
+class Profile:
+    """The profile of one parameter, in inner coordinates.
+
+    ``low`` and ``high`` are where the excess of the sum of squares reaches ``threshold``; infinite
+    where it never does. ``at`` and ``excess`` [shape (n,)] are the points met on the way.
+    """
+
+    low: float
+    high: float
+    at: Floats
+    excess: Floats
+    threshold: float
+
+
+def profile(
+    residuals: Residuals,
+    solution: Solution,
+    covariance: Floats,
+    place: int,
+    threshold: float,
+    scales: Scales,
+) -> Profile:
+    """The profile of the parameter at ``place``.
+
+    ``covariance`` is that of the parameters for residuals of unit deviation; ``threshold`` the
+    excess of the sum of squares at which the interval ends (the square of Student's t).
+
+    Raises BetterMinimum where it meets a sum of squares below that of the solution.
+    """
+    walk = _Walk(residuals, solution, covariance, place, scales)
+    ends = [_end(walk, sign, threshold) for sign in (-1.0, 1.0)]
+    points = sorted(walk.points.items())
+    return Profile(
+        ends[0],
+        ends[1],
+        np.array([u for u, _ in points]),
+        np.array([excess for _, excess in points]),
+        threshold,
+    )
+
+
+class _Walk:
+    """Excess of the sum of squares at values of one parameter, the others fitted anew."""
+
+    def __init__(
+        self,
+        residuals: Residuals,
+        solution: Solution,
+        covariance: Floats,
+        place: int,
+        scales: Scales,
+    ) -> None:
+        self.residuals, self.solution, self.place, self.scales = residuals, solution, place, scales
+        n = len(solution.values)
+        self.others = np.array([i for i in range(n) if i != place], int)
+        self.origin = float(solution.values[place])
+        self.least = solution.sum_of_squares
+        variance = covariance[place, place]
+        known = np.isfinite(variance) and variance > 0
+        self.step = math.sqrt(variance) if known else float(scales.size[place])
+        along = covariance[self.others, place] / variance if known else np.zeros(n - 1)
+        self.along = np.where(np.isfinite(along), along, 0.0)
+        self.points: dict[float, float] = {self.origin: 0.0}
+        self.last: dict[float, tuple[float, Floats]] = {}
+
+    def excess(self, u: float) -> float:
+        """Excess at u; the others start where the last point on this side suggests."""
+        side = 1.0 if u >= self.origin else -1.0
+        before, others = self.last.get(side, (self.origin, self.solution.values[self.others]))
+        guess = others + self.along * (u - before)
+        low, high = self.scales.low[self.others], self.scales.high[self.others]
+        guess = np.clip(guess, low, high)
+
+        def of_others(rest: Floats) -> Floats:
+            return self.residuals(self._joined(u, rest))
+
+        if len(guess):
+            sub = Scales(guess, low, high, self.scales.size[self.others])
+            found = solve(of_others, sub, polish=False, most=60, tolerance=1e-10)
+            rest, squares = found.values, found.sum_of_squares
+        else:
+            r = of_others(guess)
+            rest, squares = guess, float(r @ r)
+        self.last[side] = (u, rest)
+        excess = squares - self.least
+        if excess < -BETTER * max(1.0, self.least):
+            raise BetterMinimum(self._joined(u, rest))
+        self.points[u] = excess
+        return excess
+
+    def _joined(self, u: float, rest: Floats) -> Floats:
+        values = self.solution.values.copy()
+        values[self.place], values[self.others] = u, rest
+        return values
+
+
+def _end(walk: _Walk, sign: float, threshold: float) -> float:
+    """Where the excess reaches the threshold on one side."""
+    bound = walk.scales.low[walk.place] if sign < 0 else walk.scales.high[walk.place]
+    goal = math.sqrt(threshold)
+    if sign * (bound - walk.origin) <= 0:
+        return walk.origin
+
+    def reach(u: float) -> float:
+        return math.sqrt(max(walk.excess(u), 0.0)) - goal
+
+    inner, below = walk.origin, -goal
+    distance = goal * walk.step
+    while distance <= FAR * goal * walk.step:
+        outer = walk.origin + sign * distance
+        if sign * (outer - bound) >= 0:
+            outer = float(bound)
+        above = reach(outer)
+        if above >= 0:
+            return _between(reach, (inner, below), (outer, above), 1e-7 * walk.step)
+        if outer == bound:
+            return float(bound)
+        inner, below = outer, above
+        # The root of the excess grows about evenly: aim a little beyond where it should be.
+        share = goal / max(above + goal, 0.05 * goal)
+        distance *= min(max(1.05 * share, 1.1), 4.0)
+    return sign * math.inf
+
+
+def _between(
+    f: Callable[[float], float],
+    inner: tuple[float, float],
+    outer: tuple[float, float],
+    width: float,
+) -> float:
+    """A root between two points of opposite sign: the Illinois form of false position."""
+    (a, fa), (b, fb) = inner, outer
+    for _ in range(40):
+        if abs(fb) < 1e-7 or abs(b - a) < width:
+            return b
+        c = b - fb * (b - a) / (fb - fa)
+        fc = f(c)
+        if abs(fc) < 1e-7:
+            return c
+        if (fc < 0) != (fb < 0):
+            a, fa = b, fb
+        else:
+            fa *= 0.5
+        b, fb = c, fc
+    return b
