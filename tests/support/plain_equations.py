@@ -25,6 +25,8 @@ from meanfree.rates.collision import Collision
 from meanfree.rates.cross_section import CrossSection
 from meanfree.rates.falloff import Falloff
 from meanfree.rates.fixed import Fixed
+from meanfree.rates.photolysis import Photolysis
+from meanfree.rates.source import Source
 from meanfree.rates.table import Table
 from meanfree.rates.wall import Wall
 
@@ -73,6 +75,10 @@ def rate_constant(experiment: Experiment, step: Step, T: Any, p: Any, M: Any) ->
         return law.k.value
     if isinstance(law, Arrhenius):
         return law.A.value * (T / law.T_ref.value) ** law.n.value * np.exp(-law.Ea.value / (R * T))
+    if isinstance(law, Photolysis):
+        return law.J.value
+    if isinstance(law, Source):
+        return law.rate.value
     if isinstance(law, Falloff):
         return _between_limits(law, T, M)
     if isinstance(law, Wall):

@@ -30,7 +30,9 @@ from meanfree.rates.falloff import Centre, CentreTerm, Falloff
 from meanfree.rates.fixed import Fixed
 from meanfree.rates.law import Law
 from meanfree.rates.limits import PowerLaw
+from meanfree.rates.photolysis import Photolysis
 from meanfree.rates.registry import LAWS
+from meanfree.rates.source import Source
 from meanfree.rates.table import Table, TablePoint
 from meanfree.rates.termolecular import Termolecular
 from meanfree.rates.wall import Wall
@@ -167,6 +169,14 @@ def _wall(rng: np.random.Generator, step: Step) -> Law:
     return Wall(S(float(10 ** rng.uniform(-5, -1))), "quick", **D)  # type: ignore[arg-type]
 
 
+def _photolysis(rng: np.random.Generator, step: Step) -> Law:
+    return Photolysis(S(_size(rng, step)))
+
+
+def _source(rng: np.random.Generator, step: Step) -> Law:
+    return Source(S(rng.uniform(0.001, 0.05)))
+
+
 MAKERS: dict[str, Callable[[np.random.Generator, Step], Law]] = {
     "fixed": _fixed,
     "arrhenius": _arrhenius,
@@ -177,6 +187,8 @@ MAKERS: dict[str, Callable[[np.random.Generator, Step], Law]] = {
     "falloff": _falloff,
     "capture": _capture,
     "wall": _wall,
+    "photolysis": _photolysis,
+    "source": _source,
 }
 """A law of each word with made-up numbers. A new law needs a line here."""
 
@@ -237,7 +249,9 @@ def _fits(word: str, step: Step) -> bool:
         return step.stated_orders is None and step.order + bath == 3
     if word == "falloff":
         return bath
-    if word == "wall":
+    if word == "source":
+        return not step.reactants
+    if word in {"wall", "photolysis"}:
         alone = [number for _, number in step.reactants] == [1]
         return alone and not bath and step.stated_orders is None and step.reverse is None
     return True
@@ -251,7 +265,7 @@ def _open_step(rng: np.random.Generator, name: str, gas_name: str, source: bool)
     elif not source and rng.random() < 0.6:
         return replace(step, law=_wall(rng, step))
     if source:
-        return replace(step, law=Fixed(S(rng.uniform(0.001, 0.05))))
+        return replace(step, law=_source(rng, step))
     return replace(step, law=_fixed(rng, step))
 
 

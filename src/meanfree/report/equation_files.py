@@ -4,10 +4,11 @@ from __future__ import annotations
 
 import json
 from pathlib import Path
+from typing import Literal
 
 from jinja2 import Environment, PackageLoader, StrictUndefined, select_autoescape
 from markupsafe import Markup
-from pydantic import BaseModel, ConfigDict
+from pydantic import BaseModel, ConfigDict, Field
 
 from meanfree.equations.typeset import EquationSheet
 from meanfree.equations.typeset.latex import escape
@@ -38,8 +39,9 @@ class EquationGroup(_Record):
 class EquationSummary(_Record):
     """`summary.json` of the command `equations`."""
 
-    schema_version: int = 1
-    command: str = "equations"
+    schema_: Literal["meanfree-equations-1"] = Field(
+        default="meanfree-equations-1", serialization_alias="schema"
+    )
     case: str
     case_sha256: str
     version: str
@@ -100,7 +102,7 @@ def summarise(sheet: EquationSheet, record: CaseRecord) -> str:
         version=record.version,
         title=sheet.title,
         groups=groups,
-    ).model_dump_json(indent=2)
+    ).model_dump_json(indent=2, by_alias=True)
 
 
 def page(sheet: EquationSheet, record: CaseRecord) -> str:

@@ -118,7 +118,7 @@ class LaTeX(Writer):
 
     def power(self, part: tree.Power) -> str:
         """a^{b}"""
-        return f"{self.inside(part.base, 4)}^{{{self.write(part.exponent)}}}"
+        return f"{self.base(part)}^{{{self.write(part.exponent)}}}"
 
     def root(self, part: tree.Root) -> str:
         r"""\sqrt{x}"""

@@ -97,7 +97,7 @@ class MathML(Writer):
 
     def power(self, part: tree.Power) -> str:
         """<msup>"""
-        return f"<msup>{self.inside(part.base, 4)}{self.write(part.exponent)}</msup>"
+        return f"<msup>{self.base(part)}{self.write(part.exponent)}</msup>"
 
     def root(self, part: tree.Root) -> str:
         """<msqrt>"""
@@ -172,7 +172,8 @@ def _below(text: str) -> str:
 
 def _fence(mark: str) -> str:
     """A bracket without the space that browsers give to an operator."""
-    return f'<mo lspace="0" rspace="0">{mark}</mo>'
+    form = "prefix" if mark in "([" else "postfix"
+    return f'<mo form="{form}" lspace="0em" rspace="0em">{mark}</mo>'
 
 
 def _signed(text: str) -> str:

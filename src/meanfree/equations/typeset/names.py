@@ -49,6 +49,8 @@ SLOTS: dict[str, tuple[Symbol, str]] = {
     "D_0": (Symbol("D", "0"), "m^2 s^-1"),
     "p_0": (Symbol("p", "0"), "Pa"),
     "m": (Symbol("m"), ""),
+    "J": (Symbol("J"), "k"),
+    "rate": (Symbol("k"), "k"),
     "r": (Symbol("r"), "m"),
     "L": (Symbol("L"), "m"),
 }

@@ -68,7 +68,7 @@ class Plain(Writer):
 
     def power(self, part: tree.Power) -> str:
         """[A]², (T/T_ref)^n"""
-        base = self.inside(part.base, POWER + 1)
+        base = self.base(part)
         exponent = self.write(part.exponent)
         raised = _raised(exponent)
         if not raised.startswith("^"):

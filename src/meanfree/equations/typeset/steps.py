@@ -36,6 +36,7 @@ from meanfree.experiment.experiment import Experiment
 from meanfree.experiment.mechanism import GivenEquilibrium, Step
 from meanfree.experiment.temperature import has_energy_balance
 from meanfree.rates.falloff import Falloff
+from meanfree.rates.photolysis import Photolysis
 
 LARGEST_FORMULA = 60
 """Parts of a formula beyond which words say it better."""
@@ -148,6 +149,8 @@ class StepWriter:
             values.append(self._half(value) if fixed else names.slot(name)[0])
         formula = self.template.coefficient(Written(), T, Symbol("p"), self.M, values)
         remark = f"law: {law.word}" + self._counting()
+        if isinstance(law, Photolysis) and law.switch_times():
+            remark += "; while the lamp is on, else 0"
         if size(formula) > LARGEST_FORMULA or "linear" in calls(formula):
             told = (self.template.coefficient.__doc__ or "").strip().splitlines()[0].rstrip(".")
             remark += f"; {told}"

@@ -40,6 +40,11 @@ class Writer:
             return POWER
         return ATOM
 
+    def base(self, part: tree.Power) -> str:
+        """What is raised to a power: (lg x)^2 is not lg x^2."""
+        written = self.inside(part.base, ATOM)
+        return self.bracket(written) if isinstance(part.base, tree.Call) else written
+
     def factors(self, part: tree.Product) -> list[str]:
         """The factors of a product; a sum over an index needs no brackets where it stands last.
 
