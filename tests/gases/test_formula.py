@@ -8,7 +8,7 @@ from hypothesis import strategies as st
 from scipy import constants
 
 from meanfree.errors import InputError
-from meanfree.gases.atomic_weights import ATOMIC_WEIGHTS
+from meanfree.gases.atomic_weights import ATOMIC_NUMBERS, ATOMIC_WEIGHTS
 from meanfree.gases.formula import Formula, parse_formula
 
 ELEMENTS = st.sampled_from(sorted(ATOMIC_WEIGHTS))
@@ -18,6 +18,7 @@ COUNTS = st.dictionaries(ELEMENTS, st.integers(1, 99), min_size=1, max_size=6)
 @settings(max_examples=200, deadline=None)
 @given(COUNTS, st.integers(-3, 3))
 def test_a_formula_written_in_hill_order_reads_back(counts: dict[str, int], charge: int) -> None:
+    charge = min(charge, sum(ATOMIC_NUMBERS[element] * n for element, n in counts.items()))
     formula = Formula(tuple(sorted(counts.items())), charge)
     assert parse_formula(formula.hill) == formula
 
@@ -81,6 +82,8 @@ def test_reads(text: str, elements: dict[str, int], charge: int) -> None:
         ("CH3)", '"CH3)" (")" closes nothing)'),
         ("(CH3]", '"(CH3]" ("]" closes nothing)'),
         ("()", '"()" (")" closes nothing)'),
+        ("H++", '"H++" (charge 2, but 1 electron(s) to lose)'),
+        ("He^9999+", '"He^9999+" (charge 9999, but 2 electron(s) to lose)'),
         ("H+-", '"H+-" (both signs in the charge)'),
         ("SO4^-2", '"SO4^-2" (unreadable charge)'),
         ("SO4^0-", '"SO4^0-" (unreadable charge)'),
@@ -131,3 +134,14 @@ def test_the_atomic_weights_are_those_of_the_library() -> None:
 
     library = {element.symbol: element.MW for element in periodic_table}
     assert library | {"D": 2.014102} == ATOMIC_WEIGHTS
+    numbers = {element.symbol: element.number for element in periodic_table}
+    assert numbers | {"D": 1} == ATOMIC_NUMBERS
+
+
+def test_a_bare_nucleus_is_the_lightest_ion() -> None:
+    # Mass of the alpha particle 6.6446573e-27 kg and of the proton 1.67262192e-27 kg (CODATA);
+    # atomic weights of the table are rounded to 1e-6 (He) and mix in deuterium, 1.2e-4 (H).
+    alpha = parse_formula("He++").molar_mass.value / constants.N_A
+    assert alpha == pytest.approx(6.6446573e-27, rel=1e-6)
+    proton = parse_formula("H+").molar_mass.value / constants.N_A
+    assert proton == pytest.approx(constants.m_p, rel=2e-4)

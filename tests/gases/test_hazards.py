@@ -72,6 +72,10 @@ def test_not_known_is_none_and_not_zero() -> None:
         ("NOCl", 267.6),
         ("n-pentane", 309.21),
         ("SO2", 263.10),
+        ("HF", 292.67),
+        ("N2O4", 294.3),
+        ("NF3", 144.1),
+        ("O3", 161.8),
     ],
 )
 def test_boiling_points(name: str, boiling: float) -> None:

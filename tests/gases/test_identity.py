@@ -79,7 +79,16 @@ def test_a_bare_formula_of_isomers_is_no_name(formula: str) -> None:
 
 def test_statements_must_agree() -> None:
     assert problem("NO", formula="NO2")[1] == "NO is NO (10102-43-9), but formula = 'NO2'"
-    assert problem("NO", cas="2696-92-6")[1] == "2696-92-6 is ClNO, but NO is written"
+    assert problem("NO", cas="2696-92-6")[1] == (
+        'NO, which is NO (10102-43-9), but cas = "2696-92-6"'
+    )
+    assert problem("N2O2", cas="2696-92-6")[1] == "2696-92-6 is ClNO, but N2O2 is written"
+    # Isomers: the formula agrees, but a pinned name means its pinned gas.
+    assert problem("propene", cas="75-19-4")[1:] == (
+        'propene, which is C3H6 (115-07-1), but cas = "75-19-4"',
+        "another name, or its own CAS number",
+    )
+    assert find_gas("propylene", cas="115-07-1").cas == "115-07-1"
     assert problem("y", formula="NO", cas="2696-92-6")[2] == "one and the same gas"
     key, found, _ = problem("x", cas="2696-92-7")
     assert (key, found) == ("gases.x.cas", '"2696-92-7"')

@@ -2,7 +2,8 @@
 
 The values are the standard atomic weights of IUPAC as `chemicals.elements` tabulates
 them; a test holds the two equal. Deuterium is its own element here, because its
-reactions are studied beside those of protium.
+reactions are studied beside those of protium. The elements stand in the order of their
+atomic numbers, which `ATOMIC_NUMBERS` counts off.
 """
 
 from __future__ import annotations
@@ -133,3 +134,8 @@ ATOMIC_WEIGHTS: Final[dict[str, float]] = {
     "Og": 294.0,
 }
 """Relative atomic mass of each element [g/mol]."""
+
+ATOMIC_NUMBERS: Final[dict[str, int]] = {"D": 1} | {
+    symbol: number for number, symbol in enumerate((e for e in ATOMIC_WEIGHTS if e != "D"), start=1)
+}
+"""Protons, and so electrons of a neutral atom, of each element."""

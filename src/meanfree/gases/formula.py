@@ -14,7 +14,7 @@ from typing import NoReturn
 from scipy import constants as _codata
 
 from meanfree.errors import InputError
-from meanfree.gases.atomic_weights import ATOMIC_WEIGHTS, SOURCE
+from meanfree.gases.atomic_weights import ATOMIC_NUMBERS, ATOMIC_WEIGHTS, SOURCE
 from meanfree.sourced import Sourced
 
 _LONGEST = 120
@@ -132,7 +132,11 @@ def _parse(text: str, key: str) -> Formula:
     if text == "e-":
         return Formula((), -1)
     body, charge = _split_charge(text, key)
-    return Formula(tuple(sorted(_count_atoms(body, text, key).items())), charge)
+    counts = _count_atoms(body, text, key)
+    electrons = sum(ATOMIC_NUMBERS[element] * count for element, count in counts.items())
+    if charge > electrons:  # else the mass of the ion could fall below zero
+        _refuse(key, text, f"charge {charge}, but {electrons} electron(s) to lose")
+    return Formula(tuple(sorted(counts.items())), charge)
 
 
 def _split_charge(text: str, key: str) -> tuple[str, int]:

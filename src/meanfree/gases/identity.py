@@ -140,6 +140,10 @@ def _by_cas(name: str, meant: Formula | None, cas: str, key: str) -> Gas:
     if not is_cas(cas):
         expected = 'a CAS number with a right check digit, such as "7732-18-5", or "none"'
         raise InputError.at(f"{key}.cas", f'"{cas}"', expected)
+    meaning = pinned_named(name)
+    if meaning is not None and meaning.cas != cas:
+        found = f'{name}, which is {meaning.formula} ({meaning.cas}), but cas = "{cas}"'
+        raise InputError.at(key, found, "another name, or its own CAS number")
     pinned = pinned_with_cas(cas)
     formula: Formula | None
     if pinned is not None:
