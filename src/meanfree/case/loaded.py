@@ -11,6 +11,7 @@ from pathlib import Path
 from typing import Any
 
 from meanfree.experiment.experiment import Experiment
+from meanfree.planning.request import PlanRequest
 
 
 @dataclass(frozen=True)
@@ -18,8 +19,9 @@ class LoadedCase:
     """A case file that was understood.
 
     ``text`` is the file as it was read, ``settings`` the changes asked for with ``--set``,
-    ``tables`` the parsed TOML after them. ``data`` holds the ``[[data]]`` tables as they
-    stand; the commands that read measurements interpret them.
+    ``tables`` the parsed TOML after them. ``planning`` is what ``[plan]`` asks for. ``data``
+    holds the ``[[data]]`` tables as they stand; the commands that read measurements interpret
+    them.
     """
 
     path: Path
@@ -28,6 +30,7 @@ class LoadedCase:
     experiment: Experiment
     settings: Mapping[str, str] = field(default_factory=dict)
     data: tuple[Mapping[str, Any], ...] = ()
+    planning: PlanRequest = field(default_factory=PlanRequest)
 
     @property
     def name(self) -> str:

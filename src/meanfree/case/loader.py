@@ -18,6 +18,7 @@ from meanfree.case.meaning.gases import (
     read_labels,
     refuse_unused,
 )
+from meanfree.case.meaning.plan import plan_request, read_plan
 from meanfree.case.meaning.run import check_watch, read_run
 from meanfree.case.meaning.steps import Written, read_step, read_written
 from meanfree.case.meaning.temperature import read_temperature
@@ -33,6 +34,7 @@ from meanfree.experiment.plan import RunPlan
 from meanfree.experiment.temperature import Temperature
 from meanfree.experiment.vessel import Vessel
 from meanfree.gases.gas import Gas
+from meanfree.planning.request import PlanRequest
 from meanfree.units.reading import described
 
 
@@ -56,11 +58,13 @@ def load_case(path: str | Path, settings: Mapping[str, str] | None = None) -> Lo
         _mend_labels(tables, findings)
         experiment = _experiment(tables, findings)
         data = _data(tables.get("data"), findings)
+        plan = read_plan(tables.get("plan"), findings)
+        planning = PlanRequest() if experiment is None else plan_request(plan, experiment, findings)
         if findings.problems or experiment is None:
             raise InputError(_with_settings(findings.problems, settings))
     except InputError as error:
         raise InputError(problem.inside(str(path)) for problem in error.problems) from None
-    return LoadedCase(file, text, tables, experiment, settings, data)
+    return LoadedCase(file, text, tables, experiment, settings, data, planning)
 
 
 @dataclass

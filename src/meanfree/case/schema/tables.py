@@ -186,3 +186,4 @@ class CaseTable(Table):
     gases: Any = Field(None, description="tables [gases.NAME]")
     steps: Any = Field(None, description="tables [[steps]]")
     data: Any = Field(None, description="tables [[data]]")
+    plan: Any = Field(None, description="the table [plan]")
