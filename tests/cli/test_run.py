@@ -153,8 +153,28 @@ def test_the_manifest_names_versions_work_and_drift(simple: Path) -> None:
     assert {"python", "meanfree", "numpy", "scipy"} <= set(manifest["versions"])
     assert manifest["solver"]["method"] == "Radau"
     assert manifest["solver"]["nfev"] > 0
-    assert set(manifest["drift"]) == {"elements", "energy", "volume", "most_negative"}
+    assert set(manifest["drift"]) == {
+        "elements",
+        "energy",
+        "volume",
+        "most_negative",
+        "closed_form",
+        "closed_form_difference",
+    }
+    assert manifest["drift"]["closed_form"] == "first order"
+    assert manifest["drift"]["closed_form_difference"] < 1e-8
     assert set(manifest["files"]) == LEFT - {"manifest.json"} or set(manifest["files"]) == LEFT
+
+
+def test_verify_states_the_difference_from_a_second_method(capsys: Printed, simple: Path) -> None:
+    assert run(["run", str(simple), "--verify"]) == 0
+    assert "Repeated with BDF at a relative tolerance of 1 × 10⁻⁹" in capsys.readouterr().out
+    found = json.loads(Path("outputs/simple/run/summary.json").read_text())["verification"]
+    assert found["method"] == "BDF"
+    # BDF adds up about ten tolerances over a run
+    assert 0 < found["largest_difference"] < 1e-7
+    assert run(["run", str(simple), "--json"]) == 0
+    assert json.loads(capsys.readouterr().out)["verification"] is None
 
 
 def test_several_cases_at_once(capsys: Printed, simple: Path, case: Path) -> None:

@@ -14,8 +14,9 @@ from meanfree.integrate.run import Run
 from meanfree.integrate.single import integrate
 from meanfree.report.figures import draw, half_lives, profiles, style
 from meanfree.report.figures.labels import spread
+from meanfree.report.run_models import RunSummary
 from meanfree.report.sampling import time_axis
-from meanfree.report.summary import RunSummary, summarise
+from meanfree.report.summary import summarise
 
 # Simulated loss of one kind of cone, in linear sRGB: Machado, Oliveira and Fernandes, IEEE
 # Trans. Visual. Comput. Graphics 15, 1291 (2009), severity 1.0.

@@ -12,7 +12,8 @@ from small_runs import dimerisation
 from meanfree.constants import R
 from meanfree.integrate.run import Run
 from meanfree.integrate.single import integrate
-from meanfree.report.summary import RunSummary, summarise
+from meanfree.report.run_models import RunSummary
+from meanfree.report.summary import summarise
 
 # The integrator runs at a relative tolerance of 1e-8 and reaches about 1e-9 on smooth problems;
 # a time at which a steep curve crosses a level is as good as the curve. 1e-7 leaves a decade.

@@ -23,6 +23,12 @@ def run(
     replace: Replace = False,
     as_json: AsJson = False,
     quiet: Quiet = False,
+    check_twice: Annotated[
+        bool,
+        typer.Option(
+            "--verify", help="Repeat with a second method at a tenth of the tolerance, and compare."
+        ),
+    ] = False,
 ) -> None:
     """Predict concentrations against time; leave figures, tables and a page.
 
@@ -39,7 +45,14 @@ def run(
     texts: list[str] = []
     for place, (case, folder) in enumerate(zip(loaded, targets, strict=True)):
         try:
-            text = _one(case, folder, replace=replace, as_json=as_json, quiet=quiet)
+            text = _one(
+                case,
+                folder,
+                replace=replace,
+                as_json=as_json,
+                quiet=quiet,
+                check_twice=check_twice,
+            )
         except ComputationError as error:
             failures.append(f"{case.path}: {error}" if len(loaded) > 1 else str(error))
             continue
@@ -89,16 +102,31 @@ def _targets(cases: list[LoadedCase], out: Path | None) -> list[Path]:
     return folders
 
 
-def _one(case: LoadedCase, folder: Path, *, replace: bool, as_json: bool, quiet: bool) -> str:
+def _one(
+    case: LoadedCase,
+    folder: Path,
+    *,
+    replace: bool,
+    as_json: bool,
+    quiet: bool,
+    check_twice: bool,
+) -> str:
     """Run one case, leave its folder, and return what to print."""
     from meanfree.integrate.single import integrate
+    from meanfree.integrate.verify import verify
     from meanfree.report.folder import owner_name, write_run
     from meanfree.report.record import CaseRecord
     from meanfree.report.summary import summarise
 
     record = CaseRecord(case.name, case.path.as_posix(), case.text, case.hash, case.settings)
     result = integrate(case.experiment)
-    summary = summarise(result, case=record.file, case_sha256=record.sha256, version=record.version)
+    summary = summarise(
+        result,
+        case=record.file,
+        case_sha256=record.sha256,
+        version=record.version,
+        verification=verify(result) if check_twice else None,
+    )
     owner = owner_name(case.path, folder)
     paths = write_run(result, summary, record, folder, owner=owner, replace=replace)
     if as_json:

@@ -15,7 +15,8 @@ from meanfree.report import wording
 from meanfree.report.answers import answers
 from meanfree.report.cautions import GUIDANCE, grave_cautions
 from meanfree.report.kinetics import RateConstant, rate_constants
-from meanfree.report.summary import RunSummary
+from meanfree.report.run_models import RunSummary
+from meanfree.report.sheets import verified
 
 MOST_CONSTANTS = 12
 """Rate constants that are listed on the screen; the tables have them all."""
@@ -39,6 +40,9 @@ def _parts(run: Run, summary: RunSummary, folder: Path) -> Iterator[RenderableTy
     if len(rows) > MOST_CONSTANTS:
         yield f"• and {len(rows) - MOST_CONSTANTS} more, in rate_constants.csv"
     yield ""
+    if summary.verification is not None:
+        yield Text(verified(summary))
+        yield ""
     grave = list(grave_cautions(run, rows))
     for text in grave:
         yield hanging("Caution:", text)

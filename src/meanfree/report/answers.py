@@ -5,7 +5,7 @@ from __future__ import annotations
 from meanfree.integrate.run import Run
 from meanfree.report import wording
 from meanfree.report.rows import Answer
-from meanfree.report.summary import GasAnswer, RunSummary
+from meanfree.report.run_models import GasAnswer, RunSummary
 
 HALF_LIVES_SHOWN = 3
 

@@ -13,7 +13,7 @@ from meanfree.report.figures import draw
 from meanfree.report.kinetics import rate_constants
 from meanfree.report.page import page
 from meanfree.report.record import CaseRecord, versions
-from meanfree.report.summary import RunSummary
+from meanfree.report.run_models import RunSummary
 from meanfree.report.tables import tables
 
 

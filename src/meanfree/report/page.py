@@ -23,7 +23,7 @@ from meanfree.report.figures.profiles import drawn_gases
 from meanfree.report.fill_sheet import fill
 from meanfree.report.kinetics import RateConstant
 from meanfree.report.record import CaseRecord, versions
-from meanfree.report.summary import RunSummary
+from meanfree.report.run_models import RunSummary
 
 _ID = re.compile(r'(\bid="|xlink:href="#|url\(#)')
 

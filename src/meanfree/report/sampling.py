@@ -8,7 +8,7 @@ import numpy as np
 
 from meanfree.equations.system import Floats
 from meanfree.integrate.run import Run
-from meanfree.report.summary import RunSummary
+from meanfree.report.run_models import RunSummary
 from meanfree.report.wording import DAY, HOUR, MINUTE, YEAR
 
 SPREAD = 40.0

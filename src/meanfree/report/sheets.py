@@ -11,7 +11,8 @@ from meanfree.integrate.run import Run
 from meanfree.report import wording
 from meanfree.report.kinetics import RateConstant
 from meanfree.report.rows import NONE, Row, Sheet
-from meanfree.report.summary import LEVELS, RunSummary
+from meanfree.report.run_models import RunSummary
+from meanfree.report.summary import LEVELS
 from meanfree.sourced import Sourced
 
 
@@ -209,6 +210,18 @@ def _shown(value: Sourced, factor: float, unit: str, digits: int) -> tuple[str, 
     return shown, wording.clean(value.source) or "the case file"
 
 
+def verified(summary: RunSummary) -> str:
+    """What a second integration said, in a sentence."""
+    found = summary.verification
+    if found is None:
+        return "Not repeated with a second method; --verify does that."
+    return (
+        f"Repeated with {found.method} at a relative tolerance of {wording.given(found.rtol)}: "
+        f"largest difference {wording.number(found.largest_difference, 2)} of the most there was, "
+        f"in {wording.clean(found.gas)} after {wording.duration(found.time_s)}."
+    )
+
+
 def solver(summary: RunSummary) -> list[str]:
     """How it was integrated and what the run checked about itself, in sentences."""
     work, drift = summary.solver, summary.drift
@@ -226,4 +239,10 @@ def solver(summary: RunSummary) -> list[str]:
         found.append(f"Energy kept to {wording.number(drift.energy, 2)}, relative.")
     if drift.volume is not None:
         found.append(f"Equation of state kept to {wording.number(drift.volume, 2)}, relative.")
+    if drift.closed_form is not None and drift.closed_form_difference is not None:
+        found.append(
+            f"The integrated rate law ({drift.closed_form}) holds exactly here; largest difference "
+            f"from it {wording.number(drift.closed_form_difference, 2)}, relative."
+        )
+    found.append(verified(summary))
     return found

@@ -12,8 +12,8 @@ from meanfree.equations.system import Floats
 from meanfree.integrate.run import Run
 from meanfree.report import wording
 from meanfree.report.kinetics import RateConstant
+from meanfree.report.run_models import RunSummary
 from meanfree.report.sampling import table_times
-from meanfree.report.summary import RunSummary
 from meanfree.sourced import Sourced
 
 Cell = str | float | int | None

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from meanfree.integrate.run import Run
-from meanfree.report.summary import RunSummary
+from meanfree.report.run_models import RunSummary
 
 
 def draw(run: Run, summary: RunSummary) -> dict[str, tuple[str, bytes]]:

@@ -11,8 +11,8 @@ from matplotlib.figure import Figure
 from meanfree.integrate.run import Run
 from meanfree.report import wording
 from meanfree.report.figures import labels, style
+from meanfree.report.run_models import GasAnswer, RunSummary
 from meanfree.report.sampling import SPREAD, TimeAxis, figure_times, time_axis, unit_for
-from meanfree.report.summary import GasAnswer, RunSummary
 
 MARKED = 4
 """Half-lives marked in the figure; the table has them all."""

@@ -14,8 +14,8 @@ from meanfree.equations.system import Floats
 from meanfree.integrate.run import Run
 from meanfree.report import wording
 from meanfree.report.figures import labels, style
+from meanfree.report.run_models import RunSummary
 from meanfree.report.sampling import TimeAxis, figure_times, time_axis
-from meanfree.report.summary import RunSummary
 
 FAINT = 0.03
 """Ratio of the smallest to the largest peak below which concentrations are shown logarithmic."""
