@@ -185,6 +185,37 @@ def test_the_answer_comes_first_and_every_number_has_its_source(
     assert "CODATA, as scipy.constants has it" in text
 
 
+def test_speeds_and_units_on_the_screen(capsys: pytest.CaptureFixture[str]) -> None:
+    # Oxygen as in Duffey's example: sigma 0.4094 nm2, n 2.429e19 1/cm3, Z_AA 7.588e34; the
+    # speeds from sqrt(8, 3 and 2 k T / (pi) m), worked out here.
+    arguments = ["O2", "O2", "--diameter", "O2=3.61 angstrom", "--pressure", "100 kPa"]
+    found = summary(capsys, *arguments)
+    (gas,) = found["gases"]
+    kT, mass = constants.k * 298.15, 31.9988e-3 / constants.N_A
+    assert gas["mean_speed_m_per_s"] == pytest.approx((8 * kT / constants.pi / mass) ** 0.5)
+    assert gas["root_mean_square_speed_m_per_s"] == pytest.approx((3 * kT / mass) ** 0.5)
+    assert gas["most_probable_speed_m_per_s"] == pytest.approx((2 * kT / mass) ** 0.5)
+    assert found["reduced_mass_kg"] == pytest.approx(mass / 2)
+    assert run(["collide", *arguments]) == 0
+    rows = [" ".join(line.split()) for line in capsys.readouterr().out.splitlines()]
+    for row in (
+        "Mean relative speed 628.1 m/s",
+        "Reduced mass 15.999 g/mol 2.657 × 10⁻²⁶ kg",
+        "Distance at contact 3.61 Å (d₁ + d₂)/2",
+        "Cross-section σ 0.4094 nm² 4.094 × 10⁻¹⁹ m²",
+        "Collision density 7.588 × 10³⁴ 1/m³/s 1.260 × 10¹¹ mol/m³/s",
+        "Each gas, at 100 kPa",
+        "Mean speed 444.2 m/s",
+        "Root-mean-square speed 482.1 m/s",
+        "Most probable speed 393.6 m/s",
+        "Concentration 40.34 mol/m³",
+        "Number density 2.429 × 10¹⁹ 1/cm³",
+        "Collision frequency 6.247 × 10⁹ 1/s",
+        "Mean free path 71.09 nm",
+    ):
+        assert row in rows, row
+
+
 def test_sources_of_library_values(capsys: pytest.CaptureFixture[str]) -> None:
     found = summary(capsys, "CH3", "N2")
     radical, nitrogen = found["gases"]

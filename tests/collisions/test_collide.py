@@ -7,6 +7,7 @@ import math
 import re
 from typing import Any
 
+import numpy as np
 import pytest
 from scipy import constants
 
@@ -218,6 +219,10 @@ def test_the_record_is_frozen_and_plain() -> None:
         (
             {"in_plane": True, "surface_concentration": -1.0},
             "surface_concentration: found -1; expected a finite number above 0 [mol/m^2]",
+        ),
+        (
+            {"temperature": np.array([300.0, 400.0])},
+            "temperature: found an array of shape (2,); expected one number [K]",
         ),
         (
             {"in_plane": True, "pressure": 1e5},

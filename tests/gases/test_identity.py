@@ -162,6 +162,13 @@ def test_a_species_in_no_list_lives_by_its_formula() -> None:
     assert Gas.label("RO2").is_label
 
 
+def test_salts_and_labelled_isotopes_are_no_candidates_but_deuterium_is() -> None:
+    assert library.compound("6484-52-2") is not None  # ammonium nitrate, two ions
+    assert library.compounds_of_formula("H4N2O3") == []
+    assert [entry.cas for entry in library.compounds_of_formula("CD4")] == ["558-20-3"]
+    assert [entry.cas for entry in library.compounds_of_formula("CH4")] == ["74-82-8"]
+
+
 def test_diameters_never_come_from_the_unphysical_table() -> None:
     """Magalhaes gives 5.94, 4.24 and 2.90 angstrom; Poling's App. B 2.827, 2.900, 3.655."""
     for name, angstrom in {"H2": 2.827, "NH3": 2.900, "Kr": 3.655}.items():

@@ -159,6 +159,24 @@ def test_mixtures_reduce_to_their_parts() -> None:
     assert float(transport.mixture_diffusion([0.2, 0.2], [1e-5, 3e-5])) == pytest.approx(1.5e-5)
 
 
+def test_wilke_interaction_obeys_its_exact_ratio() -> None:
+    """phi_ij / phi_ji = eta_i M_j / (eta_j M_i): follows from the formula, exact to rounding."""
+    eta, mass = np.array([8.9e-6, 22.7e-6, 17.9e-6]), np.array([2.016e-3, 39.95e-3, 28.01e-3])
+    phi = transport.interaction(eta, mass)
+    wanted = (eta[:, None] * mass) / (eta * mass[:, None])
+    np.testing.assert_allclose(phi / phi.T, wanted, rtol=1e-13)
+    np.testing.assert_allclose(np.diag(phi), 1.0, rtol=1e-13)
+
+
+@pytest.mark.parametrize("cv_over_r", [1.5, 2.5, 3.4, 8.0])
+def test_modified_eucken_factor(cv_over_r: float) -> None:
+    """lambda M / (eta Cv) = 1.32 + 1.77 R / Cv, as Poling, Prausnitz and O'Connell (2001)
+    print it, eq. 10-3.3; for atoms 5/2, where 1.32 + 1.18 is exact."""
+    found = transport.thermal_conductivity(18e-6, 28e-3, (cv_over_r + 1.0) * R)
+    factor = float(found) * 28e-3 / (18e-6 * cv_over_r * R)
+    assert factor == pytest.approx(1.32 + 1.77 / cv_over_r, rel=1e-13)
+
+
 def test_air_as_a_mixture() -> None:
     """Viscosity of air at 300 K 18.6 uPa s, conductivity 26.4 mW/m/K (CRC, from memory)."""
     names, fractions = ("N2", "O2", "Ar"), (0.781, 0.210, 0.009)

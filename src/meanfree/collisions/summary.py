@@ -15,7 +15,7 @@ import numpy as np
 
 from meanfree import constants
 from meanfree.collisions import encounters, line_of_centres, mixtures, plane, speeds
-from meanfree.collisions._checks import Numbers, not_negative, positive
+from meanfree.collisions._checks import Numbers, not_negative, one_temperature, positive
 
 Both: TypeAlias = tuple[float, float]
 """A value of gas A and the same value of gas B; the two are equal where A is B."""
@@ -116,14 +116,15 @@ def collide(
 
     Raises
     ------
-    ValueError : a value that no gas can have; one gas with two masses or two diameters; a
-        pressure in a plane, a surface concentration in space; mole fractions that do not
-        add up to 1, or given without an amount or for one gas
+    ValueError : a value that no gas can have, several temperatures; one gas with two masses or
+        two diameters; a pressure in a plane, a surface concentration in space; mole fractions
+        that do not add up to 1, or given without an amount or for one gas
 
     >>> pair = collide((0.0320, 0.0320), (3.61e-10, 3.61e-10), 298.15, same_gas=True)
     >>> f"{pair.mean_relative_speed:.1f} m/s, {pair.ceiling:.3e} m3/mol/s"
     '628.1 m/s, 7.743e+07 m3/mol/s'
     """
+    temperature = one_temperature(temperature)
     _one_gas("molar_masses", molar_masses, "kg/mol", same_gas)
     _one_gas("diameters", diameters, "m", same_gas)
     room = plane if in_plane else speeds
@@ -145,7 +146,7 @@ def collide(
     return PairCollisions(
         in_plane=in_plane,
         same_gas=same_gas,
-        temperature=float(temperature),
+        temperature=temperature,
         molar_masses=molar_masses,
         diameters=diameters,
         mean_speeds=both(room.mean_speed),
