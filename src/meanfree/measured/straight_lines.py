@@ -3,12 +3,27 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
 from meanfree.equations.system import Floats
 from meanfree.measured.fits import quantile
+
+
+@dataclass(frozen=True)
+class Interval:
+    """A number with its standard error and its 95 % interval, all in the same unit."""
+
+    value: float
+    error: float
+    low: float
+    high: float
+
+
+def interval(value: float, error: float, t: float) -> Interval:
+    """A number with t standard errors to either side."""
+    return Interval(value, error, value - t * error, value + t * error)
 
 
 @dataclass(frozen=True)
@@ -45,6 +60,16 @@ class Line:
     def quantile(self) -> float:
         """Student's t (or the normal one) of a 95 % interval."""
         return quantile(self.freedom)
+
+    @property
+    def slope_interval(self) -> Interval:
+        """The slope with its 95 % interval."""
+        return interval(self.slope, self.slope_error, self.quantile)
+
+    @property
+    def intercept_interval(self) -> Interval:
+        """The intercept with its 95 % interval."""
+        return interval(self.intercept, self.intercept_error, self.quantile)
 
     def at(self, x: Floats) -> Floats:
         """The line [shape of x]."""
@@ -95,3 +120,16 @@ def straight_line(
     r_squared = 1 - squares / whole if whole > 0 else math.nan
     given = freedom if sd is None else None
     return Line(slope, intercept, cov, r_squared, given, x, y, sd, squares, through_origin)
+
+
+def widened(line: Line) -> Line:
+    """A weighted line whose points scatter more than their errors say: errors by the scatter.
+
+    The factor is the root of the reduced chi-square (Birge, Phys. Rev. 40 (1932) 207), and the
+    interval then that of Student's t.
+    """
+    freedom = len(line.x) - (1 if line.through_origin else 2)
+    if line.freedom is not None or freedom < 1 or line.chi_square <= freedom:
+        return line
+    scale = line.chi_square / freedom
+    return replace(line, covariance=line.covariance * scale, freedom=freedom)
