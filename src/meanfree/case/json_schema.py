@@ -9,6 +9,8 @@ from pydantic import BaseModel, ConfigDict, Field, create_model
 
 from meanfree.case.laws.registry import LAW_SHAPES
 from meanfree.case.schema.base import Line, Prose
+from meanfree.case.schema.data import DataTable
+from meanfree.case.schema.fit import FitTable
 from meanfree.case.schema.plan import PlanTable
 from meanfree.case.schema.steps import ReverseTable
 from meanfree.case.schema.tables import (
@@ -40,7 +42,8 @@ def case_schema() -> dict[str, Any]:
         run=(RunTable | None, None),
         gases=(dict[str, GasTable], Field(default={}, description="who the gases are")),
         steps=(list[step], Field(min_length=1, description="the reactions, one way each")),
-        data=(list[dict[str, Any]], Field(default=[], description="measured runs")),
+        data=(list[DataTable], Field(default=[], description="measured runs")),
+        fit=(FitTable | None, None),
         plan=(PlanTable | None, None),
     )
     schema = model.model_json_schema()

@@ -24,6 +24,8 @@ from meanfree.case.meaning.steps import Written, read_step, read_written
 from meanfree.case.meaning.temperature import read_temperature
 from meanfree.case.meaning.vessel import read_vessel
 from meanfree.case.schema.base import shape
+from meanfree.case.schema.data import DataTable
+from meanfree.case.schema.fit import FitTable
 from meanfree.case.schema.tables import CaseTable, GasTable
 from meanfree.case.text import parse, read_text
 from meanfree.errors import InputError, Problem
@@ -56,8 +58,10 @@ def load_case(path: str | Path, settings: Mapping[str, str] | None = None) -> Lo
         findings = Findings()
         tables = changes.apply(parse(text), settings, findings)
         _mend_labels(tables, findings)
-        experiment = _experiment(tables, findings)
+        experiment = read_experiment(tables, findings)
         data = _data(tables.get("data"), findings)
+        if tables.get("fit") is not None:
+            shape(FitTable, tables["fit"], "fit", findings)
         plan = read_plan(tables.get("plan"), findings)
         planning = PlanRequest() if experiment is None else plan_request(plan, experiment, findings)
         if findings.problems or experiment is None:
@@ -80,7 +84,8 @@ class _Parts:
     tables: dict[str, GasTable]
 
 
-def _experiment(tables: dict[str, Any], findings: Findings) -> Experiment | None:
+def read_experiment(tables: dict[str, Any], findings: Findings) -> Experiment | None:
+    """The experiment of parsed tables; what is wrong goes to ``findings``."""
     top = shape(CaseTable, tables, "", findings)
     assert top is not None
     labels = read_labels(None if top.is_wrong("labels") else tables.get("labels"), findings)
@@ -181,6 +186,8 @@ def _data(raw: Any, findings: Findings) -> tuple[Mapping[str, Any], ...]:
     if not isinstance(raw, list) or not all(isinstance(table, dict) for table in raw):
         findings.wrong("data", described(raw), "tables headed [[data]], with two brackets")
         return ()
+    for place, table in enumerate(raw):
+        shape(DataTable, table, f"data.{place}", findings)
     return tuple(raw)
 
 

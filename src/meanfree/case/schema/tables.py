@@ -186,4 +186,5 @@ class CaseTable(Table):
     gases: Any = Field(None, description="tables [gases.NAME]")
     steps: Any = Field(None, description="tables [[steps]]")
     data: Any = Field(None, description="tables [[data]]")
+    fit: Any = Field(None, description="the table [fit]")
     plan: Any = Field(None, description="the table [plan]")
