@@ -23,6 +23,7 @@ A3 = 1e-30
 BOHR = constants.value("Bohr radius")
 HARTREE = constants.value("Hartree energy")
 DEBYE = 1e-21 / constants.c
+ROTATION = constants.hbar**2 / 2 * N_A  # rotational constant times moment of inertia
 H2 = molecule("H2")
 
 
@@ -210,7 +211,7 @@ def test_impossible_captures_are_refused_in_words() -> None:
 
 def test_the_range_of_the_trajectory_fit_is_said() -> None:
     where = meeting(H3O, NH3, temperatures=(0.5, 300.0))
-    law = ion(H3O, NH3, 2.103 * A3, moment_of_inertia=si(2.8e-47), **PROTON)
+    law = ion(H3O, NH3, 2.103 * A3, rotational_constant=si(ROTATION / 2.8e-47), **PROTON)
     assert list(law.cautions(where)) == [
         "at 0.5 K the reduced dipole x is 86.4, beyond the 60 up to which the fit of ion-dipole "
         "trajectories is commonly used.",
@@ -218,7 +219,7 @@ def test_the_range_of_the_trajectory_fit_is_said() -> None:
         "trajectories do not hold.",
     ]
     # mu_D/q 30.64 pm times 5e-45 kg m^2 over 2.103 A^3 times 8.985 u
-    slow = replace(law, moment_of_inertia=si(5e-45))
+    slow = replace(law, rotational_constant=si(ROTATION / 5e-45))
     assert list(slow.cautions(replace(where, temperatures=(300.0, 300.0)))) == [
         "the reduced moment of inertia is 4.88 at 300 K: NH3 turns too slowly for the fit of "
         "ion-dipole trajectories, which gives too much."

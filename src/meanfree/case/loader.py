@@ -167,6 +167,7 @@ def _joined(
         purpose=top.purpose,
     )
     together.check_piston(experiment, findings)
+    together.check_laws(experiment, findings)
     if findings.problems:
         return None
     together.check_rates(experiment, findings)

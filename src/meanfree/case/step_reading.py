@@ -63,8 +63,12 @@ class StepReading:
         Its order is the step's, and one more where M is written (``bath`` overrides that).
         """
         raw = getattr(self.table, field)
-        if raw is None:
-            return None
+        return None if raw is None else self.rate_constant_of(raw, field, bath=bath)
+
+    def rate_constant_of(
+        self, raw: object, field: str, *, bath: bool | None = None
+    ) -> Sourced | None:
+        """The same of a value that stands deeper in the table; ``field`` is its key there."""
         if self.reaction is None or self.orders is None:
             if not isinstance(raw, str):
                 self.wrong(field, f"{described(raw)}, a bare number", _ANY_RATE)
@@ -79,6 +83,20 @@ class StepReading:
         if self.per is None:
             return None
         return replace(k, value=k.value / self.per, per=self.per)
+
+    def counts_events(self) -> None:
+        """Refuse k_counts where the rate constant is computed."""
+        if self.table.k_counts != "events":
+            self.wrong(
+                "k_counts",
+                f'"{self.table.k_counts}" with a rate constant that is computed',
+                '"events", or no k_counts: each collision is one event',
+            )
+
+    def one_way(self, what: str) -> None:
+        """Refuse a reverse of what has none."""
+        if self.table.has("reverse"):
+            self.wrong("reverse", f"a reverse of {what}", "no reverse: it has no detailed balance")
 
     def needs_pair(self, *, diameters: bool) -> None:
         """Refuse the step unless it is an encounter of two real molecules of known size."""

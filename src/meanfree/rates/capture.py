@@ -34,7 +34,7 @@ class Capture(Law):
     ``polarisability`` [m^3] (as a volume), ``ionisation_energy`` and ``electron_affinity`` [J/mol]
     are given by gas. "dispersion" takes ``C6`` [J m^6], or polarisabilities and ionisation
     energies of both for London's formula; the two "ion" attractions take the polarisability of
-    the neutral, the second its ``dipole`` [C m] too (``moment_of_inertia`` [kg m^2] lets the
+    the neutral, the second its ``dipole`` [C m] too (``rotational_constant`` [J/mol] lets the
     range of the fit be checked); "electron jump" takes the ionisation energy of the one and the
     electron affinity of the other. ``electronic_factor`` [1] is the share of encounters on an
     attractive electronic surface. Like partners carry the 1/2.
@@ -46,7 +46,7 @@ class Capture(Law):
     ionisation_energy: Mapping[str, Sourced] = field(default_factory=dict)
     electron_affinity: Mapping[str, Sourced] = field(default_factory=dict)
     dipole: Sourced | None = None
-    moment_of_inertia: Sourced | None = None
+    rotational_constant: Sourced | None = None
     electronic_factor: Sourced = Sourced(1.0, default=True)
     word: ClassVar[str] = "capture"
     pair_needed: ClassVar[bool] = True
@@ -164,13 +164,14 @@ class Capture(Law):
                 f"at {cold:g} K the reduced dipole x is {x:.3g}, beyond the {LARGEST_X:g} up to "
                 "which the fit of ion-dipole trajectories is commonly used."
             )
-        if self.moment_of_inertia is not None:
+        if self.rotational_constant is not None:
             yield from self._rotation_cautions(context, cold, x)
 
     def _rotation_cautions(self, context: StepContext, cold: float, x: float) -> Iterator[str]:
         """Source: T. Su and W. J. Chesnavich, J. Chem. Phys. 76, 5183 (1982) (from memory)."""
-        assert self.moment_of_inertia is not None and self.dipole is not None
-        inertia = self.moment_of_inertia.value
+        assert self.rotational_constant is not None and self.dipole is not None
+        B = self.rotational_constant.value / N_A
+        inertia = h**2 / (8 * math.pi**2 * B)
         ion, neutral = _ion_and_neutral(context)
         alpha = self.polarisability[neutral.name].value
         length = self.dipole.value / (abs(ion.charge) * e)
@@ -180,7 +181,7 @@ class Capture(Law):
                 f"the reduced moment of inertia is {reduced:.3g} at {cold:g} K: {neutral.name} "
                 "turns too slowly for the fit of ion-dipole trajectories, which gives too much."
             )
-        quantum = h**2 / (8 * math.pi**2 * inertia) / k_B
+        quantum = B / k_B
         if cold < quantum:
             yield (
                 f"{cold:g} K is below the rotational constant of {neutral.name} ({quantum:.3g} K): "

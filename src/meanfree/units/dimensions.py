@@ -67,6 +67,7 @@ def _plain_dimensions() -> list[Dimension]:
         D("time", _powers("T1"), "s", "10 min", highest=1e30),
         D("length", _powers("L1"), "m", "4.1 angstrom", highest=1e6, above=True),
         D("area", _powers("L2"), "m^2", "25 cm^2", highest=1e12, above=True),
+        D("cross-section", _powers("L2"), "m^2", "0.4 nm^2", highest=1e-6),
         D("amount", _powers("N1"), "mol", "2 mmol", highest=1e15, article="an"),
         D("concentration", _powers("N1 L-3"), "mol/m^3", "0.01 mol/L", highest=1e9, molecules=True),
         D(

@@ -40,12 +40,7 @@ class CollisionStep(StepTable):
         """`Collision`, if the step is an encounter of two molecules that are known well enough."""
         before = reading.count
         reading.needs_pair(diameters=not self.has("diameter"))
-        if self.k_counts != "events":
-            reading.wrong(
-                "k_counts",
-                f'"{self.k_counts}" with a rate constant that is computed',
-                '"events", or no k_counts: each collision is one event',
-            )
+        reading.counts_events()
         self._energies(reading)
         if self.has("steric") and self.has("A_over_Z"):
             reading.wrong("steric", "both steric and A_over_Z", "one of them")

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING, Annotated, Any, Literal
+from typing import TYPE_CHECKING, Annotated, Any, ClassVar, Literal
 
 from pydantic import Field
 
@@ -17,6 +17,7 @@ if TYPE_CHECKING:
 class FixedStep(StepTable):
     """r = k times the concentrations."""
 
+    may_go_to_nothing: ClassVar[bool] = True
     law: Literal["fixed"]
     k: Annotated[Any, Later("1.6e-18 cm^3/molecule/s", "9.4e9 L/mol/s", "1e-3 1/s")] = Field(
         description='the rate constant, such as "9.4e9 L/mol/s"'

@@ -46,8 +46,11 @@ class ReactionError(ValueError):
         super().__init__("; ".join(found for found, _ in problems))
 
 
-def parse_reaction(text: str) -> Reaction:
-    """Read a reaction. Raises `ReactionError` with everything that is wrong in it."""
+def parse_reaction(text: str, *, from_nothing: bool = False, to_nothing: bool = False) -> Reaction:
+    """Read a reaction. Raises `ReactionError` with everything that is wrong in it.
+
+    ``from_nothing`` and ``to_nothing`` allow an empty side, for what flows in or is lost.
+    """
     arrows = _ARROW.findall(text)
     if len(arrows) != 1 or _OTHER_ARROWS.search(_ARROW.sub(" ", text)) or "<->" in text:
         found = quoted(text) + (" without an arrow" if not arrows else "")
@@ -62,8 +65,10 @@ def parse_reaction(text: str) -> Reaction:
     products, bath_right = _side(right, problems)
     if not problems and bath_left != bath_right:
         problems.append(("M on one side only", 'the bath partner "+ M" on both sides'))
-    if not problems and not (reactants and products):
-        side = "left" if not reactants else "right"
+    empty_left = not reactants and not (from_nothing and products)
+    empty_right = not products and not (to_nothing and reactants)
+    if not problems and (empty_left or empty_right):
+        side = "left" if empty_left else "right"
         problems.append(
             (f"{quoted(text)}, nothing on the {side}", f"gases on both sides, such as {_EXAMPLE}")
         )

@@ -79,7 +79,11 @@ def _written_step(place: int, raw: Any, names: set[str], findings: Findings) -> 
     reaction = None
     if table.reaction is not None:
         try:
-            reaction = parse_reaction(table.reaction)
+            reaction = parse_reaction(
+                table.reaction,
+                from_nothing=table.may_come_from_nothing,
+                to_nothing=table.may_go_to_nothing,
+            )
         except ReactionError as error:
             for found, expected in error.problems:
                 findings.wrong(f"{address}.reaction", found, expected)
@@ -137,8 +141,11 @@ def read_step(
 
 
 def _check_balance(reading: StepReading) -> None:
-    """Elements and charge, where every gas of the step is a real one that is known."""
-    if reading.reaction is None:
+    """Elements and charge, where every gas of the step is a real one that is known.
+
+    A step that brings or takes gas has nothing to balance.
+    """
+    if reading.reaction is None or not (reading.reaction.reactants and reading.reaction.products):
         return
     found = {name: reading.gases.get(name) for name in reading.reaction.gases}
     formulas = {name: gas.formula for name, gas in found.items() if gas and gas.formula is not None}

@@ -78,6 +78,18 @@ def check_piston(experiment: Experiment, findings: Findings) -> None:
         )
 
 
+def check_laws(experiment: Experiment, findings: Findings) -> None:
+    """What a law finds impossible in its step and vessel, and what it wants to be known."""
+    for step in experiment.steps:
+        context, address = experiment.context(step), f"steps.{step.name}"
+        problems = [problem.under(address) for problem in step.law.problems(context)]
+        for problem in problems:
+            findings.wrong(problem.key, problem.found, problem.expected)
+        if not problems:
+            for text in step.law.cautions(context):
+                findings.note(f"{address}: {text}")
+
+
 def check_rates(experiment: Experiment, findings: Findings) -> None:
     """Refuse rate constants that a computer cannot hold; note steps that can never run."""
     for step in experiment.steps:

@@ -235,6 +235,22 @@ class Later:
         return {"type": kind, "examples": list(self.examples)}
 
 
+class Inner:
+    """Marks a table of one of several shapes (or a plain number), which the second pass reads."""
+
+    def __init__(self, *models: type[Table], number: bool = False) -> None:
+        self.models, self.number = models, number
+
+    def __get_pydantic_core_schema__(self, source: Any, handler: Any) -> core_schema.CoreSchema:
+        return core_schema.any_schema()
+
+    def __get_pydantic_json_schema__(self, schema: Any, handler: Any) -> dict[str, Any]:
+        for model in self.models:
+            model.model_rebuild()
+        tables = [handler(model.__pydantic_core_schema__) for model in self.models]
+        return {"anyOf": [{"type": "number"}, *tables] if self.number else tables}
+
+
 def _refusal(error: QuantityError) -> PydanticCustomError:
     return PydanticCustomError(
         "quantity", "refused", {"found": error.found, "expected": error.expected}

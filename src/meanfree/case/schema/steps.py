@@ -60,6 +60,8 @@ class StepTable(Table):
         "rate": "k, A or what the law takes",
         "reversible": 'reverse = "thermochemistry", or a table with Kp, Kc or K',
     }
+    may_come_from_nothing: ClassVar[bool] = False
+    may_go_to_nothing: ClassVar[bool] = False
     name: Line = Field(description='a name of its own, such as "decomposition"')
     reaction: Line = Field(description='the reaction, such as "2 NOCl -> 2 NO + Cl2"')
     law: Any = Field(description="the rate law")
