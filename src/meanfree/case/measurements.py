@@ -15,6 +15,7 @@ from meanfree.case import settings as changes
 from meanfree.case.findings import Findings
 from meanfree.case.loaded import LoadedCase
 from meanfree.case.loader import read_experiment
+from meanfree.case.meaning.analyses import order_of, wanted_of
 from meanfree.case.meaning.data import readings_of
 from meanfree.case.meaning.fit import asked_for, flattened
 from meanfree.case.schema.base import shape
@@ -22,17 +23,22 @@ from meanfree.case.schema.data import DataTable
 from meanfree.case.schema.fit import FitTable
 from meanfree.errors import InputError, Problem
 from meanfree.experiment.experiment import Experiment
+from meanfree.measured.analyses import Plan
 from meanfree.measured.fits import FitRequest
 from meanfree.measured.runs import MeasuredRun
 
 
 @dataclass(frozen=True)
 class Measurements:
-    """The runs of a case, the fit it asks for, and its further analyses."""
+    """The runs of a case, and what it asks of them."""
 
     runs: tuple[MeasuredRun, ...]
-    request: FitRequest
-    table: FitTable
+    plan: Plan
+
+    @property
+    def request(self) -> FitRequest:
+        """The fit by itself."""
+        return self.plan.request
 
 
 def measurements_of(case: LoadedCase, *, needed: bool = True) -> Measurements:
@@ -51,10 +57,13 @@ def measurements_of(case: LoadedCase, *, needed: bool = True) -> Measurements:
     runs = _runs(case, findings)
     table = _fit_table(case.tables.get("fit"), findings)
     asked = asked_for(table, runs, findings)
+    wanted = wanted_of(table, case.experiment, findings)
+    order = order_of(table, case.experiment, findings)
     if findings.problems:
         raise InputError(problem.inside(str(case.path)) for problem in findings.problems)
-    starts = int(table.starts.value)
-    return Measurements(runs, FitRequest(runs, asked, table.loss, starts), table)
+    request = FitRequest(runs, asked, table.loss, int(table.starts.value))
+    lines = table.weighting == "integrated-law line"
+    return Measurements(runs, Plan(request, lines, order, wanted))
 
 
 def _fit_table(raw: Any, findings: Findings) -> FitTable:
