@@ -272,3 +272,34 @@ def test_every_law_has_a_shape_and_the_schema_holds_them_all() -> None:
     text = json.dumps(case_schema())
     for word in LAWS:
         assert f'"const": "{word}"' in text
+
+
+SAMPLED = """law = "fixed"
+k = "1 1/s"
+
+[[samples]]
+at = "0.5 s"
+fraction = 0.25
+
+[[samples]]
+at = "0.2 s"
+volume = "100 mL"
+"""
+
+
+def test_samples_are_drawn_in_their_order(tmp_path: Path) -> None:
+    read = case(tmp_path, "N2O4 -> 2 NO2", SAMPLED, 'N2O4 = "1 torr"')
+    run = integrate(read)
+    assert run.retained([0.1, 0.3, 0.9]) == pytest.approx([1, 0.9, 0.675], rel=1e-14)
+    assert run.conversion("N2O4", 1.0)[0] == pytest.approx(1 - math.exp(-1), rel=1e-7)
+    assert inputs(read)["samples.0.volume"].value == 100
+    assert with_inputs(read, {"samples.1.fraction": 0.5}).samples[1].fraction is not None
+
+
+def test_wrong_samples_are_refused(tmp_path: Path) -> None:
+    wrong = SAMPLED.replace("fraction = 0.25", "").replace("100 mL", "1 L").replace("0.2 s", "0 s")
+    assert refused(tmp_path, "N2O4 -> 2 NO2", wrong, 'N2O4 = "1 torr"') == [
+        'samples.0: found nothing drawn; expected fraction = 0.05, or volume = "5 mL"',
+        "samples.1.at: found a time of 0; expected a time above 0 s: before it is the fill",
+        "samples.1.volume: found 1 L, but the vessel has 1 L; expected less than the vessel",
+    ]

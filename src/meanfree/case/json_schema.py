@@ -19,6 +19,7 @@ from meanfree.case.schema.tables import (
     FillTable,
     GasTable,
     RunTable,
+    SampleTable,
     VesselTable,
 )
 
@@ -42,6 +43,7 @@ def case_schema() -> dict[str, Any]:
         run=(RunTable | None, None),
         gases=(dict[str, GasTable], Field(default={}, description="who the gases are")),
         steps=(list[step], Field(min_length=1, description="the reactions, one way each")),
+        samples=(list[SampleTable], Field(default=[], description="gas drawn while it runs")),
         data=(list[DataTable], Field(default=[], description="measured runs")),
         fit=(FitTable | None, None),
         plan=(PlanTable | None, None),

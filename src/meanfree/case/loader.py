@@ -20,6 +20,7 @@ from meanfree.case.meaning.gases import (
 )
 from meanfree.case.meaning.plan import plan_request, read_plan
 from meanfree.case.meaning.run import check_watch, read_run
+from meanfree.case.meaning.samples import read_samples
 from meanfree.case.meaning.steps import Written, read_step, read_written
 from meanfree.case.meaning.temperature import read_temperature
 from meanfree.case.meaning.vessel import read_vessel
@@ -33,6 +34,7 @@ from meanfree.experiment.experiment import Experiment
 from meanfree.experiment.fill import Fill
 from meanfree.experiment.mechanism import Step
 from meanfree.experiment.plan import RunPlan
+from meanfree.experiment.samples import Sample
 from meanfree.experiment.temperature import Temperature
 from meanfree.experiment.vessel import Vessel
 from meanfree.gases.gas import Gas
@@ -115,9 +117,11 @@ def read_experiment(tables: dict[str, Any], findings: Findings) -> Experiment | 
         parts.gases, parts.tables, reversible, parts.temperature, findings
     )
     _check_fill_and_watch(parts, findings)
+    samples = read_samples(tables.get("samples"), parts.vessel, findings)
     if findings.problems:
         return None
-    return _joined(top, parts, [step for step in steps if step is not None], findings)
+    found = [step for step in steps if step is not None]
+    return _joined(top, parts, found, samples, findings)
 
 
 def _names(parts: _Parts, tables: dict[str, Any]) -> list[str]:
@@ -150,7 +154,11 @@ def _check_fill_and_watch(parts: _Parts, findings: Findings) -> None:
 
 
 def _joined(
-    top: CaseTable, parts: _Parts, steps: list[Step], findings: Findings
+    top: CaseTable,
+    parts: _Parts,
+    steps: list[Step],
+    samples: tuple[Sample, ...],
+    findings: Findings,
 ) -> Experiment | None:
     """The experiment, and the checks that need all of it."""
     assert parts.vessel is not None and parts.temperature is not None
@@ -165,6 +173,7 @@ def _joined(
         fill=parts.fill,
         plan=parts.plan,
         purpose=top.purpose,
+        samples=samples,
     )
     together.check_piston(experiment, findings)
     together.check_laws(experiment, findings)

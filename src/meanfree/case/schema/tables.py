@@ -142,6 +142,18 @@ class RunTable(Table):
     solver: SolverTable | None = Field(None, description="integrator and tolerances")
 
 
+class SampleTable(Table):
+    """Gas drawn from the running vessel, at once."""
+
+    at: Time = Field(description="when it is drawn")
+    fraction: Annotated[Sourced, Number(0, 1, above=True)] | None = Field(
+        None, description="share of all the gas that is drawn; or volume"
+    )
+    volume: Volume | None = Field(
+        None, description="volume that is drawn, at the conditions of the vessel"
+    )
+
+
 _HEAT_CAPACITY = Later("29 J/mol/K", kinds=("string", "array"))
 
 
@@ -185,6 +197,7 @@ class CaseTable(Table):
     run: Any = Field(None, description="the table [run]")
     gases: Any = Field(None, description="tables [gases.NAME]")
     steps: Any = Field(None, description="tables [[steps]]")
+    samples: Any = Field(None, description="tables [[samples]]")
     data: Any = Field(None, description="tables [[data]]")
     fit: Any = Field(None, description="the table [fit]")
     plan: Any = Field(None, description="the table [plan]")
