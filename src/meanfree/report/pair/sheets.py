@@ -9,7 +9,7 @@ from meanfree.report.pair.summary import CollideSummary, PartnerAnswer
 from meanfree.report.rows import Answer, Row, Sheet
 from meanfree.sourced import Sourced
 
-_LENGTHS = ((1e-3, 1.0, "m"), (1e-6, 1e-3, "mm"), (1e-7, 1e-6, "µm"), (0.0, 1e-9, "nm"))
+_LENGTHS = ((1.0, 1.0, "m"), (1e-3, 1e-3, "mm"), (1e-7, 1e-6, "µm"), (0.0, 1e-9, "nm"))
 
 
 def title(question: PairQuestion) -> str:
@@ -170,7 +170,7 @@ def length(metre: float) -> str:
     """A length in the unit that needs no power of ten.
 
     >>> length(6.98e-8), length(2.3e-6), length(0.0705)
-    ('69.8 nm', '2.3 µm', '0.0705 m')
+    ('69.8 nm', '2.3 µm', '70.5 mm')
     """
     unit = next((scale, name) for least, scale, name in _LENGTHS if metre >= least)
     return f"{wording.given(metre / unit[0], 4)} {unit[1]}"
