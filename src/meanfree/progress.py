@@ -8,7 +8,9 @@ from typing import Protocol
 class Progress(Protocol):
     """Called now and then with the work done so far and the work in all."""
 
-    def __call__(self, done: float, total: float, note: str = "") -> None: ...
+    def __call__(self, done: float, total: float, note: str = "") -> None:
+        """Note that ``done`` of ``total`` is done; ``note`` says what is being done."""
+        ...
 
 
 def silent(done: float, total: float, note: str = "") -> None:

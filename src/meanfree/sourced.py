@@ -11,9 +11,9 @@ class Sourced:
 
     ``value`` is always SI with mol. ``unit`` is the unit to show it in, empty
     for a pure number; ``dimension`` says in what sense (a "K" may be a temperature or an
-    energy), in the words of `meanfree.units`. ``per`` is the number of counted molecules per event where
-    a rate constant was written as loss or formation of one gas, else 1.
-    ``default`` marks a value that the reader did not give.
+    energy), in the words of `meanfree.units`. ``per`` is the number of counted molecules per
+    event where a rate constant was written as loss or formation of one gas, else 1. ``default``
+    marks a value that the reader did not give.
     """
 
     value: float

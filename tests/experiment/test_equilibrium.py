@@ -14,8 +14,8 @@ from meanfree.errors import ComputationError
 from meanfree.experiment.equilibrium import equilibrium, ln_K, why_none
 from meanfree.experiment.mechanism import GivenEquilibrium
 from meanfree.experiment.temperature import Adiabatic
-from meanfree.gases.identity import find_gas
 from meanfree.gases.energies import thermochemistry_of
+from meanfree.gases.identity import find_gas
 from meanfree.integrate.single import integrate
 
 
