@@ -303,3 +303,41 @@ def test_wrong_samples_are_refused(tmp_path: Path) -> None:
         "samples.1.at: found a time of 0; expected a time above 0 s: before it is the fill",
         "samples.1.volume: found 1 L, but the vessel has 1 L; expected less than the vessel",
     ]
+
+
+LEAKY = """law = "fixed"
+k = "1 1/s"
+
+[[flows]]
+kind = "effusion"
+hole = "20 mm^2"
+transmission = 0.5
+
+[[flows]]
+kind = "leak-up"
+rise = "1 torr/s"
+entering = { N2 = 0.79, O2 = 0.21 }
+"""
+
+
+def test_flows_are_read_and_no_conversion(tmp_path: Path) -> None:
+    """Argon leaves by A tau v/(4 V); nitrogen comes in by 0.79 torr/s and leaves as it can."""
+    read = case(tmp_path, "N2O4 -> 2 NO2", LEAKY, 'N2O4 = "1 torr", Ar = "1 torr"')
+    run = integrate(read)
+    mass = float(read.gas_named["Ar"].molar_mass)  # type: ignore[arg-type]
+    k_out = 20e-6 * 0.5 * math.sqrt(8 * R * 300 / (math.pi * mass)) / 4e-3
+    left = run.amounts(1.0)[run.index("Ar"), 0] / read.moles["Ar"]
+    assert left == pytest.approx(math.exp(-k_out), rel=1e-7)
+    assert run.conversion("N2O4", 1.0)[0] == pytest.approx(1 - math.exp(-1), rel=1e-6)
+    assert 0 < run.partial_pressures(1.0)[run.index("N2"), 0] < 0.79 * constants.torr
+    assert inputs(read)["flows.1.rise"].value == 1
+
+
+def test_wrong_flows_are_refused(tmp_path: Path) -> None:
+    wrong = LEAKY.replace('hole = "20 mm^2"', 'rate = "1 1/s"').replace("0.21", "0.3")
+    assert refused(tmp_path, "N2O4 -> 2 NO2", wrong, 'N2O4 = "1 torr"') == [
+        'flows.0.hole: found nothing, with kind = "effusion"; expected hole = "100 um^2"',
+        'flows.0.rate: found rate with kind = "effusion"; expected only hole, or another kind',
+        "flows.1.entering: found fractions that add up to 1.09; expected fractions that add up "
+        "to 1",
+    ]

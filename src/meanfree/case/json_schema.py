@@ -11,6 +11,7 @@ from meanfree.case.laws.registry import LAW_SHAPES
 from meanfree.case.schema.base import Line, Prose
 from meanfree.case.schema.data import DataTable
 from meanfree.case.schema.fit import FitTable
+from meanfree.case.schema.flows import FlowTable
 from meanfree.case.schema.plan import PlanTable
 from meanfree.case.schema.steps import ReverseTable
 from meanfree.case.schema.tables import (
@@ -44,6 +45,7 @@ def case_schema() -> dict[str, Any]:
         gases=(dict[str, GasTable], Field(default={}, description="who the gases are")),
         steps=(list[step], Field(min_length=1, description="the reactions, one way each")),
         samples=(list[SampleTable], Field(default=[], description="gas drawn while it runs")),
+        flows=(list[FlowTable], Field(default=[], description="leaks, pumping and dilution")),
         data=(list[DataTable], Field(default=[], description="measured runs")),
         fit=(FitTable | None, None),
         plan=(PlanTable | None, None),

@@ -12,6 +12,7 @@ from meanfree.case.findings import Findings
 from meanfree.case.loaded import LoadedCase
 from meanfree.case.meaning import together
 from meanfree.case.meaning.fill import check_sum, read_fill
+from meanfree.case.meaning.flows import check_flows, gases_in, read_flows
 from meanfree.case.meaning.gases import (
     find_gases,
     read_gas_tables,
@@ -32,6 +33,7 @@ from meanfree.case.text import parse, read_text
 from meanfree.errors import InputError, Problem
 from meanfree.experiment.experiment import Experiment
 from meanfree.experiment.fill import Fill
+from meanfree.experiment.flows import Flow
 from meanfree.experiment.mechanism import Step
 from meanfree.experiment.plan import RunPlan
 from meanfree.experiment.samples import Sample
@@ -86,6 +88,14 @@ class _Parts:
     tables: dict[str, GasTable]
 
 
+@dataclass(frozen=True)
+class Exchanged:
+    """What passes between the vessel and the world outside while it runs."""
+
+    samples: tuple[Sample, ...]
+    flows: tuple[Flow, ...]
+
+
 def read_experiment(tables: dict[str, Any], findings: Findings) -> Experiment | None:
     """The experiment of parsed tables; what is wrong goes to ``findings``."""
     top = shape(CaseTable, tables, "", findings)
@@ -118,10 +128,11 @@ def read_experiment(tables: dict[str, Any], findings: Findings) -> Experiment | 
     )
     _check_fill_and_watch(parts, findings)
     samples = read_samples(tables.get("samples"), parts.vessel, findings)
+    flows = read_flows(tables.get("flows"), parts.gases, findings)
     if findings.problems:
         return None
     found = [step for step in steps if step is not None]
-    return _joined(top, parts, found, samples, findings)
+    return _joined(top, parts, found, Exchanged(samples, flows), findings)
 
 
 def _names(parts: _Parts, tables: dict[str, Any]) -> list[str]:
@@ -133,6 +144,7 @@ def _names(parts: _Parts, tables: dict[str, Any]) -> list[str]:
     names = list(filled) if isinstance(filled, dict) else []
     for step in parts.written:
         names.extend(step.reaction.gases if step.reaction is not None else ())
+    names.extend(gases_in(tables.get("flows")))
     return [name for name in dict.fromkeys(names) if gas_name_problem(name) is None]
 
 
@@ -157,7 +169,7 @@ def _joined(
     top: CaseTable,
     parts: _Parts,
     steps: list[Step],
-    samples: tuple[Sample, ...],
+    exchanged: Exchanged,
     findings: Findings,
 ) -> Experiment | None:
     """The experiment, and the checks that need all of it."""
@@ -173,10 +185,12 @@ def _joined(
         fill=parts.fill,
         plan=parts.plan,
         purpose=top.purpose,
-        samples=samples,
+        samples=exchanged.samples,
+        flows=exchanged.flows,
     )
     together.check_piston(experiment, findings)
     together.check_laws(experiment, findings)
+    check_flows(experiment, findings)
     if findings.problems:
         return None
     together.check_rates(experiment, findings)

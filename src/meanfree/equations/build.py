@@ -30,7 +30,7 @@ def build_system(experiment: Experiment) -> System:
     """The equations of an experiment as one inert description."""
     gases = tuple(gas.name for gas in experiment.gases)
     place = {name: i for i, name in enumerate(gases)}
-    ways = one_way_steps(experiment.steps)
+    ways = one_way_steps([*experiment.steps, *experiment.flow_steps])
     bath, baths, others = _baths(ways, place)
     energy = has_energy_balance(experiment.temperature)
     volume = experiment.initial_volume

@@ -12,6 +12,7 @@ from functools import cached_property
 
 from meanfree.constants import R
 from meanfree.experiment.fill import Fill
+from meanfree.experiment.flows import Flow, flow_steps
 from meanfree.experiment.mechanism import Step
 from meanfree.experiment.plan import RunPlan
 from meanfree.experiment.samples import Sample
@@ -38,11 +39,17 @@ class Experiment:
     purpose: str = ""
     notes: tuple[str, ...] = ()
     samples: tuple[Sample, ...] = ()
+    flows: tuple[Flow, ...] = ()
 
     @cached_property
     def gas_named(self) -> Mapping[str, Gas]:
         """Gas by name."""
         return {gas.name: gas for gas in self.gases}
+
+    @cached_property
+    def flow_steps(self) -> tuple[Step, ...]:
+        """What leaks, pumps and dilution do, as steps beside those of the mechanism."""
+        return flow_steps(self.flows, self.gases, self.temperature.initial)
 
     @cached_property
     def moles(self) -> Mapping[str, float]:

@@ -123,6 +123,9 @@ def _walk(experiment: Experiment) -> dict[str, tuple[Path, Sourced]]:
         add("fill.total", ("fill", "total", "quantity"), experiment.fill.total.quantity)
     add("fill.at", ("fill", "at"), experiment.fill.at)
     add("run.until", ("plan", "until"), experiment.plan.until)
+    for index, flow in enumerate(experiment.flows):
+        for key in ("hole", "transmission", "rate", "rise"):
+            add(f"flows.{index}.{key}", ("flows", index, key), getattr(flow, key))
     for index, sample in enumerate(experiment.samples):
         for key in ("at", "fraction", "volume"):
             add(f"samples.{index}.{key}", ("samples", index, key), getattr(sample, key))

@@ -14,10 +14,13 @@ from meanfree.equations.arrays import ArrayEquations
 from meanfree.equations.powers import STOP
 from meanfree.equations.system import Floats, System
 from meanfree.experiment.experiment import Experiment
+from meanfree.experiment.mechanism import Step
 from meanfree.integrate.checks import Invariants
 from meanfree.integrate.events import crossings, first_crossing
+from meanfree.integrate.retention import Outflow
 from meanfree.integrate.stepping import Counters
 from meanfree.integrate.trajectory import Trajectory
+from meanfree.rates.law import StepContext
 
 MOST_HALF_LIVES = 10
 
@@ -54,7 +57,8 @@ class Run:
 
     Times are in s; every method takes an array of times and gives one entry a time along the
     last axis, SI units. ``beyond`` says where energies were used a little beyond their range, or
-    as far as the case allows. ``settled_state`` is where the vessel comes to rest, where that is known.
+    as far as the case allows. ``settled_state`` is where the vessel comes to rest, where that is
+    known.
     """
 
     experiment: Experiment
@@ -142,10 +146,36 @@ class Run:
         kept = np.cumprod([s.segment.retained for s in self.trajectory.stretches])
         return np.asarray(kept[self.trajectory.stretch_of(times)])
 
+    @cached_property
+    def _outflows(self) -> dict[str, Outflow]:
+        """Of each gas that flows out, the integral of its rate constant over time."""
+        leaving: dict[str, list[tuple[Step, StepContext]]] = {}
+        for step in self.experiment.flow_steps:
+            for gas, _ in step.reactants:
+                leaving.setdefault(gas, []).append((step, self.experiment.context(step)))
+
+        def constant(steps: list[tuple[Step, StepContext]], t: Floats) -> Floats:
+            T, v = self.temperature(t), self.volume_ratio(t)
+            k = sum(step.law.rate_constant(context, T) for step, context in steps)
+            return np.asarray(k * v / (v + self.system.dead * T))
+
+        times = self.trajectory.times
+        return {
+            gas: Outflow(times, lambda t, steps=steps: constant(steps, t))  # type: ignore[misc]
+            for gas, steps in leaving.items()
+        }
+
+    def retained_of(self, gas: str, t: ArrayLike) -> Floats:
+        """theta: what samples and outflow would have left of a gas that does not react."""
+        times = np.atleast_1d(np.asarray(t, float))
+        if gas not in self._outflows:
+            return self.retained(times)
+        return np.asarray(self.retained(times) * np.exp(-self._outflows[gas](times)))
+
     def remaining(self, gas: str, t: ArrayLike) -> Floats:
         """n/(theta n0) of a filled gas: what reaction left of it."""
         start = self.system.initial_x[self.index(gas)]
-        return np.asarray(self.state(t)[self.index(gas)] / (start * self.retained(t)))
+        return np.asarray(self.state(t)[self.index(gas)] / (start * self.retained_of(gas, t)))
 
     def conversion(self, gas: str, t: ArrayLike) -> Floats:
         """X = 1 - n/(theta n0) of a filled gas."""

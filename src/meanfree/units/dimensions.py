@@ -137,6 +137,7 @@ def _plain_dimensions() -> list[Dimension]:
         ),
         D("speed", _powers("L1 T-1"), "m/s", "300 m/s"),
         D("diffusivity", _powers("L2 T-1"), "m^2/s", "0.2 cm^2/s", above=True),
+        D("pressure rise", _powers("M1 L-1 T-3"), "Pa/s", "0.02 torr/h", highest=1e9, above=True),
         D("power", _powers("M1 L2 T-3"), "W", "5 W"),
         D(
             "polarisability",

@@ -198,6 +198,7 @@ class CaseTable(Table):
     gases: Any = Field(None, description="tables [gases.NAME]")
     steps: Any = Field(None, description="tables [[steps]]")
     samples: Any = Field(None, description="tables [[samples]]")
+    flows: Any = Field(None, description="tables [[flows]]")
     data: Any = Field(None, description="tables [[data]]")
     fit: Any = Field(None, description="the table [fit]")
     plan: Any = Field(None, description="the table [plan]")
