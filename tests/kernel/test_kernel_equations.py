@@ -8,13 +8,13 @@ from meanfree.equations.arrays import ArrayEquations
 from meanfree.equations.build import build_system
 from meanfree.equations.system import Segment
 from meanfree.kernel.balances import Balances
-from meanfree.kernel.parameters import Variation, parameter_block
+from meanfree.kernel.parameters import Variation, parameter
 from meanfree.kernel.slots import Layout
 from meanfree.kernel.tape import Tape
 from random_experiments import FRAMES, random_experiment, random_state
 from tape_values import values_of
 
-INDICES = range(3 * len(FRAMES))
+INDICES = range(2 * len(FRAMES))
 
 
 def matrices(index: int, border: bool, y: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
@@ -24,7 +24,8 @@ def matrices(index: int, border: bool, y: np.ndarray) -> tuple[np.ndarray, np.nd
     balances, tape = Balances(layout, border), Tape()
     state = [tape.input(layout.state + i) for i in range(layout.size)]
     rhs, jacobian = balances.both(tape, state)
-    numbers = parameter_block(layout, Variation(system, 1))[0]
+    variation = Variation(system, 1)
+    numbers = [parameter(layout, variation, name)[0] for name in layout.parameters]
     slots = {layout.first_parameter + i: value for i, value in enumerate(numbers)}
     slots |= {layout.state + i: value for i, value in enumerate(y)}
     values = values_of(tape, slots)

@@ -12,7 +12,8 @@ import os
 import stat
 import sys
 import tempfile
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager
 from functools import lru_cache
 from pathlib import Path
 from types import ModuleType
@@ -62,6 +63,29 @@ def versions() -> str:
         binding.get_host_cpu_name(), binding.get_host_cpu_features().flatten(), own.hexdigest(),
     )  # fmt: skip
     return "\n".join(parts)
+
+
+@contextmanager
+def machine_code_in_user_cache() -> Iterator[None]:
+    """While this lasts, functions that numba decorates keep their machine code in the user's cache.
+
+    numba itself would keep it beside the source and take no notice when a function that another
+    one calls has changed; here the folder's name holds the hash of all of them.
+    """
+    from numba import config
+
+    digest = hashlib.sha256(versions().encode()).hexdigest()[:16]
+    before, folder = config.CACHE_DIR, user_cache() / digest
+    try:
+        folder.mkdir(parents=True, exist_ok=True, mode=0o700)
+        _insist_on_private(folder.parent)
+    except OSError:
+        folder = temporary_cache()
+    config.CACHE_DIR = str(folder)
+    try:
+        yield
+    finally:
+        config.CACHE_DIR = before
 
 
 def module_of(source: str, say: Say = silent) -> ModuleType:

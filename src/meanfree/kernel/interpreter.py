@@ -15,10 +15,12 @@ from numba import cfunc, types
 from numba.extending import intrinsic
 from numpy.typing import NDArray
 
+from meanfree.kernel.cache import machine_code_in_user_cache
 from meanfree.kernel.tape import Op, Phase, operands
 from meanfree.kernel.vector import DOUBLE, LONG, Vectors
 
 END = -1
+Row = tuple[int, int, int, int, int]
 OPERATIONS = [op for op in Op if op > Op.INPUT]
 
 
@@ -45,7 +47,7 @@ class Lowering:
         last = _last_uses(phase, needed)
         free = list(self._scratch)
         place: dict[int, int] = {}
-        rows: list[tuple[int, int, int, int, int]] = []
+        rows: list[Row] = []
         for position, entry in enumerate(phase.tape.entries):
             if not needed[position]:
                 continue
@@ -62,10 +64,22 @@ class Lowering:
                 if place[position] < 0:
                     place[position] = free.pop() if free else self._scratch_slot()
                 rows.append((entry[0], place[position], *_padded(taken)))
-        for slot, value in phase.outputs.items():
-            if early.get(value) != slot:
-                rows.append((int(Op.COPY), slot, place[value], 0, 0))
+        rows += self._copies(phase, early, place, free)
         return _runs(rows)
+
+    def _copies(
+        self, phase: Phase, early: dict[int, int], place: dict[int, int], free: list[int]
+    ) -> list[Row]:
+        """Outputs that wait for the end; what one copy would overwrite another reads first."""
+        waiting = [(s, place[v]) for s, v in phase.outputs.items() if early.get(v) != s]
+        written = {slot for slot, _ in waiting}
+        rows: list[Row] = []
+        for position, (slot, source) in enumerate(waiting):
+            if source in written:
+                aside = free.pop() if free else self._scratch_slot()
+                rows.append((int(Op.COPY), aside, source, 0, 0))
+                waiting[position] = (slot, aside)
+        return rows + [(int(Op.COPY), slot, source, 0, 0) for slot, source in waiting]
 
     def _scratch_slot(self) -> int:
         slot = self._new()
@@ -97,7 +111,7 @@ def _last_uses(phase: Phase, needed: list[bool]) -> list[int]:
     return last
 
 
-def _runs(rows: list[tuple[int, int, int, int, int]]) -> NDArray[np.int64]:
+def _runs(rows: list[Row]) -> NDArray[np.int64]:
     code: list[int] = []
     start = 0
     while start < len(rows):
@@ -168,19 +182,28 @@ def _arity(op: Op) -> int:
 
 
 _interpret_8 = _interpret(8)
+_interpret_16 = _interpret(16)
 _interpret_32 = _interpret(32)
 SIGNATURE = types.void(types.int64, types.int64)
 
 
-@cfunc(SIGNATURE, cache=True)
 def _run_8(base: int, code: int) -> None:
     _interpret_8(base, code)
 
 
-@cfunc(SIGNATURE, cache=True)
 def _run_32(base: int, code: int) -> None:
     _interpret_32(base, code)
 
 
-ADDRESSES: dict[int, int] = {8: _run_8.address, 32: _run_32.address}
+def _run_16(base: int, code: int) -> None:
+    _interpret_16(base, code)
+
+
+with machine_code_in_user_cache():
+    _FUNCTIONS = {
+        lanes: cfunc(SIGNATURE, cache=True)(function)
+        for lanes, function in ((8, _run_8), (16, _run_16), (32, _run_32))
+    }
+
+ADDRESSES: dict[int, int] = {lanes: int(f.address) for lanes, f in _FUNCTIONS.items()}
 """Address of the interpreter's machine code by number of lanes."""

@@ -58,17 +58,11 @@ class Variation:
         }[str(kind)]
 
     @cached_property
-    def x(self) -> Floats:
-        """Amount of each gas over the volume at time zero [mol/m^3, shape (count, n_gases)]."""
-        columns = [
-            np.broadcast_to(self.get("x", i), self.count) for i in range(self.system.n_gases)
-        ]
-        return np.stack(columns, axis=1)
-
-    @cached_property
     def total(self) -> Floats:
-        """Initial amount of all gases over V0 [mol/m^3, shape (count,)]; 1 where it is empty."""
-        total = self.x.sum(axis=1)
+        """Initial amount of all gases over V0 [mol/m^3, (count,) or (1,)]; 1 where it is empty."""
+        total = np.zeros(1)
+        for i in range(self.system.n_gases):
+            total = total + self.get("x", i)
         return np.where(total > 0, total, 1.0)
 
     def part(self, start: int, stop: int) -> Variation:
@@ -123,44 +117,39 @@ def gibbs_energy(table: Thermal, gas: int, T: Floats) -> Floats:
     return np.asarray(h + cp * (T - inside) - T * (s + cp * np.log(T / inside)), float)
 
 
-def parameter_block(layout: Layout, variation: Variation) -> Floats:
-    """The parameters of a layout for all conditions [SI, shape (count, n_parameters)].
+def parameter(layout: Layout, variation: Variation, name: Name) -> Floats:
+    """A parameter of a layout for all conditions [SI, shape (count,)] or one value for all [(1,)].
 
     Slopes of a programmed temperature and switches of steps are those of the first segment.
     """
-    block = np.empty((variation.count, len(layout.parameters)))
     first = variation.system.segments[0]
-    for name, column in layout.parameters.items():
-        if name[0] == "k":
-            value = variation.constants(int(name[1]))
-        elif name[0] == "R_over_p":
-            value = R / variation.get("p")
-        elif name[0] == "scale":
-            value = variation.total
-        elif name[0] == "slope":
-            value = np.array([first.slope])
-        elif name[0] == "switch":
-            switches = first.switches
-            value = np.array([1.0 if switches is None else switches[int(name[1])]])
-        else:
-            value = variation.get(*name)
-        block[:, column] = value
-    return block
+    if name[0] == "k":
+        return variation.constants(int(name[1]))
+    if name[0] == "R_over_p":
+        return R / variation.get("p")
+    if name[0] == "scale":
+        return variation.total
+    if name[0] == "slope":
+        return np.array([first.slope])
+    if name[0] == "switch":
+        switches = first.switches
+        return np.array([1.0 if switches is None else switches[int(name[1])]])
+    return variation.get(*name)
 
 
-def initial_states(layout: Layout, variation: Variation) -> Floats:
-    """The kernel's state at time zero [shape (count, size)]."""
-    system = variation.system
-    states = np.zeros((variation.count, layout.size))
-    states[:, : system.n_gases] = variation.x
+def columns(layout: Layout, variation: Variation, atol: float, end: Floats) -> list[Floats]:
+    """Everything a lane takes in: state, parameters, three absolute tolerances, end [s].
+
+    Each of shape (count,), or (1,) where all conditions share it.
+    """
+    system, total = layout.system, variation.total
+    zero, one = np.zeros(1), np.ones(1)
+    state = [variation.get("x", i) for i in range(system.n_gases)]
+    state += [zero] * (layout.size - system.n_gases)
     if system.volume_varies:
-        states[:, system.volume_index] = 1.0
+        state[system.volume_index] = one
     if layout.has_T:
-        states[:, layout.T_index] = variation.get("T")
-    return states
-
-
-def absolute_tolerances(variation: Variation, atol: float) -> Floats:
-    """Of gases, ledger and heat taken in, as in a single run [shape (count, 3)]."""
-    total = variation.total
-    return np.stack([atol * total, 1e-12 * total, 1e-9 * total * 8.3 * 300], axis=1)
+        state[layout.T_index] = variation.get("T")
+    parameters = [parameter(layout, variation, name) for name in layout.parameters]
+    tolerances = [atol * total, 1e-12 * total, 1e-9 * total * 8.3 * 300]
+    return [*state, *parameters, *tolerances, end]

@@ -1,8 +1,8 @@
 """The phases of one step of a Rosenbrock method for one System.
 
-``factor`` evaluates the Jacobian, factorises and makes the first stage; the other stages follow;
-the last one also judges the step. ``accept`` takes a new state over, ``start`` finds the time
-scale for a first step, ``assemble`` and ``evaluate`` serve the path with pivoting.
+``factor`` settles the step size, evaluates the Jacobian, factorises and makes the first stage; the
+other stages follow; the last one also judges the step. ``accept`` takes a new state over, ``start``
+finds the time scale for a first step; ``assemble``, ``evaluate`` and ``judge`` serve the path with pivoting.
 """
 
 from __future__ import annotations
@@ -10,14 +10,12 @@ from __future__ import annotations
 from dataclasses import dataclass, field
 
 from meanfree.equations.system import System
+from meanfree.kernel import control
 from meanfree.kernel.balances import Balances, Matrix
 from meanfree.kernel.elimination import Plan, plan
 from meanfree.kernel.slots import Layout
 from meanfree.kernel.tableau import Tableau
 from meanfree.kernel.tape import Op, Phase, Tape
-
-SAFETY, SHRINK, GROW = 0.9, 0.2, 8.0
-"""A new step is the best guess times SAFETY, within these factors; common practice, no source."""
 
 
 @dataclass
@@ -37,6 +35,7 @@ class Program:
     start: Phase
     assemble: Phase
     evaluate: Phase
+    judge: Phase
     matrix: dict[tuple[int, int], int]
     end: int
     operations: int = field(default=0)
@@ -44,7 +43,7 @@ class Program:
     @property
     def phases(self) -> list[Phase]:
         """All phases, in the order in which the driver knows them."""
-        return [self.accept, self.start, self.assemble, self.evaluate, *self.step]
+        return [self.accept, self.start, self.assemble, self.evaluate, self.judge, *self.step]
 
 
 def build_program(system: System, tableau: Tableau) -> Program:
@@ -97,6 +96,7 @@ class _Writer:
             self._start(),
             assemble,
             self._evaluate(),
+            self._judging(),
             matrix,
             first + len(slots) + len(matrix),
             sum(len(phase.tape.entries) for phase in step),
@@ -104,11 +104,12 @@ class _Writer:
 
     def _factor(self) -> Phase:
         layout, t = self.layout, Tape()
+        outputs: dict[int, int] = {}
+        shift = control.step_size(layout, t, self.tableau.gamma, outputs)
         rhs, jacobian = self.balances.both(t, self._state(t, layout.state))
-        shift = t.input(layout.scalar("inverse_h_gamma"))
         matrix = self.balances.system_matrix(t, jacobian, shift)
         worst = self._eliminate(t, matrix)
-        outputs = {self.factors[key]: matrix[key] for key in self.factors}
+        outputs.update({self.factors[key]: matrix[key] for key in self.factors})
         outputs[layout.scalar("bad")] = worst
         for i, value in enumerate(self._solve(t, rhs, matrix)):
             outputs[layout.stage(0) + i] = value
@@ -147,7 +148,7 @@ class _Writer:
         stages = [[t.input(layout.stage(q) + i) for i in range(size)] for q in range(s)]
         outputs: dict[int, int] = {}
         argument = self._argument(t, s, stages)
-        if s + 1 < method.stages and self._continues(s + 1):
+        if s + 1 == method.stages or self._continues(s + 1):
             outputs.update({layout.argument + i: value for i, value in enumerate(argument)})
         rhs = self.balances.derivative(t, argument)
         inverse_h = t.input(layout.scalar("inverse_h"))
@@ -160,7 +161,7 @@ class _Writer:
         new = self._solve(t, rhs, matrix)
         outputs.update({layout.stage(s) + i: value for i, value in enumerate(new)})
         if s + 1 == method.stages:
-            self._judge(t, argument, new, outputs)
+            control.judge(layout, t, method.error_order, argument, new, outputs)
         return Phase(f"stage_{s}", t, outputs)
 
     def _continues(self, s: int) -> bool:
@@ -179,48 +180,17 @@ class _Writer:
             for i in range(layout.size)
         ]
 
-    def _judge(self, t: Tape, argument: list[int], last: list[int], out: dict[int, int]) -> None:
-        """The new state, the square of the error over the tolerance, and the next step over h."""
-        layout = self.layout
-        old = self._state(t, layout.state)
-        rtol = t.input(layout.scalar("rtol"))
-        total = t.const(0.0)
-        for i, (y, w, u) in enumerate(zip(old, argument, last, strict=True)):
-            new = t.add(w, u)
-            out[layout.new + i] = new
-            size = t.max(t.unary(Op.ABS, y), t.unary(Op.ABS, new))
-            ratio = t.div(u, t.madd(rtol, size, self._atol(t, i)))
-            total = t.madd(ratio, ratio, total)
-        error = t.mul(total, t.const(1.0 / layout.size))
-        exponent = -0.5 / (self.tableau.error_order + 1)
-        factor = t.mul(
-            t.const(SAFETY), t.unary(Op.EXP, t.mul(t.const(exponent), t.unary(Op.LOG, error)))
-        )
-        out[layout.scalar("error")] = error
-        out[layout.scalar("factor")] = t.min(t.max(factor, t.const(SHRINK)), t.const(GROW))
-
-    def _atol(self, t: Tape, i: int) -> int:
-        """Absolute tolerance of a state, as for a single run."""
-        layout, system = self.layout, self.layout.system
-        if i < system.n_gases:
-            return t.input(layout.scalar("atol_x"))
-        if layout.has_T and i == layout.T_index:
-            return t.const(1e-11)
-        if system.volume_varies and i == system.volume_index:
-            return t.const(1e-14)
-        if system.exchanges_heat and i == system.volume_index - 1:
-            return t.input(layout.scalar("atol_heat"))
-        return t.input(layout.scalar("atol_ledger"))
+    def _judging(self) -> Phase:
+        """The judgement once more, of stages that lie in their slots."""
+        layout, t, outputs = self.layout, Tape(), dict[int, int]()
+        argument = self._state(t, layout.argument)
+        last = self._state(t, layout.stage(self.tableau.stages - 1))
+        control.judge(layout, t, self.tableau.error_order, argument, last, outputs)
+        return Phase("judge", t, outputs)
 
     def _accept(self) -> Phase:
-        layout, t = self.layout, Tape()
-        accepted = t.input(layout.scalar("accepted"))
-        outputs = {
-            layout.state + i: t.select(
-                accepted, t.input(layout.new + i), t.input(layout.state + i)
-            )
-            for i in range(layout.size)
-        }
+        t, outputs = Tape(), dict[int, int]()
+        control.accept(self.layout, t, outputs)
         return Phase("accept", t, outputs)
 
     def _start(self) -> Phase:

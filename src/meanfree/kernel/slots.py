@@ -14,10 +14,19 @@ from meanfree.equations.system import System
 Name = tuple[str | int, ...]
 
 SCALARS = (
-    "inverse_h_gamma", "inverse_h", "accepted", "error", "factor", "bad", "first", "rtol",
-    "atol_x", "atol_ledger", "atol_heat",
+    "t", "h", "stop", "due", "limited", "inverse_h_gamma", "inverse_h", "first", "bad",
+    "error", "factor", "accepted", "reached", "next_h", "attention", "negative",
+    "refused", "tried", "refusals", "steps", "deepest",
+    "rtol", "atol_x", "atol_ledger", "atol_heat", "most_steps", "automatic", "worst",
+    "theta", "end", "until", "crossed",
 )  # fmt: skip
-"""Slots that every lane has besides its state and its parameters."""
+"""Slots that every lane has besides its state and its parameters.
+
+Of time: the lane must not step over ``stop``; at ``due`` the next time of the grid comes; ``limited`` > 0
+where the step ends at the stop. Of the step just made: ``accepted`` 1 or 0, ``attention`` > 0 where the
+loop must look at the lane. ``worst`` is the multiplier above which a pivot is bad. Counted: ``tried``, ``refusals``, ``steps``. ``theta`` is what drawn samples left;
+``end`` ends a run, ``until`` a second one; at ``crossed`` a level was crossed that may end a run.
+"""
 
 
 @dataclass

@@ -85,7 +85,7 @@ class Tape:
         return self._make(Op.ADD, *sorted((a, b)))
 
     def sub(self, a: int, b: int) -> int:
-        """a - b"""
+        """a - b; also of a value and itself, which is no number where the value is none."""
         x, y = self.number(a), self.number(b)
         if x is not None and y is not None:
             return self.const(x - y)
@@ -98,8 +98,10 @@ class Tape:
         x = self.number(a)
         if x is not None:
             return self.const(-x)
-        op, inner, _, _ = self.entries[a]
-        return inner if op == Op.NEG else self._make(Op.NEG, a)
+        op, first, second, _ = self.entries[a]
+        if op == Op.SUB:
+            return self._make(Op.SUB, second, first)
+        return first if op == Op.NEG else self._make(Op.NEG, a)
 
     def mul(self, a: int, b: int) -> int:
         """a b"""

@@ -1,0 +1,229 @@
+"""A kernel for one System: conditions in, what was asked of every run out.
+
+Chooses between the interpreter, which can begin at once, and machine code made for the
+mechanism, which has to be compiled; both give the same bits.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+
+from meanfree.equations.system import System
+from meanfree.kernel.cache import Say, silent
+from meanfree.kernel.parameters import Variation, columns
+from meanfree.kernel.phases import Program, build_program
+from meanfree.kernel.records import (
+    LEVEL,
+    SLOT,
+    SNAPSHOTS,
+    Conditions,
+    Floats,
+    Kept,
+    Longs,
+    Places,
+    kept_for,
+)
+from meanfree.kernel.tableau import RODAS5P, Tableau
+from meanfree.kernel.watching import (
+    Functional,
+    request_for,
+    slots_per_functional,
+    watching_phase,
+)
+
+if TYPE_CHECKING:
+    from meanfree.kernel.interpreter import Lowering
+
+MOST_STEPS = 200_000
+"""Steps after which a run is given up; common practice, no source."""
+
+WORST_MULTIPLIER = 1e5
+"""Above this a pivot counts as bad: five digits of sixteen are lost. No source."""
+
+HORIZON = 1e17
+"""The longest automatic run [s]."""
+
+EXPECTED_STEPS = 200
+"""Steps of an ordinary run, to judge what a job will cost."""
+
+COMPILE = (0.4, 3.5e-4)
+"""Seconds to make machine code: at least, and for each operation. Measured."""
+
+INTERPRET = 2.5e-10
+"""Seconds that interpreting costs more than machine code, for each operation and lane. Measured."""
+
+
+@dataclass(frozen=True)
+class Task:
+    """What to integrate and what to keep.
+
+    ``end`` [s, shape (count,) or (1,)], None where runs end by themselves; then ``watched`` is the gas
+    whose conversion counts (-1: none). ``rtol`` and ``atol`` (over the total initial concentration) as in
+    a single run. ``grid`` [s, shape (rows, n_times)]. Steps whose elimination meets a multiplier above
+    ``worst_multiplier`` are made again with row exchanges.
+    """
+
+    end: Floats | None
+    rtol: float = 1e-8
+    atol: float = 1e-20
+    watched: int = -1
+    functionals: tuple[Functional, ...] = ()
+    grid: Floats | None = None
+    most_steps: int = MOST_STEPS
+    worst_multiplier: float = WORST_MULTIPLIER
+
+
+class Kernel:
+    """The compiled integrator of one System.
+
+    ``compiled`` True or False settles how phases are carried out; None lets the expected cost decide.
+    """
+
+    def __init__(
+        self, system: System, tableau: Tableau = RODAS5P, *, compiled: bool | None = None,
+        lanes: int | None = None, say: Say = silent,
+    ) -> None:  # fmt: skip
+        self.system, self.tableau, self.say = system, tableau, say
+        self.program: Program = build_program(system, tableau)
+        self._compiled, self._lanes = compiled, lanes
+        self._addresses: dict[int, list[int]] = {}
+        self._codes: dict[Any, tuple[Lowering, list[Longs]]] = {}
+
+    def run(self, variation: Variation, task: Task) -> Kept:
+        """Integrate all conditions of a variation in this thread, without Python's lock."""
+        from meanfree.kernel.driver import advance
+
+        compiled, lanes = self.choice(variation.count)
+        end = np.atleast_1d(np.array(HORIZON if task.end is None else task.end, float))
+        numbers = columns(self.program.layout, variation, task.atol, end)
+        grid = np.zeros((1, 0)) if task.grid is None else np.atleast_2d(task.grid)
+        size = self.program.layout.size
+        request = request_for(task.functionals, numbers[:size], variation.count, grid)
+        free = self.program.end + 1 + slots_per_functional(self.program) * len(task.functionals)
+        places = self._places(task, lanes, free)
+        lowering, codes = self._code(task, free + (3 + SNAPSHOTS) * (size + 1))
+        work = aligned(lowering.next * lanes).reshape(-1, lanes)
+        for value, slot in lowering.constants.items():
+            work[slot] = value
+        work[SLOT["rtol"]], work[SLOT["most_steps"]] = task.rtol, task.most_steps
+        work[SLOT["worst"]] = task.worst_multiplier
+        work[SLOT["automatic"]] = 1.0 if task.end is None else -1.0
+        method, kept = self.tableau, kept_for(places, request, variation.count)
+        advance(
+            places,
+            work,
+            np.zeros((LEVEL + len(task.functionals), lanes), np.int64),
+            np.array(self._all_addresses(compiled, lanes), np.int64),
+            np.array([code.ctypes.data for code in codes], np.int64),
+            np.array([(r, c, s) for (r, c), s in self.program.matrix.items()], np.int64),
+            method.a,
+            method.c,
+            method.dense,
+            self._conditions(numbers, variation.count),
+            request,
+            kept,
+        )
+        return kept
+
+    def _code(self, task: Task, first: int) -> tuple[Lowering, list[Longs]]:
+        """What the interpreter carries out, made once for each set of functionals."""
+        from meanfree.kernel.interpreter import Lowering
+
+        key = tuple((f.weights, f.levels is None, f.falls, f.peak) for f in task.functionals)
+        if key not in self._codes:
+            lowering = Lowering(first)
+            phases = [*self.program.phases, watching_phase(self.program, task.functionals)]
+            self._codes[key] = lowering, [lowering.code(phase) for phase in phases]
+        return self._codes[key]
+
+    def choice(self, count: int) -> tuple[bool, int]:
+        """(compile, number of lanes) for so many conditions, by expected time."""
+        operations = self.program.operations
+        saved = INTERPRET * operations * EXPECTED_STEPS * count
+        compiled = saved > COMPILE[0] + COMPILE[1] * operations
+        if self._compiled is not None:
+            compiled = self._compiled
+        lanes = self._lanes
+        if lanes is None:
+            slots = self.program.end
+            wide = slots * 32 * 8 < (40_000 if compiled else 1_000_000)
+            lanes = 32 if wide and count > 8 else 8
+        return compiled, lanes
+
+    def _places(self, task: Task, lanes: int, end: int) -> Places:
+        program, layout, system = self.program, self.program.layout, self.system
+        return Places(
+            lanes=lanes,
+            size=layout.size,
+            gases=system.n_gases,
+            unknowns=program.unknowns,
+            n_parameters=len(layout.parameters),
+            n_stages=self.tableau.stages,
+            n_dense=self.tableau.dense.shape[1],
+            n_functionals=len(task.functionals),
+            heat=system.volume_index - 1 if system.exchanges_heat else -1,
+            v=system.volume_index if system.volume_varies else -1,
+            T=layout.T_index if layout.has_T else -1,
+            state=layout.state,
+            new=layout.new,
+            argument=layout.argument,
+            value=layout.value,
+            stage=layout.stage(0),
+            parameter=layout.first_parameter,
+            alarm=program.end,
+            most=end,
+            rest=end + layout.size,
+            begin=end + 2 * layout.size,
+            snaps=end + 3 * layout.size,
+            gamma=self.tableau.gamma,
+            exponent=-0.5 / (self.tableau.error_order + 1),
+            rtol=task.rtol,
+            automatic=task.end is None,
+            watched=task.watched,
+        )
+
+    def _all_addresses(self, compiled: bool, lanes: int) -> list[int]:
+        """Of every phase; what watches a run differs from job to job and is interpreted."""
+        from meanfree.kernel.interpreter import ADDRESSES
+
+        if compiled:
+            return [*self._compiled_addresses(lanes), ADDRESSES[lanes]]
+        return [ADDRESSES[lanes]] * (len(self.program.phases) + 1)
+
+    def _compiled_addresses(self, lanes: int) -> list[int]:
+        if lanes not in self._addresses:
+            from meanfree.kernel.generated import addresses
+
+            self._addresses[lanes] = addresses(self.program.phases, lanes, self.say)
+        return self._addresses[lanes]
+
+    def _conditions(self, numbers: list[Floats], count: int) -> Conditions:
+        layout, later = self.program.layout, self.system.segments[1:]
+        varied = [i for i, column in enumerate(numbers) if len(column) > 1]
+        own = np.empty((len(varied), count))
+        for place, i in enumerate(varied):
+            own[place] = numbers[i]
+        names = [(n, c) for n, c in layout.parameters.items() if n[0] in ("slope", "switch")]
+        breaks = []
+        for s in later:
+            switches = np.ones(self.system.n_steps) if s.switches is None else s.switches
+            values = [s.slope if n[0] == "slope" else float(switches[int(n[1])]) for n, _ in names]
+            moved = s.temperature if self.system.mode == "program" else 0.0
+            breaks.append([s.start, s.retained, moved, *values])
+        return Conditions(
+            np.array([column[0] for column in numbers], float),
+            np.array(varied, np.int64),
+            own,
+            np.array(breaks, float).reshape(1, len(later), 3 + len(names)),
+            np.array([column for _, column in names], np.int64),
+        )
+
+
+def aligned(length: int) -> Floats:
+    """Zeros whose first element lies at a multiple of 64 bytes."""
+    raw = np.zeros(length + 8)
+    offset = (-raw.ctypes.data // 8) % 8
+    return raw[offset : offset + length]
