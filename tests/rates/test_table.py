@@ -2,12 +2,18 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 from encounters import meeting, molecule
 from laboratory import experiment, si, step
 
+from meanfree.errors import ComputationError
 from meanfree.experiment.inputs import with_inputs
+from meanfree.experiment.temperature import Adiabatic
+from meanfree.gases.thermochemistry import from_values
+from meanfree.integrate.single import integrate
 from meanfree.rates.arrhenius import Arrhenius
 from meanfree.rates.law import StepContext
 from meanfree.rates.table import Table, TablePoint
@@ -92,3 +98,26 @@ def test_every_point_has_an_address() -> None:
     changed = with_inputs(run, {"steps.d.points.1.k": 3.0})
     assert changed.steps[0].law.points[1].k.value == 3.0  # type: ignore[attr-defined]
     assert run.steps[0].law.points[1].k.value == 2.0  # type: ignore[attr-defined]
+
+
+def test_an_adiabatic_run_that_leaves_the_table_is_an_error() -> None:
+    """Its temperature is known only afterwards: 480 K and 30 kJ/mol of heat, Cp 40 J/mol/K."""
+    energies = from_values(
+        enthalpy_298=si(0.0), entropy_298=si(200.0), heat_capacity=[(200.0, 40.0), (3e3, 40.0)]
+    )
+    gas = replace(molecule("HCN"), thermochemistry=energies)
+    other = replace(molecule("HNC"), thermochemistry=energies)
+    law = table({470.0: 1.0, 490.0: 2.0})
+    made = experiment(
+        [step("HCN -> HNC", law, name="d", heat=si(3e4))],
+        {"HCN": 1.0},
+        gases=[gas, other],
+        temperature=Adiabatic(si(480.0)),
+        until=10.0,
+    )
+    with pytest.raises(ComputationError) as refused:
+        integrate(made)
+    assert str(refused.value).startswith("steps.d: the table of k covers 470 to 490 K and the run ")
+    allowed = replace(law, extrapolate=True)
+    run = integrate(replace(made, steps=(replace(made.steps[0], law=allowed),)))
+    assert run.beyond[0].startswith("steps.d: the table of k covers 470 to 490 K and the run 480 ")

@@ -1,4 +1,4 @@
-"""Whether a run stayed where the energies of its gases are known."""
+"""Whether a run stayed where its laws and the energies of its gases are known."""
 
 from __future__ import annotations
 
@@ -19,9 +19,7 @@ def beyond_known_energies(
     """
     if not system.temperature_varies:
         return
-    row = system.temperature_index
-    temperatures = [y[row] for stretch in trajectory.stretches for y in stretch.states]
-    low, high = float(min(temperatures)), float(max(temperatures))
+    low, high = _span(system, trajectory)
     for gas in experiment.gases:
         known = gas.thermochemistry
         verdict = "inside" if known is None else known.range_problem(low, high)
@@ -34,3 +32,22 @@ def beyond_known_energies(
         )
         remedy = f"; extrapolate = true under [gases.{gas.name}] allows it"
         yield text + (remedy if error else ""), error
+
+
+def beyond_laws(
+    experiment: Experiment, system: System, trajectory: Trajectory
+) -> Iterator[tuple[str, bool]]:
+    """The same for rate laws that know where they hold: tables of k, fitted broadenings."""
+    if not system.temperature_varies:
+        return
+    low, high = _span(system, trajectory)
+    for step in experiment.steps:
+        for text, error in step.law.strains(low, high):
+            yield f"steps.{step.name}: {text}", error
+
+
+def _span(system: System, trajectory: Trajectory) -> tuple[float, float]:
+    """Lowest and highest temperature of a run [K]."""
+    row = system.temperature_index
+    temperatures = [y[row] for stretch in trajectory.stretches for y in stretch.states]
+    return float(min(temperatures)), float(max(temperatures))

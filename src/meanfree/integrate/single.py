@@ -13,7 +13,7 @@ from meanfree.experiment.experiment import Experiment
 from meanfree.experiment.plan import Solver
 from meanfree.integrate.checks import check
 from meanfree.integrate.events import last_crossing
-from meanfree.integrate.ranges import beyond_known_energies
+from meanfree.integrate.ranges import beyond_known_energies, beyond_laws
 from meanfree.integrate.run import Run, Status
 from meanfree.integrate.settling import CONVERTED, HORIZON, Settling
 from meanfree.integrate.stepping import Stepped, equations_for, step_through
@@ -26,7 +26,7 @@ def integrate(experiment: Experiment, solver: Solver | None = None) -> Run:
     ------
     ComputationError
         The integrator failed, the run did not keep what it must keep, or it left the temperatures
-        at which the energies of its gases are known.
+        at which its rate laws or the energies of its gases are known.
     """
     solver = experiment.plan.solver if solver is None else solver
     system = build_system(experiment)
@@ -42,7 +42,10 @@ def integrate(experiment: Experiment, solver: Solver | None = None) -> Run:
     invariants = check(experiment, system, stepped.trajectory, solver.rtol)
     if invariants.failures:
         raise ComputationError("the run failed its own checks: " + "; ".join(invariants.failures))
-    beyond = list(beyond_known_energies(experiment, system, stepped.trajectory))
+    beyond = [
+        *beyond_known_energies(experiment, system, stepped.trajectory),
+        *beyond_laws(experiment, system, stepped.trajectory),
+    ]
     errors = [text for text, error in beyond if error]
     if errors:
         raise ComputationError("; ".join(errors))

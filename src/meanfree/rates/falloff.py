@@ -167,14 +167,26 @@ class Falloff(Law):
             if term.scale.value <= 0:
                 yield Problem(f"Fc.{i}", f"{term.scale.value:g} K", "a temperature above 0 K")
                 return
-        low, high = context.temperatures or (298.15, 298.15)
+        for bad, at in self._strained(centre, *(context.temperatures or (298.15, 298.15))):
+            expected = "0.1 to 1 wherever the run goes: the broadened form holds there"
+            yield Problem("Fc", f"Fc = {bad:.3g} at {at:g} K", expected)
+
+    @staticmethod
+    def _strained(centre: Centre, low: float, high: float) -> Iterator[tuple[float, float]]:
+        """The first (Fc, T) of the smallest and the largest Fc that lies outside 0.1 to 1."""
         T = np.linspace(low, high, 1 if low == high else 101)
         values = np.broadcast_to(centre(T), T.shape)
-        for bad, at in ((values.min(), T[values.argmin()]), (values.max(), T[values.argmax()])):
-            if not LEAST_CENTRE <= bad <= 1.0:
-                expected = "0.1 to 1 wherever the run goes: the broadened form holds there"
-                yield Problem("Fc", f"Fc = {bad:.3g} at {at:g} K", expected)
+        for place in (int(values.argmin()), int(values.argmax())):
+            if not LEAST_CENTRE <= values[place] <= 1.0:
+                yield float(values[place]), float(T[place])
                 return
+
+    def strains(self, low: float, high: float) -> Iterator[tuple[str, bool]]:
+        """Fc outside 0.1 to 1 at temperatures that the run reached."""
+        if self.broadening == "none" or self.Fc is None:
+            return
+        for bad, at in self._strained(self.Fc, low, high):
+            yield f"Fc is {bad:.3g} at {at:.0f} K; the broadened form holds from 0.1 to 1.", True
 
     def cautions(self, context: StepContext) -> Iterator[str]:
         """What an estimated k0 rests on."""

@@ -198,10 +198,9 @@ class Law:
         """Whether the step runs just after a time [s]."""
         return True
 
-    @property
-    def temperature_range(self) -> tuple[float, float] | None:
-        """Lowest and highest temperature the law may be asked for [K]; None: any."""
-        return None
+    def strains(self, low: float, high: float) -> Iterator[tuple[str, bool]]:
+        """What a run from ``low`` to ``high`` [K] strains: (what is so, is that an error)."""
+        yield from ()
 
     def rate_constant(self, context: StepContext, T: Any, p: Any = 0.0, M: Any = 0.0) -> Any:
         """`coefficient` with this law's numbers, evaluated with numpy."""

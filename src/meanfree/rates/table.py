@@ -70,12 +70,17 @@ class Table(Law):
         """(T_1, …, T_n, k_1, …, k_n)"""
         return (*(p.T.value for p in self.points), *(p.k.value for p in self.points))
 
-    @property
-    def temperature_range(self) -> tuple[float, float] | None:
-        """First and last temperature with the margin [K]; None where any is allowed."""
-        if self.extrapolate:
-            return None
-        return self.points[0].T.value - MARGIN, self.points[-1].T.value + MARGIN
+    def strains(self, low: float, high: float) -> Iterator[tuple[str, bool]]:
+        """Temperatures outside the table: an error beyond `MARGIN`, unless allowed."""
+        first, last = self.points[0].T.value, self.points[-1].T.value
+        if low < first or high > last:
+            span = f"{low:g} K" if low == high else f"{low:g} to {high:g} K"
+            far = low < first - MARGIN or high > last + MARGIN
+            yield (
+                f"the table of k covers {first:g} to {last:g} K and the run {span}: "
+                "outside it the outer Arrhenius lines are continued.",
+                far and not self.extrapolate,
+            )
 
     def problems(self, context: StepContext) -> Iterator[Problem]:
         """Too few points, points out of order, a k that has no logarithm, a run outside."""
@@ -101,13 +106,5 @@ class Table(Law):
 
     def cautions(self, context: StepContext) -> Iterator[str]:
         """That the run leaves the table, where that is allowed."""
-        if context.temperatures is None:
-            return
-        first, last = self.points[0].T.value, self.points[-1].T.value
-        low, high = context.temperatures
-        if low < first or high > last:
-            span = f"{low:g} K" if low == high else f"{low:g} to {high:g} K"
-            yield (
-                f"the table of k covers {first:g} to {last:g} K and the run {span}: "
-                "outside it the outer Arrhenius lines are continued."
-            )
+        if context.temperatures is not None:
+            yield from (text for text, _ in self.strains(*context.temperatures))
