@@ -68,7 +68,7 @@ class TemperatureSeries:
     centres: LineOfCentres | None
     words: tuple[str, ...]
 
-    def k(self, T: Floats) -> Floats:
+    def k(self, T: Floats | float) -> Floats:
         """k per event [SI] at temperatures [K]."""
         return np.asarray(np.exp(self.line.at(1 / np.asarray(T, float) - 1 / self.middle)))
 

@@ -56,11 +56,22 @@ class StepAgainstCollisions:
 
 @dataclass(frozen=True)
 class Scenario:
-    """One of the three: its name, its run, and the half-lives of the watched gas [s]."""
+    """One of the three: its name, its run, and the half-lives of the watched gas [s].
+
+    ``half_way`` [s] is when it has gone half of the way to where it settles, where that is short of
+    half of it; None where a half-life is reached or nothing settles.
+    """
 
     name: str
     run: Run
     half_lives: tuple[float | None, ...]
+    half_way: float | None
+
+    @property
+    def time(self) -> float | None:
+        """The first half-life, or the time to half of the way [s]."""
+        first = self.half_lives[0] if self.half_lives else None
+        return first if first is not None else self.half_way
 
 
 @dataclass(frozen=True)
@@ -119,6 +130,21 @@ def compare(
         scenarios.append(_scenario(THEORY, _by_collisions(own, theory), watched))
     scenarios.append(_scenario(CEILING, _by_collisions(own, dict.fromkeys(known, 0.0)), watched))
     return Comparison(own, watched, steps, tuple(scenarios), tuple(_left_out(own, steps)), fit)
+
+
+def against_collisions(
+    fit: Fit, place: int, diameter_factor: float = DIAMETER_FACTOR
+) -> tuple[StepAgainstCollisions, ...]:
+    """The encounters of a fitted run against their collision limits; empty where there is none."""
+    run = fit.request.runs[place]
+    own = applied(run, place, fit.parameters, fit.values)
+    T = own.temperature.initial
+    limits = [(step, _limit(own, step, T)) for step in own.steps]
+    return tuple(
+        _judged(own, step, limit, T, fit, place, diameter_factor)
+        for step, limit in limits
+        if limit is not None
+    )
 
 
 def _limit(experiment: Experiment, step: Step, T: float) -> Ceiling | None:
@@ -228,7 +254,13 @@ def _scenario(name: str, experiment: Experiment, watched: str) -> Scenario:
         run = integrate(replace(experiment, plan=plan))
     except ComputationError as error:
         raise ComputationError(f"{name}: {error}") from None
-    return Scenario(name, run, tuple(half.duration for half in run.half_lives(watched)[:3]))
+    half_lives = tuple(half.duration for half in run.half_lives(watched)[:3])
+    half_way = None
+    if half_lives[0] is None and run.settled_state is not None:
+        place = run.index(watched)
+        settled = 1 - float(run.settled_state[place]) / float(run.system.initial_x[place])
+        half_way = run.reaction_time(watched, 0.5 * settled) if settled > 0 else None
+    return Scenario(name, run, half_lives, half_way)
 
 
 def _left_out(experiment: Experiment, steps: tuple[StepAgainstCollisions, ...]) -> list[str]:

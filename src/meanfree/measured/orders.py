@@ -16,7 +16,6 @@ from meanfree.measured.evidence import Candidate, evidence, ranked
 from meanfree.measured.fits import Fit, FitRequest, quantile
 from meanfree.measured.fitting import fit
 from meanfree.measured.parameters import Asked
-from meanfree.measured.runs import MeasuredRun
 
 USUAL: Final[tuple[float, ...]] = (0.0, 0.5, 1.0, 1.5, 2.0, 3.0)
 LOWEST, HIGHEST = -1.0, 5.0
@@ -218,7 +217,7 @@ def _start(experiment: Experiment, gas: str) -> float:
     return there / experiment.initial_volume
 
 
-def in_words(test: OrderTest, run: Sequence[MeasuredRun]) -> str:
+def in_words(test: OrderTest) -> str:
     """The fitted order and what it says, in a sentence."""
     if not (math.isfinite(test.low) and math.isfinite(test.high)):
         return f"The readings do not determine the order in {test.gas}."
@@ -227,5 +226,9 @@ def in_words(test: OrderTest, run: Sequence[MeasuredRun]) -> str:
     if len(inside) == 1:
         return f"{text}; of the usual orders only {inside[0]:g} lies inside."
     if not inside:
-        return f"{text}; none of the usual orders lies inside: the step is not simple."
+        near = min(USUAL, key=lambda order: abs(order - test.order))
+        return (
+            f"{text}. None of the usual orders lies inside (the nearest is {near:g}): either the "
+            "step is not simple, or the readings are off by more than their scatter."
+        )
     return f"{text}; {' and '.join(f'{order:g}' for order in inside)} lie inside."

@@ -1,0 +1,1 @@
+"""The pages, figures, tables and summaries of `fit` and `compare`."""
