@@ -10,7 +10,7 @@ from typing import Annotated
 
 import typer
 
-from meanfree.cli import check, collide, equations, limits, schema, start
+from meanfree.cli import check, collide, compare, equations, fit, limits, schema, start
 from meanfree.cli import run as predict
 from meanfree.cli.errors import report_errors
 
@@ -51,6 +51,8 @@ app.command("run")(predict.run)
 app.command("equations")(equations.equations)
 app.command("collide")(collide.collide)
 app.command("limits")(limits.limits)
+app.command("compare")(compare.compare)
+app.command("fit")(fit.fit)
 app.command("schema")(schema.schema)
 
 
