@@ -1,0 +1,122 @@
+"""What is read off a run, declared, so that one run or many thousands can answer it.
+
+This is the one place through which planning carries out many runs.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, field, replace
+from typing import Literal
+
+import numpy as np
+
+from meanfree.equations.system import Floats
+from meanfree.errors import ComputationError, InputError
+from meanfree.experiment.experiment import Experiment
+from meanfree.experiment.inputs import with_inputs
+from meanfree.experiment.plan import Solver
+from meanfree.integrate.events import first_crossing
+from meanfree.integrate.run import Run
+from meanfree.integrate.single import integrate
+from meanfree.planning.goal import Goal
+from meanfree.progress import Progress, silent
+from meanfree.sourced import Sourced
+
+Kind = Literal[
+    "reaction time",
+    "half-life",
+    "yield time",
+    "conversion",
+    "yield",
+    "concentration",
+    "partial pressure",
+    "amount",
+    "pressure",
+    "temperature",
+    "highest pressure",
+]
+
+
+@dataclass(frozen=True)
+class Reading:
+    """One thing to read off a run.
+
+    "reaction time" of ``gas`` to ``level``, "half-life" and "yield time" [s]; "conversion" [1],
+    "yield" [mol/mol] for each mole filled of ``basis``, "concentration" [mol/m^3], "partial
+    pressure" [Pa] and "amount" [mol] of ``gas``, "pressure" [Pa] and "temperature" [K] at ``times``
+    [s]; "highest pressure" [Pa]. ``columns`` numbers are read.
+    """
+
+    kind: Kind
+    gas: str = ""
+    level: float = 0.0
+    basis: str = ""
+    times: tuple[float, ...] = field(default=())
+
+    @property
+    def columns(self) -> int:
+        """How many numbers it gives."""
+        return max(1, len(self.times))
+
+
+def read_off(run: Run, reading: Reading) -> Floats:
+    """The numbers of a reading [SI, shape (columns,)]; NaN where a time is not reached."""
+    if reading.kind in ("reaction time", "half-life"):
+        level = 0.5 if reading.kind == "half-life" else reading.level
+        time = run.reaction_time(reading.gas, level)
+        return np.array([np.nan if time is None else time])
+    if reading.kind == "highest pressure":
+        return np.array([float(run.pressure(run.trajectory.times).max())])
+    if reading.kind == "yield time":
+        goal = Goal("yield", reading.gas, reading.level, reading.basis)
+        found = first_crossing(run.trajectory, lambda t: goal.value(run, t), goal.level)
+        return np.array([np.nan if found is None else found])
+    t = np.minimum(np.array(reading.times), run.end)
+    if reading.kind == "conversion":
+        return run.conversion(reading.gas, t)
+    if reading.kind == "yield":
+        return Goal("yield", reading.gas, reading.level, reading.basis).value(run, t)
+    if reading.kind == "pressure":
+        return run.pressure(t)
+    if reading.kind == "temperature":
+        return run.temperature(t)
+    by_gas = {
+        "concentration": run.concentrations,
+        "partial pressure": run.partial_pressures,
+        "amount": run.amounts,
+    }
+    return np.asarray(by_gas[reading.kind](t)[run.index(reading.gas)])
+
+
+def read_many(
+    experiment: Experiment,
+    conditions: Mapping[str, Floats],
+    readings: Sequence[Reading],
+    *,
+    until: float | None = None,
+    solver: Solver | None = None,
+    progress: Progress = silent,
+    note: str = "",
+) -> list[Floats]:
+    """Readings of many conditions.
+
+    ``conditions`` maps addresses to values in the unit of the file, each of shape (n,). ``until``
+    [s] ends every run; None leaves it to the experiment. Returns one array a reading, of shape
+    (n, columns); a condition that is impossible or fails gives NaN.
+    """
+    count = len(next(iter(conditions.values())))
+    found = [np.full((count, reading.columns), np.nan) for reading in readings]
+    if until is not None:
+        plan = replace(experiment.plan, until=Sourced(until, "s", dimension="time"), report_at=())
+        experiment = replace(experiment, plan=plan)
+    for i in range(count):
+        progress(i, count, note)
+        try:
+            changed = with_inputs(experiment, {a: float(v[i]) for a, v in conditions.items()})
+            run = integrate(changed, solver)
+        except (InputError, ComputationError):
+            continue
+        for reading, rows in zip(readings, found, strict=True):
+            rows[i] = read_off(run, reading)
+    return found
