@@ -153,7 +153,6 @@ class Law:
     bath_inside : True where `coefficient` itself uses M (falloff); otherwise a step
         written with ``+ M`` multiplies the coefficient by M.
     pair_needed : True where the step must be an encounter of two molecules.
-    reversible : False where detailed balance gives no reverse (walls, light, sources).
     """
 
     word: ClassVar[str] = ""
@@ -161,7 +160,6 @@ class Law:
     counted: ClassVar[str] = ""
     bath_inside: ClassVar[bool] = False
     pair_needed: ClassVar[bool] = False
-    reversible: ClassVar[bool] = True
 
     @staticmethod
     def coefficient(fn: Functions, T: Any, p: Any, M: Any, numbers: Sequence[Any]) -> Any:

@@ -37,7 +37,6 @@ class Photolysis(Law):
     word: ClassVar[str] = "photolysis"
     slots: ClassVar[tuple[str, ...]] = ("J",)
     counted: ClassVar[str] = "J"
-    reversible: ClassVar[bool] = False
 
     @staticmethod
     def coefficient(fn: Functions, T: Any, p: Any, M: Any, numbers: Sequence[Any]) -> Any:

@@ -19,7 +19,6 @@ class Source(Law):
     word: ClassVar[str] = "source"
     slots: ClassVar[tuple[str, ...]] = ("rate",)
     counted: ClassVar[str] = "rate"
-    reversible: ClassVar[bool] = False
 
     @staticmethod
     def coefficient(fn: Functions, T: Any, p: Any, M: Any, numbers: Sequence[Any]) -> Any:

@@ -114,7 +114,6 @@ class Wall(Law):
     diffusion_power: Sourced = Sourced(1.75, default=True)
     area: Sourced | None = None
     word: ClassVar[str] = "wall"
-    reversible: ClassVar[bool] = False
 
     def template(self, context: StepContext) -> Formula:
         """The formula of the form in use."""
