@@ -118,12 +118,19 @@ def moving_together(correlation: Floats, parameters: Sequence[Parameter]) -> tup
     for i in range(len(parameters)):
         for j in range(i):
             r = float(correlation[i, j])
-            if np.isfinite(r) and abs(r) > TOGETHER:
+            if np.isfinite(r) and abs(r) > TOGETHER and not _is_ridge(parameters[i], parameters[j]):
+                both = f"{parameters[j].address} and {parameters[i].address}"
                 found.append(
-                    f"{parameters[j].address} and {parameters[i].address} move together "
-                    f"(correlation {r:+.4f}): a combination of them is known better than either."
+                    f"{both} move together (correlation {_signed(r)}): a combination of them is "
+                    "known better than either."
                 )
     return tuple(found)
+
+
+def _is_ridge(one: Parameter, other: Parameter) -> bool:
+    """True for A and Ea of one step, which always move together: k in the middle is shown."""
+    steps = [parameter.key.rpartition(".") for parameter in (one, other)]
+    return steps[0][0] == steps[1][0] and {steps[0][2], steps[1][2]} == {"A", "Ea"}
 
 
 def open_interval(name: str, low_open: bool, high_open: bool) -> str:
@@ -164,6 +171,10 @@ def of_runs(run: str, test: RunsTest | None) -> str:
         f"make {test.expected:.1f}; probability {test.probability:.2g}): the model leaves "
         "something out, and the intervals are too narrow."
     )
+
+
+def _signed(r: float) -> str:
+    return f"{r:+.4f}".replace("-", "−")
 
 
 def _listed(names: Sequence[str]) -> str:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import json
 from collections.abc import Mapping, Sequence
 from typing import Any
 
@@ -114,13 +115,18 @@ def _number(known: Input, text: Any, key: str, findings: Findings) -> float | No
 
 
 def flattened(conditions: Mapping[str, Any], key: str, findings: Findings) -> dict[str, str]:
-    """Conditions as address to text: dotted keys in quotes and nested tables mean the same."""
+    """Conditions as address to text: dotted keys in quotes and nested tables mean the same.
+
+    A table at a dotted key in quotes (``"vessel.shape" = { … }``) takes the place of the whole one.
+    """
     found: dict[str, str] = {}
 
     def walk(node: Mapping[str, Any], head: str) -> None:
         for name, value in node.items():
             address = f"{head}.{name}" if head else name
-            if isinstance(value, Mapping):
+            if isinstance(value, Mapping) and "." in name:
+                found[address] = _inline(value)
+            elif isinstance(value, Mapping):
                 walk(value, address)
             elif isinstance(value, str):
                 found[address] = value
@@ -133,3 +139,12 @@ def flattened(conditions: Mapping[str, Any], key: str, findings: Findings) -> di
 
     walk(conditions, "")
     return found
+
+
+def _inline(value: Any) -> str:
+    """A value as TOML on one line."""
+    if isinstance(value, Mapping):
+        return "{ " + ", ".join(f"{json.dumps(k)} = {_inline(v)}" for k, v in value.items()) + " }"
+    if isinstance(value, list):
+        return "[" + ", ".join(_inline(entry) for entry in value) + "]"
+    return json.dumps(value, ensure_ascii=False, default=str)

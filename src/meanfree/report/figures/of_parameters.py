@@ -52,16 +52,22 @@ def _profile(ax: Axes, one: Estimate) -> None:
     goal = np.sqrt(profile.threshold)
     root = np.sqrt(np.maximum(profile.excess, 0.0))
     near = root <= 2.5 * goal
-    x = np.array([parameter.outer(float(u)) for u in profile.at[near]])
+    power = np.floor(np.log10(abs(one.value))) if one.value != 0 else 0.0
+    scale = 10.0**power if not -3 < power < 5 else 1.0
+    x = np.array([parameter.outer(float(u)) for u in profile.at[near]]) / scale
     ax.plot(x, root[near], color=style.PALETTE[0], marker="o", markersize=3, linewidth=1.4)
     ax.axhline(goal, color=style.GUIDE, linewidth=0.8, linestyle=(0, (4, 2)))
     for end in (one.low, one.high):
         if (np.isfinite(end) and end > 0) or (np.isfinite(end) and not parameter.logarithmic):
-            ax.axvline(end, ymax=0.9, color=style.GUIDE, linewidth=0.8, linestyle=(0, (1, 2)))
+            ax.axvline(
+                end / scale, ymax=0.9, color=style.GUIDE, linewidth=0.8, linestyle=(0, (1, 2))
+            )
     ax.set_ylim(0.0, 1.6 * goal)
     ax.xaxis.set_major_locator(MaxNLocator(4, steps=[1, 2, 2.5, 5, 10]))
     ax.yaxis.set_major_locator(MaxNLocator(4))
     unit = wording.pretty_unit(parameter.unit)
+    if scale != 1.0:
+        unit = f"{wording.power_of_ten(scale)} {unit}".strip()
     name = short(parameter.address)
     style.label(ax, x=f"{name} ({unit})" if unit else name, y="√ excess")
     ax.xaxis.label.set_fontsize(8.5)

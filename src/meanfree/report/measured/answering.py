@@ -26,7 +26,7 @@ def answers(found: Findings, ranking: Sequence[Candidate]) -> tuple[Answer, ...]
     said: list[Answer] = []
     if found.fit is not None:
         said += _parameters(found.fit)
-        said += _collisions(found.fit)
+        said += [] if found.series else _collisions(found.fit)
         said.append(_quality(found.fit))
     if found.order is not None:
         said.append(Answer("Which order", in_words(found.order)))
@@ -34,7 +34,9 @@ def answers(found: Findings, ranking: Sequence[Candidate]) -> tuple[Answer, ...]
         said.append(Answer("Which description", wording.clean(evidence(ranking))))
     said += _series(found)
     for wall in found.walls:
-        said.append(Answer(f"Walls in {wording.clean(wall.step)}", wall.words))
+        name = wording.clean(wall.step)
+        said.append(Answer(f"{name} in the gas", numbers.of_interval(wall.gas, 1.0, "1/s")))
+        said.append(Answer(f"Walls in {name}", wall.words))
     for pseudo in found.pseudo:
         slope = numbers.of_interval(pseudo.slope, 1e3, "L/mol/s")
         name = f"k of {wording.clean(pseudo.gas)} with {wording.clean(pseudo.partner)}"

@@ -14,6 +14,7 @@ from meanfree.report.figures import fitted, of_parameters, straight, style
 from meanfree.report.figures.fitted import rate_unit
 from meanfree.report.measured import sheets
 from meanfree.report.measured.answering import SHOWN, answers
+from meanfree.report.measured.plots import plots
 from meanfree.report.measured.summarising import collisions, order_of_step, summarise
 from meanfree.report.measured.tables import tables
 from meanfree.report.planning.document import Document, Drawing, Section
@@ -47,7 +48,7 @@ def fit_document(
     title = f"Fit: {wording.clean(experiment.title)}"
     sections = [*_fit_sections(found), *_order(found, ranking)]
     sections += [_series(found, one) for one in found.series]
-    sections += _plots(found)
+    sections += plots(found)
     many = found.fit is not None and len(found.fit.estimates) > SHOWN
     screen = sheets.parameters(found.fit) if found.fit is not None and many else None
     notes = [HOW, CONVENTION] if found.fit is not None else [CONVENTION]
@@ -184,41 +185,3 @@ def _series(found: Findings, one: TemperatureSeries) -> Section:
 
 def _safe(name: str) -> str:
     return "".join(c if c.isascii() and c.isalnum() else "_" for c in name)[:40]
-
-
-def _plots(found: Findings) -> list[Section]:
-    """Walls, pseudo-first-order, relative and initial rates: a line each."""
-    sections = []
-    with style.drawing():
-        for n, wall in enumerate(found.walls):
-            figure = straight.line_figure(wall.line, "S/V (1/m)", "k per event (1/s)")
-            drawing = Drawing(_numbered("walls", n), *style.rendered(figure), "k against S/V.")
-            sections.append(Section("Wall test", (wall.words,), (drawing,)))
-        for n, pseudo in enumerate(found.pseudo):
-            partner = wording.clean(pseudo.partner)
-            label = f"[{partner}] (mol/m³)"
-            figure = straight.line_figure(pseudo.line, label, "k′ (1/s)")
-            caption = f"k′ of {wording.clean(pseudo.gas)} against the concentration of {partner}."
-            drawing = Drawing(_numbered("pseudo", n), *style.rendered(figure), caption)
-            texts = tuple(wording.clean(text) for text in pseudo.words)
-            sections.append(Section("Pseudo-first-order", texts, (drawing,)))
-        for n, (_, relative) in enumerate(found.relative):
-            gas, reference = wording.clean(relative.gas), wording.clean(relative.reference)
-            labels = f"ln(c0/c) of {reference}", f"ln(c0/c) of {gas}"
-            figure = straight.line_figure(relative.line, *labels)
-            caption = f"Loss of {gas} against that of {reference}; the slope is the ratio of k."
-            drawing = Drawing(_numbered("relative", n), *style.rendered(figure), caption)
-            sections.append(Section("Relative rate", relative.words, (drawing,)))
-        for n, initial in enumerate(found.initial):
-            gas = wording.clean(initial.gas)
-            figure = straight.line_figure(
-                initial.line, f"ln([{gas}]/(mol/m³))", "ln(rate/(mol/m³/s))", from_zero=False
-            )
-            caption = f"Initial rate of loss of {gas} against its concentration."
-            drawing = Drawing(_numbered("initial_rates", n), *style.rendered(figure), caption)
-            sections.append(Section("Initial rates", initial.words, (drawing,)))
-    return sections
-
-
-def _numbered(name: str, n: int) -> str:
-    return name if n == 0 else f"{name}_{n + 1}"

@@ -23,7 +23,7 @@ def with_error(value: float, error: float, unit: str = "") -> str:
         return wording.number(value) + tail
     digits = significant(value, error)
     power = math.floor(math.log10(max(abs(value), error)))
-    if -4 < power < 6:
+    if -4 < power < 6 and math.floor(math.log10(error)) > -4:
         return f"{wording.number(value, digits)} ± {wording.number(error, 2)}{tail}"
     scale = 10.0**power
     mantissa = wording.number(value / scale, digits)
