@@ -9,8 +9,8 @@ import numpy as np
 from meanfree.equations.system import Floats
 from meanfree.measured.least_squares import Solution
 
-BLIND: Final[float] = 1e-7
-"""Singular values below this share of the largest say nothing: differences are good to 1e-9."""
+BLIND: Final[float] = 1e-6
+"""Singular values below this share of the largest say nothing: differences are good to 1e-7."""
 
 
 def influence(solution: Solution) -> tuple[Floats, Floats]:
@@ -31,6 +31,11 @@ def influence(solution: Solution) -> tuple[Floats, Floats]:
     return r * first, first + 2 * z * second
 
 
+def without_voice(norms: Floats) -> np.ndarray:
+    """Which parameters the residuals do not depend on, from the norms of their scaled columns."""
+    return np.asarray(norms <= BLIND * float(norms.max(initial=0.0)))
+
+
 def covariance(solution: Solution) -> Floats:
     """Covariance of the parameters for residuals of unit deviation [shape (n, n)].
 
@@ -45,12 +50,14 @@ def covariance(solution: Solution) -> Floats:
         return cov
     J = solution.jacobian[:, free]
     norm = np.linalg.norm(J, axis=0)
-    safe = np.where(norm > 0, norm, 1.0)
+    silent = without_voice(norm * solution.size[free])
+    safe = np.where(silent | (norm == 0), 1.0, norm)
+    J = np.where(silent, 0.0, J)
     _, s, vt = np.linalg.svd(J / safe, full_matrices=False)
     blind = s <= BLIND * s[0] if len(s) and s[0] > 0 else np.ones(len(s), bool)
     weights = np.where(blind, 0.0, 1.0 / np.where(blind, 1.0, s) ** 2)
     inner = (vt.T * weights) @ vt
-    loose = np.any(np.abs(vt[blind]) > 1e-4, axis=0) | (norm == 0)
+    loose = np.any(np.abs(vt[blind]) > 1e-4, axis=0) | silent
     inner[loose, :], inner[:, loose] = np.nan, np.nan
     inner[loose, loose] = np.inf
     part = inner / np.outer(safe, safe)

@@ -18,8 +18,15 @@ from meanfree.measured.judging import runs_test
 from meanfree.measured.least_squares import Loss, Scales, Solution, solve
 from meanfree.measured.misfit import Misfit
 from meanfree.measured.parameters import Parameter, parameters_of, scales_of
+from meanfree.measured.prediction import is_exact
 from meanfree.measured.profiles import BetterMinimum, Profile, profile
 from meanfree.measured.runs import MeasuredRun
+
+STEP_OF_INTEGRATION: Final[float] = 1e-3
+"""Step of differences where predictions are integrated to 1e-10: 1e-7 by either error."""
+
+MOST_FACTOR: Final[float] = 23.0
+"""Logarithm of the factor (1e10) by which a positive number may differ within its interval."""
 
 WIDTHS: Final[dict[str, float]] = {"linear": 1.0, "soft_l1": 1.0, "huber": 1.345, "cauchy": 2.385}
 """Residuals, in deviations, beyond which a robust loss takes effect: 95 % efficiency for Gaussian
@@ -41,6 +48,8 @@ def fit(request: FitRequest) -> Fit:
     misfit = Misfit(request.runs, parameters)
     _enough(misfit)
     scales = scales_of(parameters, T)
+    if not all(is_exact(run.experiment) for run in request.runs):
+        scales = replace(scales, step=STEP_OF_INTEGRATION)
     misfit, solution = _minimised(misfit, scales, request)
     for _ in range(3):
         cov = covariance(solution)
@@ -48,7 +57,7 @@ def fit(request: FitRequest) -> Fit:
             profiles = _profiles(request, misfit, solution, cov, scales)
             break
         except BetterMinimum as news:
-            better = Scales(news.values, scales.low, scales.high, scales.size, scales.basis)
+            better = replace(scales, start=news.values)
             misfit, solution = _minimised(misfit, better, request)
     else:
         raise ComputationError("The fit has no minimum that stays one: every profile goes lower.")
@@ -94,7 +103,7 @@ def _minimised(misfit: Misfit, scales: Scales, request: FitRequest) -> tuple[Mis
             # One common deviation scales everything alike: the minimum stays where it is.
             ratio = before[misfit.groups[0]] / after[misfit.groups[0]]
             return misfit, _rescaled(solution, ratio)
-        again = Scales(solution.values, scales.low, scales.high, scales.size, scales.basis)
+        again = replace(scales, start=solution.values)
         solution = _checked(solve(misfit, again, loss=request.loss, width=width))
         if all(abs(after[g] / before[g] - 1) < 1e-6 for g in after if g in misfit.groups):
             return misfit, solution
@@ -167,7 +176,10 @@ def _profiles(
     n = misfit.n_readings + len(misfit.priors) - len(misfit.parameters)
     threshold = quantile(n if any(misfit.groups) else None) ** 2
     return [
-        profile(misfit, solution, cov, i, threshold, scales) for i in range(len(misfit.parameters))
+        profile(
+            misfit, solution, cov, i, threshold, scales, MOST_FACTOR if p.logarithmic else math.inf
+        )
+        for i, p in enumerate(misfit.parameters)
     ]
 
 

@@ -13,7 +13,7 @@ from typing import Final
 import numpy as np
 
 from meanfree.equations.system import Floats
-from meanfree.measured.covariances import BLIND
+from meanfree.measured.covariances import BLIND, without_voice
 from meanfree.measured.least_squares import Solution
 from meanfree.measured.parameters import Parameter
 
@@ -76,12 +76,9 @@ def undetermined(solution: Solution, parameters: Sequence[Parameter]) -> tuple[s
     """What the residuals do not depend on at all, in words; empty where there is no such thing."""
     free = [i for i, is_free in enumerate(solution.free) if is_free]
     names = [parameters[i].address for i in free]
-    J = solution.jacobian[:, free] * _sizes(solution, parameters)[free]
+    J = solution.jacobian[:, free] * solution.size[free]
     norm = np.linalg.norm(J, axis=0)
-    largest = float(norm.max(initial=0.0))
-    if largest == 0:
-        return tuple(_blind(name) for name in names)
-    silent = norm <= BLIND * largest
+    silent = without_voice(norm)
     found = [_blind(names[i]) for i in np.flatnonzero(silent)]
     heard = np.flatnonzero(~silent)
     if len(heard):
@@ -93,16 +90,6 @@ def undetermined(solution: Solution, parameters: Sequence[Parameter]) -> tuple[s
                 "only a combination of them. Hold one at a known value, or give it a prior."
             )
     return tuple(found)
-
-
-def _sizes(solution: Solution, parameters: Sequence[Parameter]) -> Floats:
-    values = np.abs(solution.values)
-    return np.array(
-        [
-            1.0 if p.logarithmic else max(float(v), 1e-300)
-            for p, v in zip(parameters, values, strict=True)
-        ]
-    )
 
 
 def _blind(name: str) -> str:

@@ -31,7 +31,8 @@ class Scales:
     """Where each parameter starts, its bounds and its size; all of shape (n,).
 
     ``basis`` [shape (n, n)] maps inner coordinates to the parameters (over their sizes), so that
-    parameters that move together can be taken apart; None: each stands for itself.
+    parameters that move together can be taken apart; None: each stands for itself. ``step`` is that
+    of differences over the size. Where sizes ``follow`` the values, the second search has new ones.
     """
 
     start: Floats
@@ -39,6 +40,8 @@ class Scales:
     high: Floats
     size: Floats
     basis: Floats | None = None
+    step: float = STEP
+    follow: bool = False
 
     @classmethod
     def of(
@@ -57,6 +60,7 @@ class Scales:
             np.full(len(x), np.inf) if high is None else np.asarray(high, float),
             np.where(x == 0, 1.0, np.abs(x)) if size is None else np.asarray(size, float),
             basis,
+            follow=size is None,
         )
 
     @property
@@ -70,9 +74,10 @@ class Solution:
     """A minimum.
 
     ``values`` [shape (n,)], ``residuals`` [shape (m,)] and their ``jacobian`` by the parameters
-    [shape (m, n)], all before any robust loss; ``cost`` is half the sum of the losses.
-    ``at_bound`` marks parameters that rest on a bound. ``converged`` is False where the method
-    gave up, with its reason in ``message``. ``minima`` are the costs the other starts ended at.
+    [shape (m, n)], all before any robust loss; ``cost`` is half the sum of the losses. ``size``
+    [shape (n,)] is a change of each parameter that counts as one; ``at_bound`` marks those that
+    rest on a bound. ``converged`` is False where the method gave up, with its reason in
+    ``message``. ``minima`` are the costs the other starts ended at.
     """
 
     values: Floats
@@ -83,6 +88,7 @@ class Solution:
     converged: bool
     message: str
     evaluations: int
+    size: Floats
     loss: Loss = "linear"
     width: float = 1.0
     minima: tuple[float, ...] = ()
@@ -98,11 +104,12 @@ class Solution:
         return ~self.at_bound
 
 
-def differences(f: Residuals, x: Floats, size: Floats, low: Floats, high: Floats) -> Floats:
+def differences(f: Residuals, x: Floats, scales: Scales) -> Floats:
     """Jacobian by central differences, one-sided (second order) at a bound [shape (m, n)]."""
     columns = []
+    low, high = scales.low, scales.high
     for i in range(len(x)):
-        h = STEP * max(size[i], abs(x[i]))
+        h = scales.step * max(scales.size[i], abs(x[i]) if scales.follow else 0.0)
         up, down = x.copy(), x.copy()
         up[i], down[i] = x[i] + h, x[i] - h
         if up[i] > high[i]:
@@ -190,7 +197,7 @@ class _Inner:
     def slope(self, x: Floats) -> Floats:
         if self.given is not None:
             return np.asarray(self.given(x), float)
-        return differences(self.at, x, self.scales.size, self.scales.low, self.scales.high)
+        return differences(self.at, x, self.scales)
 
     def jacobian(self, z: Floats) -> Floats:
         return np.asarray(self.slope(self.outer(z)) @ self.matrix)
@@ -204,8 +211,10 @@ def _from(
 ) -> Solution:
     """One start, and once more from where it led: a far start makes poor sizes for differences."""
     first = _once(f, scales, jacobian, how)
-    size = np.where(first.values == 0, scales.size, np.abs(first.values))
-    closer = replace(scales, start=first.values, size=np.minimum(scales.size, size))
+    size = scales.size
+    if scales.follow:
+        size = np.where(first.values == 0, size, np.minimum(size, np.abs(first.values)))
+    closer = replace(scales, start=first.values, size=size)
     second = _once(f, closer, jacobian, how)
     better = second.converged and second.cost <= first.cost * (1 + 1e-12)
     kept = second if better else first
@@ -253,6 +262,7 @@ def _once(
         converged=status > 0 and bool(np.all(np.abs(residuals) < 1e149)),
         message=message,
         evaluations=inner.evaluations,
+        size=scales.size,
         loss=how.loss,
         width=how.width,
     )

@@ -111,7 +111,8 @@ class Misfit:
         found = []
         for place, run in enumerate(self.runs):
             try:
-                shown = curve(run, place, self.parameters, values)
+                with np.errstate(all="ignore"):
+                    shown = curve(run, place, self.parameters, values)
             except (ComputationError, InputError, ArithmeticError, ValueError):
                 found.append(np.full(len(run.readings), HOPELESS))
                 continue

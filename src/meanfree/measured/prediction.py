@@ -72,6 +72,12 @@ def predict(experiment: Experiment, times: Floats) -> Prediction:
     )
 
 
+def is_exact(experiment: Experiment) -> bool:
+    """True where `predict` has a formula, good to rounding; else it is good to 1e-9 or so."""
+    system, start = build_system(experiment), np.zeros(1)
+    return (_by_closed_form(system, start) or _of_order_zero(system, start)) is not None
+
+
 def _by_closed_form(system: System, times: Floats) -> Prediction | None:
     """One reaction with an integrated law: all gases follow from the one it gives."""
     one_way = system.n_steps == 1 or (system.n_steps == 2 and len(system.reverses.step) == 1)

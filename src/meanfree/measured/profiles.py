@@ -53,16 +53,17 @@ def profile(
     place: int,
     threshold: float,
     scales: Scales,
+    farthest: float = math.inf,
 ) -> Profile:
     """The profile of the parameter at ``place``.
 
-    ``covariance`` is that of the parameters for residuals of unit deviation; ``threshold`` the
+    Beyond ``farthest`` from the estimate an end counts as open. ``covariance`` is that of the parameters for residuals of unit deviation; ``threshold`` the
     excess of the sum of squares at which the interval ends (the square of Student's t).
 
     Raises BetterMinimum where it meets a sum of squares below that of the solution.
     """
     walk = _Walk(residuals, solution, covariance, place, scales)
-    ends = [_end(walk, sign, threshold) for sign in (-1.0, 1.0)]
+    ends = [_end(walk, sign, threshold, farthest) for sign in (-1.0, 1.0)]
     points = sorted(walk.points.items())
     return Profile(
         ends[0],
@@ -109,7 +110,8 @@ class _Walk:
             return self.residuals(self._joined(u, rest))
 
         if len(guess):
-            sub = Scales(guess, low, high, self.scales.size[self.others])
+            size, step = self.scales.size[self.others], self.scales.step
+            sub = Scales(guess, low, high, size, step=step, follow=self.scales.follow)
             found = solve(of_others, sub, polish=False, most=60, tolerance=1e-10)
             rest, squares = found.values, found.sum_of_squares
         else:
@@ -128,7 +130,7 @@ class _Walk:
         return values
 
 
-def _end(walk: _Walk, sign: float, threshold: float) -> float:
+def _end(walk: _Walk, sign: float, threshold: float, farthest: float) -> float:
     """Where the excess reaches the threshold on one side."""
     bound = walk.scales.low[walk.place] if sign < 0 else walk.scales.high[walk.place]
     goal = math.sqrt(threshold)
@@ -139,8 +141,8 @@ def _end(walk: _Walk, sign: float, threshold: float) -> float:
         return math.sqrt(max(walk.excess(u), 0.0)) - goal
 
     inner, below = walk.origin, -goal
-    distance = goal * walk.step
-    while distance <= FAR * goal * walk.step:
+    distance = min(goal * walk.step, 0.5 * farthest)
+    while distance <= min(FAR * goal * walk.step, farthest):
         outer = walk.origin + sign * distance
         if sign * (outer - bound) >= 0:
             outer = float(bound)

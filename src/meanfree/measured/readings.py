@@ -211,9 +211,7 @@ def _bad_deviations(sd: Column | None) -> list[Problem]:
 def _in_si(request: FileRequest, columns: dict[str, Column]) -> Readings:
     signal, dimension = request.signal, dimension_of(request.signal)
     unit = request.signal_column.unit
-    values = _converted(
-        columns["signal"].values, "" if signal.is_rate_constant else unit, dimension
-    )
+    values = _converted(columns["signal"].values, unit, dimension) / signal.per
     if signal.is_rate_constant:
         axis = _converted(columns["axis"].values, request.axis.unit, "temperature")
     else:
