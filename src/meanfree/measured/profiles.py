@@ -57,8 +57,9 @@ def profile(
 ) -> Profile:
     """The profile of the parameter at ``place``.
 
-    Beyond ``farthest`` from the estimate an end counts as open. ``covariance`` is that of the parameters for residuals of unit deviation; ``threshold`` the
-    excess of the sum of squares at which the interval ends (the square of Student's t).
+    ``covariance`` is that of the parameters for residuals of unit deviation; ``threshold`` the
+    excess of the sum of squares at which the interval ends (the square of Student's t). Beyond
+    ``farthest`` from the estimate an end counts as open.
 
     Raises BetterMinimum where it meets a sum of squares below that of the solution.
     """
@@ -148,7 +149,7 @@ def _end(walk: _Walk, sign: float, threshold: float, farthest: float) -> float:
             outer = float(bound)
         above = reach(outer)
         if above >= 0:
-            return _between(reach, (inner, below), (outer, above), 1e-7 * walk.step)
+            return _between(reach, (inner, below), (outer, above), walk.step)
         if outer == bound:
             return float(bound)
         inner, below = outer, above
@@ -159,23 +160,19 @@ def _end(walk: _Walk, sign: float, threshold: float, farthest: float) -> float:
 
 
 def _between(
-    f: Callable[[float], float],
-    inner: tuple[float, float],
-    outer: tuple[float, float],
-    width: float,
+    f: Callable[[float], float], inner: tuple[float, float], outer: tuple[float, float], step: float
 ) -> float:
-    """A root between two points of opposite sign: the Illinois form of false position."""
+    """The root between two points of opposite sign, to 1e-7 of a step.
+
+    Near a parabola the root of the excess is nearly straight: one secant step is often enough.
+    """
+    from scipy.optimize import brentq
+
     (a, fa), (b, fb) = inner, outer
-    for _ in range(40):
-        if abs(fb) < 1e-7 or abs(b - a) < width:
-            return b
-        c = b - fb * (b - a) / (fb - fa)
-        fc = f(c)
-        if abs(fc) < 1e-7:
-            return c
-        if (fc < 0) != (fb < 0):
-            a, fa = b, fb
-        else:
-            fa *= 0.5
-        b, fb = c, fc
-    return b
+    width = 1e-7 * min(step, abs(b - a))
+    c = a - fa * (b - a) / (fb - fa)
+    fc = f(c)
+    if abs(fc) < 1e-7:
+        return c
+    low, high = (c, b) if fc < 0 else (a, c)
+    return float(brentq(f, low, high, xtol=width, rtol=1e-12))
