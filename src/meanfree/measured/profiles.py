@@ -101,6 +101,8 @@ class _Walk:
 
     def excess(self, u: float) -> float:
         """Excess at u; the others start where the last point on this side suggests."""
+        if u in self.points:
+            return self.points[u]
         side = 1.0 if u >= self.origin else -1.0
         before, others = self.last.get(side, (self.origin, self.solution.values[self.others]))
         guess = others + self.along * (u - before)
