@@ -7,6 +7,7 @@ import sys
 from pathlib import Path
 
 import pytest
+
 from meanfree.kernel import cache
 
 SOURCE = '"""A module."""\n\nANSWER = 42\n'
@@ -21,7 +22,9 @@ def forget(monkeypatch: pytest.MonkeyPatch) -> None:
             del sys.modules[name]
 
 
-def test_a_module_is_written_once_and_is_private(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+def test_a_module_is_written_once_and_is_private(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
     folder = tmp_path / "deep" / "kernels"
     monkeypatch.setenv("MEANFREE_CACHE", str(folder))
     module = cache.module_of(SOURCE)
@@ -50,7 +53,9 @@ def test_a_damaged_file_is_written_anew(tmp_path: Path, monkeypatch: pytest.Monk
     assert file.read_text() == SOURCE
 
 
-def test_an_unusable_folder_is_said_and_replaced(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+def test_an_unusable_folder_is_said_and_replaced(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
     """A file where the folder should be: not even root can make that a folder."""
     blocked = tmp_path / "kernels"
     blocked.write_text("not a folder")

@@ -5,6 +5,7 @@ from __future__ import annotations
 import kernel_problems as problems
 import numpy as np
 import pytest
+
 from meanfree.equations.build import build_system
 from meanfree.kernel.engine import Kernel, Task
 from meanfree.kernel.parameters import Variation
@@ -83,7 +84,9 @@ def test_an_explosion_meets_bad_pivots_and_gets_through() -> None:
 
 
 def test_events_of_a_first_order_decay() -> None:
-    system = build_system(problems.experiment([problems.step("1", {"A": 1}, {"B": 1}, 0.1)], {"A": 2.0}))
+    system = build_system(
+        problems.experiment([problems.step("1", {"A": 1}, {"B": 1}, 0.1)], {"A": 2.0})
+    )
     levels = 2.0 * np.array([[0.5, 0.25, 0.125, 0.1, 0.01]])
     watched = (
         Functional(((0, 1.0),), levels=levels),
@@ -104,7 +107,9 @@ def test_events_of_a_first_order_decay() -> None:
 
 
 def test_levels_that_lie_behind_or_are_met_at_once() -> None:
-    system = build_system(problems.experiment([problems.step("1", {"A": 1}, {"B": 1}, 0.1)], {"A": 2.0}))
+    system = build_system(
+        problems.experiment([problems.step("1", {"A": 1}, {"B": 1}, 0.1)], {"A": 2.0})
+    )
     watched = (Functional(((0, 1.0),), levels=np.array([[3.0, 2.0, 1.0]])),)
     kept = Kernel(system).run(Variation(system, 1), Task(END, rtol=1e-9, functionals=watched))
     assert np.isnan(kept.events[0, 0, 0])
@@ -129,7 +134,10 @@ def test_maximum_of_an_intermediate(ratio: float) -> None:
 
 def test_a_crossing_and_its_return_within_one_step_are_seen() -> None:
     """B passes a level twice; the first time counts, however long the steps are."""
-    steps = [problems.step("1", {"A": 1}, {"B": 1}, 1.0), problems.step("2", {"B": 1}, {"C": 1}, 1.1)]
+    steps = [
+        problems.step("1", {"A": 1}, {"B": 1}, 1.0),
+        problems.step("2", {"B": 1}, {"C": 1}, 1.1),
+    ]
     system = build_system(problems.experiment(steps, {"A": 1.0}))
     top = 1.1 ** (1.1 / (1 - 1.1))
     watched = (Functional(((1, 1.0),), levels=np.array([[0.98 * top]]), falls=False),)

@@ -4,6 +4,9 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
+from random_experiments import FRAMES, random_experiment, random_state
+from tape_values import values_of
+
 from meanfree.equations.arrays import ArrayEquations
 from meanfree.equations.build import build_system
 from meanfree.equations.system import Segment
@@ -11,8 +14,6 @@ from meanfree.kernel.balances import Balances
 from meanfree.kernel.parameters import Variation, parameter
 from meanfree.kernel.slots import Layout
 from meanfree.kernel.tape import Tape
-from random_experiments import FRAMES, random_experiment, random_state
-from tape_values import values_of
 
 INDICES = range(2 * len(FRAMES))
 

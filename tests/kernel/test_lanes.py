@@ -5,6 +5,7 @@ from __future__ import annotations
 import kernel_problems as problems
 import numpy as np
 import pytest
+
 from meanfree.equations.build import build_system
 from meanfree.kernel.engine import Kernel, Task
 from meanfree.kernel.parameters import Variation

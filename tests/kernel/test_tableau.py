@@ -60,7 +60,8 @@ def stage_vector(tree: tuple, alpha: np.ndarray, beta: np.ndarray) -> np.ndarray
 
 
 def residuals(method: Tableau, weights: np.ndarray, order: int, theta: float = 1.0) -> list[float]:
-    """weights^T (I/gamma - C)^-1 phi(tree) - theta^|tree|/density(tree) for trees up to an order."""
+    """weights^T (I/gamma - C)^-1 phi(tree) - theta^|tree|/density(tree) for trees up to an
+    order."""
     alpha, Gamma, _ = method.classical()
     beta = alpha + Gamma
     b = weights @ Gamma

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import numpy as np
+
 from meanfree.equations.system import System
 from meanfree.experiment.experiment import Experiment
 from meanfree.experiment.fill import Fill, Portion
@@ -33,7 +34,9 @@ def experiment(
     )
 
 
-def step(name: str, left: dict[str, float], right: dict[str, float], k: float, **more: object) -> Step:
+def step(
+    name: str, left: dict[str, float], right: dict[str, float], k: float, **more: object
+) -> Step:
     """A step with a fixed rate constant."""
     return Step(name, tuple(left.items()), tuple(right.items()), Fixed(S(k)), **more)  # type: ignore[arg-type]
 
@@ -118,8 +121,9 @@ def reference(system: System, end: float, rtol: float = 1e-12) -> np.ndarray:
 
 def reference_solution(system: System, end: float, rtol: float = 1e-12, dense: bool = False):  # type: ignore[no-untyped-def]
     """scipy's Radau at its tightest, restarted nowhere: for Systems without breaks."""
-    from meanfree.equations.compiled import CompiledEquations
     from scipy.integrate import solve_ivp
+
+    from meanfree.equations.compiled import CompiledEquations
 
     equations, segment = CompiledEquations(system), system.segments[0]
     with np.errstate(all="ignore"):

@@ -330,8 +330,6 @@ class _Point:
             extra[v_row, v_row] = t.add(extra.get((v_row, v_row), zero), rate)
             growth = t.mul(t.input(layout.parameter("R_over_p")), self._change(self.flows))
             growth = t.nmadd(share, rate, growth)
-            extra[v_row, layout.T_index] = t.add(
-                extra.get((v_row, layout.T_index), zero), growth
-            )
+            extra[v_row, layout.T_index] = t.add(extra.get((v_row, layout.T_index), zero), growth)
         for key, value in extra.items():
             matrix[key] = t.add(matrix.get(key, zero), value)

@@ -1,7 +1,8 @@
 """Generated source in a private folder of the user, so that machine code is made once.
 
-The folder is `MEANFREE_CACHE`, else `meanfree/kernels` in the user's cache folder. A file's name is the
-hash of its text and of the versions that compile it; what does not match its name is written anew.
+The folder is `MEANFREE_CACHE`, else `meanfree/kernels` in the user's cache folder. A file's name
+is the hash of its text and of the versions that compile it; what does not match its name is
+written anew.
 """
 
 from __future__ import annotations

@@ -39,8 +39,8 @@ def judge(
 ) -> None:
     """The new state, whether it is accepted, the next step, and whether the loop must look.
 
-    The error is the root mean square of the last stage over the tolerances. May be repeated: nothing
-    that is read here is written.
+    The error is the root mean square of the last stage over the tolerances. May be repeated:
+    nothing that is read here is written.
     """
 
     def scalar(name: str) -> int:
@@ -57,9 +57,7 @@ def judge(
     one, never = t.const(1.0), t.const(-1.0)
     error = t.mul(total, t.const(1.0 / layout.size))
     exponent = t.const(-0.5 / (error_order + 1))
-    factor = t.mul(
-        t.const(SAFETY), t.unary(Op.EXP, t.mul(exponent, t.unary(Op.LOG, error)))
-    )
+    factor = t.mul(t.const(SAFETY), t.unary(Op.EXP, t.mul(exponent, t.unary(Op.LOG, error))))
     factor = t.min(t.max(factor, t.const(SHRINK)), t.const(GROW))
     yes = t.sub(one, error)
     h, now = scalar("h"), scalar("t")

@@ -16,7 +16,8 @@ def dense_value(k: Floats, theta: float) -> float:
     total = 0.0
     for d in range(len(k) - 1, 1, -1):
         total = k[d] + theta * total
-    return (1 - theta) * k[0] + theta * (k[1] + (1 - theta) * total)
+    value: float = (1 - theta) * k[0] + theta * (k[1] + (1 - theta) * total)
+    return value
 
 
 @compiled
@@ -26,7 +27,8 @@ def dense_slope(k: Floats, theta: float) -> float:
     for d in range(len(k) - 1, 1, -1):
         slope = total + theta * slope
         total = k[d] + theta * total
-    return k[1] - k[0] + (1 - 2 * theta) * total + theta * (1 - theta) * slope
+    value: float = k[1] - k[0] + (1 - 2 * theta) * total + theta * (1 - theta) * slope
+    return value
 
 
 @compiled

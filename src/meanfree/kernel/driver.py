@@ -223,7 +223,7 @@ def _close(p: Places, W: Floats, I: Longs, ask: Request, out: Kept, ending: int,
     if I[AGAIN, l] == 1 and ending == HORIZON:
         # The second run ended where the first had settled; the way was done before.
         ending = SETTLED
-    if (ending == SETTLED or ending == CONVERTED) and W[CROSSED, l] >= 0:
+    if ending in (SETTLED, CONVERTED) and W[CROSSED, l] >= 0:
         out.ends[c, p.size] = W[CROSSED, l]
     if p.automatic and ending != HORIZON:
         lane.strike_beyond(out.events, out.values, ask.grid, c, out.ends[c, p.size])
@@ -236,9 +236,7 @@ def _close(p: Places, W: Floats, I: Longs, ask: Request, out: Kept, ending: int,
 
 
 @compiled
-def _pass_break(
-    p: Places, W: Floats, I: Longs, job: Conditions, ask: Request, l: int
-) -> None:
+def _pass_break(p: Places, W: Floats, I: Longs, job: Conditions, ask: Request, l: int) -> None:
     """A break, and what it means for levels that shrink with the contents."""
     lane.pass_break(p, W, I, job.breaks, job.changed, l)
     for f in range(p.n_functionals):

@@ -115,8 +115,8 @@ class TapeFunctions:
 
     def log(self, x: Any, /) -> Dual:
         """Natural logarithm."""
-        x, t = self._lift(x), self.tape
-        return x.chain(t.unary(Op.LOG, x.value), t.div(t.const(1.0), x.value))
+        y, t = self._lift(x), self.tape
+        return y.chain(t.unary(Op.LOG, y.value), t.div(t.const(1.0), y.value))
 
     def log10(self, x: Any, /) -> Dual:
         """Decimal logarithm."""
@@ -124,9 +124,9 @@ class TapeFunctions:
 
     def sqrt(self, x: Any, /) -> Dual:
         """Square root."""
-        x, t = self._lift(x), self.tape
-        root = t.unary(Op.SQRT, x.value)
-        return x.chain(root, t.div(t.const(0.5), root))
+        y, t = self._lift(x), self.tape
+        root = t.unary(Op.SQRT, y.value)
+        return y.chain(root, t.div(t.const(0.5), root))
 
     def below(self, x: Any, limit: Any, then: Any, otherwise: Any, /) -> Dual:
         """``then`` where x < limit, else ``otherwise``."""

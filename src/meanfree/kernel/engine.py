@@ -26,6 +26,7 @@ from meanfree.kernel.records import (
     Places,
     kept_for,
 )
+from meanfree.kernel.slots import Name
 from meanfree.kernel.tableau import RODAS5P, Tableau
 from meanfree.kernel.watching import (
     Functional,
@@ -60,10 +61,10 @@ INTERPRET = 2.5e-10
 class Task:
     """What to integrate and what to keep.
 
-    ``end`` [s, shape (count,) or (1,)], None where runs end by themselves; then ``watched`` is the gas
-    whose conversion counts (-1: none). ``rtol`` and ``atol`` (over the total initial concentration) as in
-    a single run. ``grid`` [s, shape (rows, n_times)]. Steps whose elimination meets a multiplier above
-    ``worst_multiplier`` are made again with row exchanges.
+    ``end`` [s, shape (count,) or (1,)], None where runs end by themselves; then ``watched`` is the
+    gas whose conversion counts (-1: none). ``rtol`` and ``atol`` (over the total initial
+    concentration) as in a single run. ``grid`` [s, shape (rows, n_times)]. Steps whose elimination
+    meets a multiplier above ``worst_multiplier`` are made again with row exchanges.
     """
 
     end: Floats | None
@@ -79,15 +80,16 @@ class Task:
 class Kernel:
     """The compiled integrator of one System.
 
-    ``compiled`` True or False settles how phases are carried out; None lets the expected cost decide.
+    ``varied`` names numbers that conditions change. ``compiled`` True or False settles how phases
+    are carried out; None lets the expected cost decide.
     """
 
     def __init__(
         self, system: System, tableau: Tableau = RODAS5P, *, compiled: bool | None = None,
-        lanes: int | None = None, say: Say = silent,
+        lanes: int | None = None, varied: frozenset[Name] = frozenset(), say: Say = silent,
     ) -> None:  # fmt: skip
         self.system, self.tableau, self.say = system, tableau, say
-        self.program: Program = build_program(system, tableau)
+        self.program: Program = build_program(system, tableau, varied)
         self._compiled, self._lanes = compiled, lanes
         self._addresses: dict[int, list[int]] = {}
         self._codes: dict[Any, tuple[Lowering, list[Longs]]] = {}
@@ -127,6 +129,14 @@ class Kernel:
             kept,
         )
         return kept
+
+    def settle(self, total: int, chunk: int) -> None:
+        """Choose for ``total`` conditions in all, of which ``chunk`` come at a time."""
+        self._compiled, self._lanes = self.choice(total)
+        if chunk <= 8:
+            self._lanes = 8
+        if self._compiled:
+            self._compiled_addresses(self._lanes)
 
     def _code(self, task: Task, first: int) -> tuple[Lowering, list[Longs]]:
         """What the interpreter carries out, made once for each set of functionals."""

@@ -41,7 +41,8 @@ CODES = {name: op for op, name in NAMES.items()}
 
 def text_of(phase: Phase) -> str:
     """A phase as text: one operation a line, then where results go."""
-    lines, needed, names = [], phase.needed(), {}
+    names: dict[int, int] = {}
+    lines, needed = [], phase.needed()
     for position, (op, a, b, c) in enumerate(phase.tape.entries):
         if not needed[position]:
             continue

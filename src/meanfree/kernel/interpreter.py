@@ -57,9 +57,11 @@ class Lowering:
                 place[position] = entry[1]
             else:
                 taken = [place[x] for x in operands(entry)]
-                for x in set(operands(entry)):
-                    if last[x] == position and place[x] in self._owned:
-                        free.append(place[x])
+                free.extend(
+                    place[x]
+                    for x in set(operands(entry))
+                    if last[x] == position and place[x] in self._owned
+                )
                 place[position] = early.get(position, -1)
                 if place[position] < 0:
                     place[position] = free.pop() if free else self._scratch_slot()

@@ -65,9 +65,7 @@ def set_stop(p: Places, W: Floats, I: Longs, breaks: Floats, c: int, l: int) -> 
 
 
 @compiled
-def pass_break(
-    p: Places, W: Floats, I: Longs, breaks: Floats, changed: Longs, l: int
-) -> None:
+def pass_break(p: Places, W: Floats, I: Longs, breaks: Floats, changed: Longs, l: int) -> None:
     """Samples are drawn, parameters change, and the lane starts anew from there."""
     c = I[WHO, l]
     here = breaks[min(c, len(breaks) - 1), I[SEGMENT, l]]

@@ -1,8 +1,8 @@
 """The block of numbers that lanes take in: one row a condition, one column a parameter.
 
 A `Variation` says in what conditions differ from a System; whatever it does not name is the
-System's. Rate constants that stay what they are during a run are evaluated here, for all conditions at
-once.
+System's. Rate constants that stay what they are during a run are evaluated here, for all
+conditions at once.
 """
 
 from __future__ import annotations
@@ -24,9 +24,10 @@ from meanfree.rates.law import NUMBERS
 class Variation:
     """``count`` conditions of a System.
 
-    ``values`` maps names to arrays of shape (count,): ("number", block, slot, position), ("lnK_at",
-    row), ("at", row), ("enthalpy", row), ("x", gas), ("T",) the temperature at time zero, ("p",) the
-    held pressure, ("dead",), ("wall",), ("exchange",), ("surroundings",), ("V",) the volume at time zero.
+    ``values`` maps names to arrays of shape (count,): ("number", block, slot, position),
+    ("lnK_at", row), ("at", row), ("enthalpy", row), ("x", gas), ("T",) the temperature at time
+    zero, ("p",) the held pressure, ("dead",), ("wall",), ("exchange",), ("surroundings",), ("V",)
+    the volume at time zero.
     """
 
     system: System
@@ -68,7 +69,9 @@ class Variation:
     def part(self, start: int, stop: int) -> Variation:
         """Conditions ``start`` to ``stop``."""
         rows = slice(start, stop)
-        kept = {name: value if len(value) == 1 else value[rows] for name, value in self.values.items()}
+        kept = {
+            name: value if len(value) == 1 else value[rows] for name, value in self.values.items()
+        }
         return Variation(self.system, min(stop, self.count) - start, kept)
 
     # Rate constants that last

@@ -1,8 +1,9 @@
 """The phases of one step of a Rosenbrock method for one System.
 
 ``factor`` settles the step size, evaluates the Jacobian, factorises and makes the first stage; the
-other stages follow; the last one also judges the step. ``accept`` takes a new state over, ``start``
-finds the time scale for a first step; ``assemble``, ``evaluate`` and ``judge`` serve the path with pivoting.
+other stages follow; the last one also judges the step. ``accept`` takes a new state over,
+``start`` finds the time scale for a first step; ``assemble``, ``evaluate`` and ``judge`` serve the
+path with pivoting.
 """
 
 from __future__ import annotations
@@ -13,7 +14,7 @@ from meanfree.equations.system import System
 from meanfree.kernel import control
 from meanfree.kernel.balances import Balances, Matrix
 from meanfree.kernel.elimination import Plan, plan
-from meanfree.kernel.slots import Layout
+from meanfree.kernel.slots import Layout, Name
 from meanfree.kernel.tableau import Tableau
 from meanfree.kernel.tape import Op, Phase, Tape
 
@@ -46,11 +47,13 @@ class Program:
         return [self.accept, self.start, self.assemble, self.evaluate, self.judge, *self.step]
 
 
-def build_program(system: System, tableau: Tableau) -> Program:
+def build_program(
+    system: System, tableau: Tableau, varied: frozenset[Name] = frozenset()
+) -> Program:
     """The phases of a System; baths border the matrix where that needs fewer products."""
     candidates = []
     for border in (False, True):
-        writer = _Writer(system, tableau, border)
+        writer = _Writer(system, tableau, border, varied)
         if border and not writer.balances.baths:
             continue
         candidates.append(writer)
@@ -59,9 +62,11 @@ def build_program(system: System, tableau: Tableau) -> Program:
 
 
 class _Writer:
-    def __init__(self, system: System, tableau: Tableau, border: bool) -> None:
+    def __init__(
+        self, system: System, tableau: Tableau, border: bool, varied: frozenset[Name]
+    ) -> None:
         self.tableau = tableau
-        self.layout = Layout(system, tableau.stages)
+        self.layout = Layout(system, tableau.stages, varied=varied)
         self.balances = Balances(self.layout, border)
         tape = Tape()
         state = self._state(tape, self.layout.state)

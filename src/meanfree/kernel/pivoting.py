@@ -7,6 +7,7 @@ against its column, the step of that lane is made again here, slowly and safely.
 from __future__ import annotations
 
 import numpy as np
+
 from meanfree.kernel.records import SLOT, Floats, Longs, Places, compiled
 from meanfree.kernel.vector import call_address
 
@@ -65,12 +66,19 @@ def solve(A: Floats, order: Longs, rhs: Floats) -> Floats:
 
 @compiled
 def pivoted_step(
-    p: Places, W: Floats, addresses: Longs, codes: Longs, entries: Longs, a: Floats, c: Floats, l: int
+    p: Places,
+    W: Floats,
+    addresses: Longs,
+    codes: Longs,
+    entries: Longs,
+    a: Floats,
+    c: Floats,
+    l: int,
 ) -> bool:
     """The stages of one lane and the last one's argument, as the step's phases leave them.
 
-    ``entries`` [n, 3]: row, column and slot of the matrix before factorisation; ``a``, ``c`` are the
-    method's. False where the matrix is singular.
+    ``entries`` [n, 3]: row, column and slot of the matrix before factorisation; ``a``, ``c`` are
+    the method's. False where the matrix is singular.
     """
     base = W.ctypes.data
     call_address(addresses[ASSEMBLE], base, codes[ASSEMBLE])

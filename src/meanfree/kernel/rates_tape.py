@@ -60,10 +60,13 @@ class RateWriter:
             tape = Tape()
             T, p, M = (tape.input(i) for i in range(3))
             zero, one = tape.const(0.0), tape.const(1.0)
-            numbers: list[Any] = [Dual(tape, tape.input(3 + i)) for i in range(len(block.law.slots))]
+            numbers: list[Any] = [
+                Dual(tape, tape.input(3 + i)) for i in range(len(block.law.slots))
+            ]
             units = [tuple(one if i == k else zero for i in range(3)) for k in range(3)]
             arguments = [Dual(tape, v, u) for v, u in zip((T, p, M), units, strict=True)]
-            k = block.law.coefficient(TapeFunctions(tape), *arguments, numbers)
+            law: Any = block.law.coefficient
+            k = law(TapeFunctions(tape), *arguments, numbers)
             names = frozenset(
                 name
                 for name, slope in zip("TpM", getattr(k, "slopes", ()), strict=False)
@@ -126,14 +129,12 @@ class RateWriter:
                 for slot in range(len(block.law.slots)):
                     # Zeros and ones stay numbers: most steps have no power of T.
                     value = float(block.numbers[slot, position])
-                    literal = value in (0.0, 1.0)
-                    place = tape.const(value) if literal else tape.input(
-                        layout.parameter("number", b, slot, position)
-                    )
+                    name = ("number", b, slot, position)
+                    literal = value in (0.0, 1.0) and name not in layout.varied
+                    place = tape.const(value) if literal else tape.input(layout.parameter(*name))
                     numbers.append(Dual(tape, place))
-                found[j] = block.law.coefficient(
-                    TapeFunctions(tape), *self._arguments(tape, around, j), numbers
-                )
+                law: Any = block.law.coefficient
+                found[j] = law(TapeFunctions(tape), *self._arguments(tape, around, j), numbers)
         for row, step in enumerate(system.reverses.step):
             j, forward = int(step), int(system.reverses.forward[row])
             if self.is_constant(j):
@@ -181,9 +182,7 @@ class RateWriter:
             dH = t.combine([(n, gases.enthalpy(i)) for i, n in net])
             dG = t.combine([(n, gases.gibbs_energy(i)) for i, n in net])
             lnK = t.neg(t.div(dG, RT))
-        standard = t.sub(
-            t.const(0.0), t.unary(Op.LOG, t.div(RT, t.const(STANDARD_PRESSURE)))
-        )
+        standard = t.sub(t.const(0.0), t.unary(Op.LOG, t.div(RT, t.const(STANDARD_PRESSURE))))
         lnK = t.madd(t.const(change), standard, lnK)
         slope = t.div(t.sub(dH, t.mul(t.const(change), RT)), t.mul(RT, T))
         value = t.unary(Op.EXP, t.neg(lnK))
@@ -253,7 +252,5 @@ class RateWriter:
         inner = t.power(square, (order - 1) / 2)
         if not slopes:
             return t.mul(c, inner), one
-        slope = t.mul(
-            t.div(inner, square), t.madd(t.const(order - 1), t.mul(c, c), square)
-        )
+        slope = t.mul(t.div(inner, square), t.madd(t.const(order - 1), t.mul(c, c), square))
         return t.mul(c, inner), slope

@@ -29,8 +29,8 @@ def compiled(function: Any) -> Any:
 class Places(NamedTuple):
     """Numbers of one job: sizes, first slots, and what is asked. No arrays, so it costs nothing.
 
-    ``heat``, ``v`` and ``T`` are places in the state, -1 without them, as is ``watched``, the gas whose
-    conversion counts in an ``automatic`` run.
+    ``heat``, ``v`` and ``T`` are places in the state, -1 without them, as is ``watched``, the gas
+    whose conversion counts in an ``automatic`` run.
     """
 
     lanes: int
@@ -65,9 +65,9 @@ class Places(NamedTuple):
 class Conditions(NamedTuple):
     """The conditions. A condition is a row of state, parameters, three absolute tolerances and the
 
-    end [s]: ``common`` [size + n_parameters + 4], but ``own`` [n_varied, n] in its places ``varied``.
-    ``breaks`` [rows, n_breaks, 3 + n_changed]: when a segment starts [s], the fraction retained, the
-    temperature [K] (0: as it is), and the values of the parameters ``changed``.
+    end [s]: ``common`` [size + n_parameters + 4], but ``own`` [n_varied, n] in its places
+    ``varied``. ``breaks`` [rows, n_breaks, 3 + n_changed]: when a segment starts [s], the fraction
+    retained, the temperature [K] (0: as it is), and the values of the parameters ``changed``.
     """
 
     common: Floats
@@ -80,10 +80,10 @@ class Conditions(NamedTuple):
 class Request(NamedTuple):
     """What to keep of every run besides its end.
 
-    ``flags`` [n_functionals, 3]: sign (-1 where levels are reached from above), whether drawn samples
-    shrink the levels, whether the maximum is asked instead. ``initial`` [n, n_functionals] values at time
-    zero. ``levels`` [rows, n_functionals, n_levels] in the order in which they are reached, NaN after the
-    last. ``grid`` [rows, n_times] in s.
+    ``flags`` [n_functionals, 3]: sign (-1 where levels are reached from above), whether drawn
+    samples shrink the levels, whether the maximum is asked instead. ``initial`` [n, n_functionals]
+    values at time zero. ``levels`` [rows, n_functionals, n_levels] in the order in which they are
+    reached, NaN after the last. ``grid`` [rows, n_times] in s.
     """
 
     flags: Longs
@@ -95,10 +95,10 @@ class Request(NamedTuple):
 class Kept(NamedTuple):
     """What is kept of every run: one row a condition; NaN is what was not reached.
 
-    ``ends`` [n, size + 1]: state and time at the end; ``rests`` [n or 0, size] where an automatic run rests.
-    ``marks`` [n, 4]: how it ended, steps tried, steps refused, steps with pivoting. ``events``
-    [n, n_functionals, n_levels] s; ``peaks`` [n, n_functionals, 2] time and value; ``values`` [n, n_times,
-    n_functionals].
+    ``ends`` [n, size + 1]: state and time at the end; ``rests`` [n or 0, size] where an automatic
+    run rests. ``marks`` [n, 4]: how it ended, steps tried, steps refused, steps with pivoting.
+    ``events`` [n, n_functionals, n_levels] s; ``peaks`` [n, n_functionals, 2] time and value;
+    ``values`` [n, n_times, n_functionals].
     """
 
     ends: Floats
@@ -110,7 +110,8 @@ class Kept(NamedTuple):
 
 
 class Lane(IntEnum):
-    """Rows of I. ``WHO`` is the condition, -1 for none; ``AGAIN`` 0 in a first run, 1 in a second, 2 in
+    """Rows of I. ``WHO`` is the condition, -1 for none; ``AGAIN`` 0 in a first run, 1 in a second,
+    2 in
 
     between; ``LEVEL`` and beyond count the levels reached.
     """

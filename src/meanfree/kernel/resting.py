@@ -36,9 +36,7 @@ def begin_watch(p: Places, W: Floats, I: Longs, l: int) -> None:
 
 
 @compiled
-def watch(
-    p: Places, W: Floats, I: Longs, table: Floats, ends: Floats, last: bool, l: int
-) -> int:
+def watch(p: Places, W: Floats, I: Longs, table: Floats, ends: Floats, last: bool, l: int) -> int:
     """After an accepted step, before it is taken over: why the run ends here, or PENDING.
 
     ``last`` is True in the last segment.

@@ -22,9 +22,10 @@ SCALARS = (
 )  # fmt: skip
 """Slots that every lane has besides its state and its parameters.
 
-Of time: the lane must not step over ``stop``; at ``due`` the next time of the grid comes; ``limited`` > 0
-where the step ends at the stop. Of the step just made: ``accepted`` 1 or 0, ``attention`` > 0 where the
-loop must look at the lane. ``worst`` is the multiplier above which a pivot is bad. Counted: ``tried``, ``refusals``, ``steps``. ``theta`` is what drawn samples left;
+Of time: the lane must not step over ``stop``; at ``due`` the next time of the grid comes;
+``limited`` > 0 where the step ends at the stop. Of the step just made: ``accepted`` 1 or 0,
+``attention`` > 0 where the loop must look at the lane. ``worst`` is the multiplier above which a
+pivot is bad. Counted: ``tried``, ``refusals``, ``steps``. ``theta`` is what drawn samples left;
 ``end`` ends a run, ``until`` a second one; at ``crossed`` a level was crossed that may end a run.
 """
 
@@ -34,12 +35,14 @@ class Layout:
     """Slots of the work array for one System and a method with ``stages`` stages.
 
     The state is the System's, followed by T where a program moves it: then T is a state with a
-    known slope. Parameters get their places as phases ask for them.
+    known slope. Parameters get their places as phases ask for them; those ``varied`` are never
+    taken for fixed numbers.
     """
 
     system: System
     stages: int
     parameters: dict[Name, int] = field(default_factory=dict)
+    varied: frozenset[Name] = frozenset()
 
     @property
     def has_T(self) -> bool:

@@ -1,8 +1,8 @@
 """Rosenbrock methods as numbers: coefficients, error estimate and dense output.
 
 Notation of Hairer and Wanner, Solving Ordinary Differential Equations II, section IV.7: with
-``u_i`` the scaled stages, (1/(h gamma) I - J) u_i = f(y + sum a_ij u_j) + sum (c_ij/h) u_j. The last
-stage is the error estimate, and y1 = y + sum a_sj u_j + u_s.
+``u_i`` the scaled stages, (1/(h gamma) I - J) u_i = f(y + sum a_ij u_j) + sum (c_ij/h) u_j. The
+last stage is the error estimate, and y1 = y + sum a_sj u_j + u_s.
 """
 
 from __future__ import annotations
@@ -20,9 +20,9 @@ class Tableau:
     """A stiffly accurate Rosenbrock method with s stages.
 
     ``a``, ``c`` [1, shape (s, s)] are strictly lower triangular; ``dense`` [1, shape (s, d)] gives
-    the d coefficient vectors of the dense output,
-    y(theta) = (1 - theta) y0 + theta (y1 + (1 - theta) (k_1 + theta (k_2 + …))), k_j = sum dense_ij u_i.
-    ``order`` is that of the method, ``error_order`` that of the embedded one.
+    the d coefficient vectors of the dense output, y(theta) = (1 - theta) y0 + theta (y1 + (1 -
+    theta) (k_1 + theta (k_2 + …))), k_j = sum dense_ij u_i. ``order`` is that of the method,
+    ``error_order`` that of the embedded one.
     """
 
     name: str
@@ -44,15 +44,18 @@ class Tableau:
         """y1 = y + sum weights_i u_i."""
         weights = self.a[-1].copy()
         weights[-1] += 1.0
-        return weights
+        return np.asarray(weights, float)
 
     def classical(self) -> tuple[Floats, Floats, Floats]:
         """(alpha, Gamma, b) of the untransformed method, Gamma with gamma on its diagonal.
 
         Gamma = (I/gamma - C)^-1, alpha = a Gamma, b = weights Gamma.
         """
-        Gamma = np.linalg.inv(np.eye(self.stages) / self.gamma - self.c)
-        return self.a @ Gamma, Gamma, self.weights @ Gamma
+        inverse = np.linalg.inv(np.eye(self.stages) / self.gamma - self.c)
+        Gamma: Floats = np.asarray(inverse, np.float64)
+        alpha: Floats = np.asarray(self.a @ Gamma, np.float64)
+        b: Floats = np.asarray(self.weights @ Gamma, np.float64)
+        return alpha, Gamma, b
 
 
 def _lower(rows: list[list[float]]) -> Floats:

@@ -8,7 +8,7 @@ that holds every slot once for each lane.
 from __future__ import annotations
 
 import math
-from collections.abc import Iterable
+from collections.abc import Callable, Iterable
 from dataclasses import dataclass, field
 from enum import IntEnum
 
@@ -36,6 +36,14 @@ class Op(IntEnum):
 
 
 Entry = tuple[int, int, int, int]
+
+
+_PLAIN: dict[Op, Callable[[float], float]] = {
+    Op.ABS: abs,
+    Op.SQRT: math.sqrt,
+    Op.EXP: math.exp,
+    Op.LOG: math.log,
+}
 
 
 @dataclass
@@ -82,7 +90,7 @@ class Tape:
             return b
         if y == 0:
             return a
-        return self._make(Op.ADD, *sorted((a, b)))
+        return self._make(Op.ADD, min(a, b), max(a, b))
 
     def sub(self, a: int, b: int) -> int:
         """a - b; also of a value and itself, which is no number where the value is none."""
@@ -115,7 +123,7 @@ class Tape:
                 return other
             if number == -1:
                 return self.neg(other)
-        return self._make(Op.MUL, *sorted((a, b)))
+        return self._make(Op.MUL, min(a, b), max(a, b))
 
     def madd(self, a: int, b: int, c: int) -> int:
         """a b + c"""
@@ -131,7 +139,7 @@ class Tape:
                 return self.sub(c, other)
         if x is not None and y is not None:
             return self.add(self.const(x * y), c)
-        return self._make(Op.MADD, *sorted((a, b)), c)
+        return self._make(Op.MADD, min(a, b), max(a, b), c)
 
     def nmadd(self, a: int, b: int, c: int) -> int:
         """c - a b"""
@@ -147,7 +155,7 @@ class Tape:
                 return self.add(c, other)
         if x is not None and y is not None:
             return self.sub(c, self.const(x * y))
-        return self._make(Op.NMADD, *sorted((a, b)), c)
+        return self._make(Op.NMADD, min(a, b), max(a, b), c)
 
     def div(self, a: int, b: int) -> int:
         """a / b"""
@@ -162,8 +170,7 @@ class Tape:
         """ABS, SQRT, EXP or LOG of a."""
         x = self.number(a)
         if x is not None:
-            plain = {Op.ABS: abs, Op.SQRT: math.sqrt, Op.EXP: math.exp, Op.LOG: math.log}[op]
-            return self.const(float(plain(x)))
+            return self.const(_PLAIN[op](x))
         return self._make(op, a)
 
     def max(self, a: int, b: int) -> int:
@@ -214,9 +221,7 @@ class Tape:
             return self.div(self.const(1.0), self.power(a, -exponent))
         quarters = exponent * 4
         if quarters != int(quarters) or exponent > 16:
-            return self.unary(
-                Op.EXP, self.mul(self.const(exponent), self.unary(Op.LOG, a))
-            )
+            return self.unary(Op.EXP, self.mul(self.const(exponent), self.unary(Op.LOG, a)))
         whole, rest = divmod(int(quarters), 4)
         result = self.whole_power(a, whole)
         if rest:
@@ -255,7 +260,8 @@ class Phase:
         """Slots that the phase reads."""
         used = self.needed()
         return {
-            e[1] for e, needed in zip(self.tape.entries, used, strict=True)
+            e[1]
+            for e, needed in zip(self.tape.entries, used, strict=True)
             if needed and e[0] == Op.INPUT
         }
 

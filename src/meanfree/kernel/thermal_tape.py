@@ -45,9 +45,7 @@ class ThermalTape:
         if not known:
             width = math.log(high / low)
             logarithm = t.unary(Op.LOG, self._inside(gas))
-            x = t.madd(
-                t.const(2 / width), logarithm, t.const(-math.log(low * high) / width)
-            )
+            x = t.madd(t.const(2 / width), logarithm, t.const(-math.log(low * high) / width))
             x = t.max(t.min(x, t.const(1.0)), t.const(-1.0))
             known.extend([t.const(1.0), x])
         double = t.mul(t.const(2.0), known[1])

@@ -100,9 +100,7 @@ class Vectors:
         total = b.fmul(total, z)
         half = b.fmul(self.number(0.5), b.fmul(f, f))
         inner = self.call("fmuladd", s, b.fadd(half, total), b.fmul(k, self.number(LN2_LOW)))
-        return self.call(
-            "fmuladd", k, self.number(LN2_HIGH), b.fsub(f, b.fsub(half, inner))
-        )
+        return self.call("fmuladd", k, self.number(LN2_HIGH), b.fsub(f, b.fsub(half, inner)))
 
     def larger(self, a: Any, b: Any) -> Any:
         """a where a > b, else b."""
@@ -193,7 +191,7 @@ def compiled_phase(name: str, phase: Callable[[], Phase], lanes: int) -> Any:
     return intrinsic(run)
 
 
-@intrinsic
+@intrinsic  # type: ignore[untyped-decorator]
 def call_address(typingctx: Any, address: Any, base: Any, code: Any) -> Any:
     """Call the machine code at an address with the addresses of work array and code."""
 

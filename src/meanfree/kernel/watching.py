@@ -26,9 +26,9 @@ NEXT = 1e300
 class Functional:
     """Sum of weights times states, and what is asked of it.
 
-    ``levels`` [rows, n_levels], in the order in which they are reached; ``falls`` where that is from
-    above; ``shrinks`` where a drawn sample shrinks the levels with it; ``peak`` asks for the maximum
-    instead of levels.
+    ``levels`` [rows, n_levels], in the order in which they are reached; ``falls`` where that is
+    from above; ``shrinks`` where a drawn sample shrinks the levels with it; ``peak`` asks for the
+    maximum instead of levels.
     """
 
     weights: tuple[tuple[int, float], ...]
@@ -40,7 +40,7 @@ class Functional:
 
 def slots_per_functional(program: Program) -> int:
     """Value before and after, dense coefficients, and the level that comes next."""
-    return 3 + program.tableau.dense.shape[1]
+    return 3 + int(program.tableau.dense.shape[1])
 
 
 def request_for(
@@ -48,7 +48,8 @@ def request_for(
 ) -> Request:
     """The request as plain arrays for ``count`` conditions.
 
-    ``states`` are those at time zero, each of shape (count,) or (1,); ``grid`` [rows, n_times] in s.
+    ``states`` are those at time zero, each of shape (count,) or (1,); ``grid`` [rows, n_times] in
+    s.
     """
     with_levels = [f.levels for f in functionals if f.levels is not None]
     n_levels = max((table.shape[1] for table in with_levels), default=0)
