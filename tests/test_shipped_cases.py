@@ -125,6 +125,99 @@ def test_warmed_peroxide():
     assert ours.pressure(ours.end)[0] / 443.0 / filled == pytest.approx(3.0, rel=1e-3)
 
 
+CM3, TORR = 1e-6 * N_A, 101325 / 760  # per molecule into per mole; Pa
+
+
+def test_two_baths():
+    """OH lives 1/(k1 [NO2] + k2 [NO]); helium counts for about half of nitrogen."""
+    ours, density = run("two-baths"), TORR / (k_B * 298.0) * 1e-6  # molecules/cm^3 and torr
+    oxides = 10e14 + 1e11
+    M = (0.45 * 60 + 40) * density + oxides
+    k0, kinf = 3.3e-30 * (298 / 300) ** -3, 4.1e-11
+    reduced, lg = k0 * M / kinf, np.log10(0.4)
+    place = np.log10(reduced) / (0.75 - 1.27 * lg)
+    k1 = k0 * M / (1 + reduced) * 10 ** (lg / (1 + place**2))
+    k2 = 7.4e-31 * (298 / 300) ** -2.4 * ((0.55 * 60 + 40) * density + oxides)
+    lifetime = 1 / (k1 * 4e14 + k2 * 6e14)
+    # OH is one part in 4000 of NO2, which falls by half of that on the way
+    assert ours.reaction_time("OH", 0.5) == pytest.approx(np.log(2) * lifetime, rel=3e-4)
+    end = dict(zip(ours.system.gases, ours.concentrations(ours.end)[:, 0], strict=True))
+    assert end["HNO3"] / end["HONO"] == pytest.approx(k1 * 4 / (k2 * 6), rel=3e-4)
+
+
+def test_ion_tube():
+    """1/(k n) with Langevin's 2.342e-9 cm^3/s sqrt(alpha/mu) and the factor of the dipole.
+
+    alpha in cubic angstrom, mu in g/mol; factor 0.4767 x + 0.6200 with x = dipole over
+    sqrt(2 alpha k T) from 2 on: T. Su and W. J. Chesnavich, J. Chem. Phys. 76, 5183 (1982).
+    """
+    ours = run("ion-tube")
+    x = 1.47e-18 / np.sqrt(2 * 2.1e-24 * 1.380649e-16 * 300)  # electrostatic units
+    assert 2 < x < 60
+    ammonia = 2.342e-9 * np.sqrt(2.1 / (19.023 * 17.031 / 36.054)) * (0.4767 * x + 0.6200)
+    benzene = 2.342e-9 * np.sqrt(10.0 / (19.023 * 78.112 / 97.135))
+    # four digits of Langevin's factor; the ions are 2e-5 of what they meet
+    assert ours.reaction_time("H3O+", 0.5) == pytest.approx(
+        np.log(2) / ((ammonia + benzene) * 5e10), rel=5e-4
+    )
+    end = dict(zip(ours.system.gases, ours.concentrations(ours.end)[:, 0], strict=True))
+    assert end["NH4+"] / end["C6H7+"] == pytest.approx(ammonia / benzene, rel=5e-4)
+
+
+def test_hydrogen_flask():
+    """x cot x = 1 - h r/D in a sphere with h = gamma v/(2(2 - gamma)): 23 1/s, not 30.
+
+    Source: J. Crank, The Mathematics of Diffusion, 2nd ed. (1975), section 6.3.4 (surface
+    evaporation); P. J. Chantry, J. Appl. Phys. 62, 1141 (1987).
+    """
+    from scipy.optimize import brentq
+
+    ours, gamma = run("hydrogen-flask"), 1e-3
+    speed = np.sqrt(8 * R * 300 / (np.pi * 1.008e-3))
+    radius, D = np.cbrt(3e-3 / (4 * np.pi)), 1.9e-4 * 760 / 5.01
+    biot = gamma * speed / (2 * (2 - gamma)) * radius / D
+    x = brentq(lambda x: x / np.tan(x) - 1 + biot, 1e-6, np.pi - 1e-9, xtol=1e-14)
+    k = x**2 * D / radius**2
+    assert 0.7 < k / (gamma * speed * 3 / radius / 4) < 0.8
+    # -dc/dt = k c + 2 k3 M c^2: t = ln((c0/c) (k + q c)/(k + q c0))/k, M the filled gas
+    c0, M = (p * TORR / (R * 300) for p in (0.01, 5.01))
+    q = 2 * 8e-33 * CM3**2 * M
+    c = c0 / 2
+    half = np.log(c0 / c * (k + q * c) / (k + q * c0)) / k
+    # M falls by 0.05 % on the way, and takes 2 % of the loss; D grows by as much
+    assert ours.reaction_time("H", 0.5) == pytest.approx(half, rel=3e-4)
+
+
+def test_lamp_on_and_off():
+    """Lit: J [NO2] = k [NO][O3]; in the dark NO and O3, equally many, go to second order."""
+    ours, J, k = run("lamp-on-off"), 8e-3, 1.4e-12 * CM3 * np.exp(-10.9e3 / (R * 298.0))
+    place = ours.system.gases.index
+    before, lit, dark = (ours.concentrations(t)[:, 0] for t in (59.0, 600.0, 900.0))
+    assert before[place("O3")] == 0
+    no2 = 0.5e-6 * 101325 / (R * 298.0)
+    made = (np.sqrt((J / k) ** 2 + 4 * J / k * no2) - J / k) / 2
+    # O atoms, 5e-7 of the ozone, are all that the balance leaves out
+    assert lit[place("O3")] == pytest.approx(made, rel=2e-6)
+    assert 1 / dark[place("O3")] - 1 / lit[place("O3")] == pytest.approx(k * 300, rel=2e-6)
+    M = 101325 / (R * 298.0)
+    atoms = J * lit[place("NO2")] / (6e-34 * (298 / 300) ** -2.6 * CM3**2 * 0.21 * M * M)
+    # M and O2 as filled: NO2 is 5e-7 of them
+    assert lit[place("O")] == pytest.approx(atoms, rel=1e-5)
+
+
+def test_samples_of_azomethane():
+    """The pressure drops by what is drawn; conversion is 1 - exp(-kt) all the same."""
+    ours, k = run("azomethane-samples"), 5e15 * np.exp(-214e3 / (R * 573.0))
+    for t, kept in ((600.0, 0.95), (1800.0, 0.95), (3600.0, 0.9)):
+        drop = ours.pressure(t + 1e-6)[0] / ours.pressure(t)[0]
+        # in a microsecond the pressure rises by 1e-10 of itself
+        assert drop == pytest.approx(kept, rel=1e-9)
+        assert ours.conversion("azomethane", t)[0] == pytest.approx(-np.expm1(-k * t), rel=1e-7)
+    # one becomes two, and 10 mtorr come in each minute
+    first = 180 + 60 * -np.expm1(-k * 600) + 0.1
+    assert ours.pressure(600.0)[0] / TORR == pytest.approx(first, rel=1e-7)
+
+
 def test_every_shipped_case_says_that_it_is_invented():
     for file in CASES.glob("*.toml"):
         assert "invented" in file.read_text().splitlines()[1].lower(), file.name
