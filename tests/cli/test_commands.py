@@ -269,3 +269,12 @@ def test_a_reader_that_goes_away_is_no_error(case: Path) -> None:
     command = f'"{sys.executable}" -m meanfree check {case} | true; echo "${{PIPESTATUS[0]}}"'
     done = subprocess.run(["bash", "-c", command], capture_output=True, text=True, check=True)
     assert (done.stdout, done.stderr) == ("0\n", "")
+
+
+CASES = sorted((ROOT / "cases").glob("*.toml"))
+
+
+@pytest.mark.parametrize("file", CASES, ids=lambda file: file.stem)
+def test_every_shipped_case_is_understood(file: Path, capsys: Printed) -> None:
+    assert run(["check", str(file)]) == 0
+    assert "is understood" in capsys.readouterr().out

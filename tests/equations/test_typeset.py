@@ -251,6 +251,8 @@ def test_names_that_are_formulas_get_subscripts_and_others_do_not() -> None:
         "N2O4": "N₂O₄",
         "(CH3)2CO": "(CH₃)₂CO",
         "H3O+": "H₃O⁺",
+        "NH4+": "NH₄⁺",
+        "[Ca]2+": "[Ca]²⁺",
         "SO4^2-": "SO₄²⁻",
         "e-": "e⁻",
     }

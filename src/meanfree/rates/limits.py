@@ -42,7 +42,7 @@ class PowerLaw:
 
     A: Sourced
     n: Sourced = Sourced(0.0, default=True)
-    T_ref: Sourced = Sourced(1.0, "K", default=True)
+    T_ref: Sourced = Sourced(1.0, "K", dimension="temperature", default=True)
     Ea: Sourced = Sourced(0.0, "J/mol", dimension="molar energy", default=True)
 
     def numbers(self, context: StepContext) -> tuple[float, float, float, float]:

@@ -15,7 +15,10 @@ from meanfree.errors import InputError
 from meanfree.gases.formula import parse_formula
 from meanfree.gases.gas import Gas
 
-_PIECE = re.compile(r"(?P<charge>\^?\d*[+-]+$)|(?P<count>(?<=[A-Za-z)\]])\d+)|(?P<rest>.)")
+_PIECE = re.compile(
+    r"(?P<charge>\^\d*[+-]+$|(?<=[)\]])\d+[+-]+$|[+-]+$)|(?P<count>(?<=[A-Za-z)\]])\d+)|(?P<rest>.)"
+)
+"""As `parse_formula` reads it: in ``NH4+`` the number counts atoms, in ``SO4^2-`` the charge."""
 
 SLOTS: dict[str, tuple[Symbol, str]] = {
     "k": (Symbol("k"), "k"),
