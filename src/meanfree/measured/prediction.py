@@ -27,14 +27,15 @@ SOLVER = Solver("LSODA", rtol=1e-10, atol=1e-16)
 class Prediction:
     """Amounts over V(0) ``x`` [mol/m^3, shape (n_gases, n_times)] and what follows from them.
 
-    ``spread`` is v + dead T, the volume over V(0) that the amounts are spread over, and
-    ``temperature`` [K], each of shape (n_times,).
+    ``spread`` is v + dead T, the volume over V(0) that the amounts are spread over, ``temperature``
+    [K], and ``retained`` what drawn samples left, each of shape (n_times,).
     """
 
     system: System
     x: Floats
     spread: Floats
     temperature: Floats
+    retained: Floats
 
     def amount(self, gas: str) -> Floats:
         """Amount of a gas over V(0) [mol/m^3, shape (n_times,)]."""
@@ -75,7 +76,11 @@ def predict(experiment: Experiment, times: Floats) -> Prediction:
 def is_exact(experiment: Experiment) -> bool:
     """True where `predict` has a formula, good to rounding; else it is good to 1e-9 or so."""
     system, start = build_system(experiment), np.zeros(1)
-    return (_by_closed_form(system, start) or _of_order_zero(system, start)) is not None
+    try:
+        with np.errstate(all="ignore"):
+            return (_by_closed_form(system, start) or _of_order_zero(system, start)) is not None
+    except ComputationError:
+        return False
 
 
 def _by_closed_form(system: System, times: Floats) -> Prediction | None:
@@ -96,7 +101,7 @@ def _by_closed_form(system: System, times: Floats) -> Prediction | None:
     spread = 1.0 + system.dead * T
     if system.volume_varies:
         spread = R * T / system.held_pressure * x.sum(axis=0)
-    return Prediction(system, x, spread, T)
+    return Prediction(system, x, spread, T, np.ones(len(times)))
 
 
 def _of_order_zero(system: System, times: Floats) -> Prediction | None:
@@ -120,7 +125,7 @@ def _of_order_zero(system: System, times: Floats) -> Prediction | None:
     for gas, number in system.net.row(0):
         x[gas] = x[gas] + number * extent
     full = np.full(len(times), T)
-    return Prediction(system, x, 1.0 + system.dead * full, full)
+    return Prediction(system, x, 1.0 + system.dead * full, full, np.ones(len(times)))
 
 
 def _by_integration(system: System, times: Floats) -> Prediction:
@@ -130,7 +135,7 @@ def _by_integration(system: System, times: Floats) -> Prediction:
     if end <= 0:
         T = np.full(len(times), system.initial_temperature)
         x = np.repeat(system.initial_x[:, None], len(times), axis=1)
-        return Prediction(system, x, 1.0 + system.dead * T, T)
+        return Prediction(system, x, 1.0 + system.dead * T, T, np.ones(len(times)))
     stepped = step_through(ArrayEquations(system), SOLVER, end)
     if stepped.failure:
         raise ComputationError(stepped.failure)
@@ -144,4 +149,5 @@ def _by_integration(system: System, times: Floats) -> Prediction:
         slope = np.array([s.slope for s in segments])[where]
         T = start + slope * (times - np.array([s.start for s in segments])[where])
     v = state[system.volume_index] if system.volume_varies else np.ones(len(times))
-    return Prediction(system, state[: system.n_gases], v + system.dead * T, np.asarray(T))
+    kept = np.cumprod([segment.retained for segment in segments])[where]
+    return Prediction(system, state[: system.n_gases], v + system.dead * T, np.asarray(T), kept)

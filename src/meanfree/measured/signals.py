@@ -103,7 +103,7 @@ def predicted(signal: Signal, prediction: Prediction) -> Floats:
     if signal.kind == "conversion":
         left = np.sum([prediction.amount(gas) for gas in signal.gases], axis=0)
         start = sum(prediction.filled(gas) for gas in signal.gases)
-        return np.asarray(1.0 - left / start)
+        return np.asarray(1.0 - left / (start * prediction.retained))
     c = np.asarray(np.sum([prediction.concentration(gas) for gas in signal.gases], axis=0))
     if signal.kind == "partial pressure":
         return np.asarray(c * R * prediction.temperature)

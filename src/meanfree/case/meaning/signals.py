@@ -49,6 +49,10 @@ def read_signal(
             findings.wrong(f"{key}.is", f"{quoted(name)}, no gas of the case", hint)
     if kind == "conversion" and all(name in known for name in names):
         filled = sum(experiment.moles[name] for name in names)
+        if experiment.flows:
+            found = "conversion in a vessel that leaks or is pumped"
+            findings.wrong(f"{key}.is", found, "a concentration, a pressure or a mole fraction")
+            return None
         if filled <= 0:
             findings.wrong(
                 f"{key}.is",

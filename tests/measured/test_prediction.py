@@ -1,0 +1,55 @@
+"""What fits compare readings with, held against the checked integrator."""
+
+from __future__ import annotations
+
+import numpy as np
+import pytest
+from measured_runs import case_text, loaded
+
+from meanfree.integrate.single import integrate
+from meanfree.measured.prediction import is_exact, predict
+
+T = np.array([0.0, 40.0, 400.0, 4000.0])
+PISTON = ('holds = "volume"', 'holds = "pressure"')
+GAUGE = 'dead_space = { volume = "50 mL", temperature = "300 K" }'
+DEAD = ('volume = "0.5 L"', f'volume = "0.5 L"\n{GAUGE}')
+WARMING = (
+    'mode = "isothermal"\nvalue = "599.15 K"',
+    'mode = "program"\npoints = [["0 s", "500 K"], ["100 s", "600 K"]]',
+)
+SECOND = 'law = "fixed"\nk = "0.5 L/mol/s"'
+ARRHENIUS = 'law = "arrhenius"\nA = "1e6 L/mol/s"\nEa = "60 kJ/mol"'
+
+
+@pytest.mark.parametrize(
+    ("reaction", "law", "edits", "exact"),
+    [
+        ("2 A -> B", SECOND, (), True),
+        ("2 A -> B", SECOND, (DEAD,), True),
+        ("2 A -> B", SECOND, (PISTON,), True),
+        ("2 A -> B", SECOND, (PISTON, DEAD), False),
+        ("A -> 2 B + C", 'law = "fixed"\nk = "1e-3 1/s"', (PISTON,), True),
+        ("A -> B", 'law = "fixed"\nk = "1e-3 mol/L/s"\norders = { A = 0 }', (), True),
+        ("A -> B", 'law = "fixed"\nk = "1e-3 L^-0.5*mol^0.5/s"\norders = { A = 0.5 }', (), True),
+        ("2 A -> B", ARRHENIUS, (WARMING,), False),
+        ("2 A -> B", SECOND + '\nreverse = { Kc = "50 L/mol", at = "599.15 K" }', (), True),
+    ],
+)
+def test_beside_a_run(tmp_path, reaction, law, edits, exact):
+    text = case_text(reaction, law)
+    for old, new in edits:
+        assert old in text
+        text = text.replace(old, new)
+    text += '\n[run]\nuntil = "4000 s"\n'
+    experiment = loaded(tmp_path, text, {}).experiment
+    ours, run = predict(experiment, T), integrate(experiment)
+    # Radau at rtol 1e-8 reaches 1e-8 or so of the most there was
+    assert ours.pressure == pytest.approx(run.pressure(T), rel=1e-7)
+    assert ours.temperature == pytest.approx(run.temperature(T), rel=1e-9)
+    most = run.concentrations(T).max()
+    for i, gas in enumerate(run.system.gases):
+        assert ours.concentration(gas) == pytest.approx(run.concentrations(T)[i], abs=2e-8 * most)
+    assert is_exact(experiment) is exact
+    # in any order, and at one time only
+    assert predict(experiment, T[::-1]).pressure == pytest.approx(ours.pressure[::-1], rel=1e-12)
+    assert predict(experiment, np.zeros(1)).pressure == pytest.approx(ours.pressure[:1], rel=1e-12)
