@@ -350,8 +350,20 @@ def test_a_byte_order_mark_and_dos_line_ends_are_read(tmp_path: Path) -> None:
     assert load_case(path).hash == load_text(tmp_path, GOOD).hash
 
 
+SIGNAL = {"column": "p", "unit": "torr", "is": "total pressure"}
+
+
 def test_data_are_kept_as_they_stand(tmp_path: Path) -> None:
+    """Their files are read by the commands that need them, not here: this one is not there."""
     data = '\n[[data]]\nfile = "a.csv"\ntime = { column = "t", unit = "min" }\n'
-    assert load_text(tmp_path, GOOD + data).data == (
-        {"file": "a.csv", "time": {"column": "t", "unit": "min"}},
+    signal = 'signal = { column = "p", unit = "torr", is = "total pressure" }\n'
+    assert load_text(tmp_path, GOOD + data + signal).data == (
+        {"file": "a.csv", "time": {"column": "t", "unit": "min"}, "signal": SIGNAL},
     )
+
+
+def test_data_without_what_was_read_are_refused(tmp_path: Path) -> None:
+    data = '\n[[data]]\nfile = "a.csv"\ntime = { column = "t", unit = "min" }\n'
+    with pytest.raises(InputError) as error:
+        load_text(tmp_path, GOOD + data)
+    assert [(p.key, p.found) for p in error.value.problems] == [("data.0.signal", "nothing")]

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 import math
+import os
 import subprocess
 import sys
 from pathlib import Path
@@ -247,3 +248,19 @@ def test_run_needs_no_window_and_no_pandas(simple: Path) -> None:
     )
     done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True)
     assert done.stderr.strip() == "0 []"
+
+
+def test_no_place_of_this_machine_is_left(capsys: Printed, case: Path, tmp_path: Path) -> None:
+    """A case named by its whole path: relative to the present folder, or by its bare name."""
+    assert run(["run", str(tmp_path / "bulb.toml"), "--out", "here"]) == 0
+    away = tmp_path / "away"
+    away.mkdir()
+    os.chdir(away)
+    assert run(["run", str(tmp_path / "bulb.toml"), "--out", "there"]) == 0
+    assert run(["equations", str(tmp_path / "bulb.toml"), "--out", "written"]) == 0
+    for folder in (tmp_path / "here", away / "there", away / "written"):
+        for file in ("manifest.json", "summary.json", "report.html"):
+            for found in folder.glob(file):
+                assert str(tmp_path) not in found.read_text(), found
+    manifest = json.loads((tmp_path / "here" / "manifest.json").read_text())
+    assert manifest["command"] == "meanfree run bulb.toml"

@@ -11,6 +11,7 @@ from meanfree.errors import InputError
 
 if TYPE_CHECKING:
     from meanfree.case import LoadedCase
+    from meanfree.report.record import CaseRecord
 
 CasePath = Annotated[Path, typer.Argument(metavar="CASE", help="The case file.")]
 AsJson = Annotated[
@@ -47,6 +48,13 @@ def open_case(path: Path, settings: list[str] | None) -> LoadedCase:
     except InputError as error:
         raise InputError([*findings.problems, *error.problems]) from None
     raise InputError(findings.problems)
+
+
+def record_of(case: LoadedCase) -> CaseRecord:
+    """What a report says about a case; no place of this machine is in it."""
+    from meanfree.report.record import CaseRecord, portable
+
+    return CaseRecord(case.name, portable(case.path), case.text, case.hash, case.settings)
 
 
 def results_folder(case: LoadedCase, command: str, out: Path | None) -> Path:

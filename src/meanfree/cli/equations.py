@@ -12,6 +12,7 @@ from meanfree.cli._common import (
     Replace,
     Settings,
     open_case,
+    record_of,
     results_folder,
 )
 
@@ -29,14 +30,12 @@ def equations(
     from meanfree.equations.typeset import equation_sheet
     from meanfree.report.equation_files import write_equations
     from meanfree.report.folder import owner_name
-    from meanfree.report.record import CaseRecord
 
     folder = results_folder(loaded, "equations", out)
-    path = loaded.path
-    record = CaseRecord(loaded.name, path.as_posix(), loaded.text, loaded.hash, loaded.settings)
+    record = record_of(loaded)
     sheet = equation_sheet(loaded.experiment)
     full = equation_sheet(loaded.experiment, most=None) if sheet.as_text_only else sheet
-    owner = owner_name(path, folder)
+    owner = owner_name(loaded.path, folder)
     summary, paths = write_equations(sheet, full, record, folder, owner=owner, replace=replace)
     if as_json:
         typer.echo(summary)

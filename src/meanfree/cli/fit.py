@@ -65,6 +65,7 @@ def _work(
     from meanfree.case.written import refuse_target, write_fitted
     from meanfree.measured.analyses import analyse
     from meanfree.report.measured.fit_document import fit_document
+    from meanfree.report.record import portable
 
     if write is not None:
         refuse_target(write, case, replace=replace)
@@ -72,14 +73,14 @@ def _work(
     others = [_other(path, measurements) for path in against]
     found = analyse(measurements.plan)
     ranking = _ranked(case.name, found.fit, others) if others else ()
-    arguments = [word for path in against for word in ("--against", path.as_posix())]
+    arguments = [word for path in against for word in ("--against", portable(path))]
     if write is not None:
         if found.fit is None:
             from meanfree.errors import InputError
 
             raise InputError.at("--write", "a case whose [fit] has no parameters", "parameters")
         write_fitted(case, found.fit, write)
-        arguments += ["--write", write.as_posix()]
+        arguments += ["--write", portable(write)]
     return fit_document(found, record, ranking, tuple(arguments))
 
 

@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING, Annotated
 
 import typer
 
-from meanfree.cli._common import open_case, results_folder
+from meanfree.cli._common import open_case, record_of, results_folder
 from meanfree.errors import ComputationError, InputError, Problem
 
 if TYPE_CHECKING:
@@ -106,9 +106,8 @@ def _one(
 ) -> str:
     from meanfree.report.folder import owner_name
     from meanfree.report.planning.document import write_document
-    from meanfree.report.record import CaseRecord
 
-    record = CaseRecord(case.name, case.path.as_posix(), case.text, case.hash, case.settings)
+    record = record_of(case)
     progress = ScreenProgress()
     try:
         document = work(case, record, progress)

@@ -7,7 +7,16 @@ from typing import TYPE_CHECKING, Annotated
 
 import typer
 
-from meanfree.cli._common import AsJson, Out, Quiet, Replace, Settings, open_case, results_folder
+from meanfree.cli._common import (
+    AsJson,
+    Out,
+    Quiet,
+    Replace,
+    Settings,
+    open_case,
+    record_of,
+    results_folder,
+)
 from meanfree.errors import ComputationError, InputError, Problem
 
 if TYPE_CHECKING:
@@ -115,10 +124,9 @@ def _one(
     from meanfree.integrate.single import integrate
     from meanfree.integrate.verify import verify
     from meanfree.report.folder import owner_name, write_run
-    from meanfree.report.record import CaseRecord
     from meanfree.report.summary import summarise
 
-    record = CaseRecord(case.name, case.path.as_posix(), case.text, case.hash, case.settings)
+    record = record_of(case)
     result = integrate(case.experiment)
     summary = summarise(
         result,

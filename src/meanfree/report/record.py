@@ -7,16 +7,28 @@ from collections.abc import Mapping
 from dataclasses import dataclass, field
 from functools import cached_property
 from importlib import metadata
+from pathlib import Path
 
 LIBRARIES = ("numpy", "scipy", "sympy", "matplotlib", "pint", "pydantic", "chemicals")
 """The libraries that numbers on the page pass through."""
+
+
+def portable(path: Path) -> str:
+    """A file as a report names it: as it was typed, but never by its place on this machine.
+
+    Of an absolute path what lies below the present folder is left, else the bare name.
+    """
+    if path.is_absolute():
+        here = Path.cwd()
+        path = path.relative_to(here) if path.is_relative_to(here) else Path(path.name)
+    return path.as_posix()
 
 
 @dataclass(frozen=True)
 class CaseRecord:
     """A case as a report names it.
 
-    ``name`` of the file without its ending, ``file`` as the reader wrote it, ``text`` as read,
+    ``name`` of the file without its ending, ``file`` as `portable` names it, ``text`` as read,
     ``sha256`` of what it says after ``settings`` (address to value, from ``--set``).
     """
 
