@@ -10,7 +10,7 @@ from typing import Annotated
 
 import typer
 
-from meanfree.cli import check, collide, compare, equations, fit, limits, schedule, schema, size, start
+from meanfree.cli import check, collide, compare, equations, fit, limits, schedule, schema, size, start, window
 from meanfree.cli import run as predict
 from meanfree.cli.errors import report_errors
 
@@ -55,6 +55,7 @@ app.command("compare")(compare.compare)
 app.command("fit")(fit.fit)
 app.command("size")(size.size)
 app.command("schedule")(schedule.schedule)
+app.command("window")(window.window)
 app.command("schema")(schema.schema)
 
 

@@ -17,6 +17,7 @@ from meanfree.experiment.experiment import Experiment
 from meanfree.experiment.inputs import with_inputs
 from meanfree.experiment.plan import Solver
 from meanfree.integrate.events import first_crossing
+from meanfree.integrate.observables import At, HalfLife, Observable, ReactionTime
 from meanfree.integrate.run import Run
 from meanfree.integrate.single import integrate
 from meanfree.planning.goal import Goal
@@ -104,12 +105,97 @@ def read_many(
     ``conditions`` maps addresses to values in the unit of the file, each of shape (n,). ``until``
     [s] ends every run; None leaves it to the experiment. Returns one array a reading, of shape
     (n, columns); a condition that is impossible or fails gives NaN.
+
+    What the kernel can be asked for is asked of all conditions at once; the rest is read off
+    single runs.
     """
-    count = len(next(iter(conditions.values())))
-    found = [np.full((count, reading.columns), np.nan) for reading in readings]
     if until is not None:
         plan = replace(experiment.plan, until=Sourced(until, "s", dimension="time"), report_at=())
         experiment = replace(experiment, plan=plan)
+    found: dict[int, Floats] = {}
+    together = {i: r for i, r in enumerate(readings) if observables(r, until)}
+    if together:
+        try:
+            answers = _together(experiment, conditions, list(together.values()), until, solver)
+            found = dict(zip(together, answers, strict=True))
+        except InputError:  # some condition is impossible: one by one, then
+            found = {}
+    alone = {i: r for i, r in enumerate(readings) if i not in found}
+    if alone:
+        rest = _one_by_one(experiment, conditions, list(alone.values()), solver, progress, note)
+        found |= dict(zip(alone, rest, strict=True))
+    return [found[i] for i in range(len(readings))]
+
+
+AT = {
+    "conversion": "conversion",
+    "concentration": "concentration",
+    "partial pressure": "partial pressure",
+    "amount": "amount",
+    "pressure": "total pressure",
+    "temperature": "temperature",
+}
+"""Readings at times, and what the kernel calls them."""
+
+TOGETHER = 80
+"""Observables asked of one frame; more are asked in several goes."""
+
+MOMENTS = 48
+"""Times at which the pressure is looked at for its highest, evenly on a logarithmic scale."""
+
+
+def observables(reading: Reading, until: float | None) -> tuple[Observable, ...]:
+    """What to ask of the kernel for a reading; () where it cannot be asked."""
+    if reading.kind == "reaction time":
+        return (ReactionTime(reading.gas, reading.level),)
+    if reading.kind == "half-life":
+        return (HalfLife(reading.gas),)
+    if reading.kind in AT:
+        return tuple(At(AT[reading.kind], reading.gas, time) for time in reading.times)
+    if reading.kind == "highest pressure" and until is not None:
+        moments = np.geomspace(1e-6, 1.0, MOMENTS) * until
+        return tuple(At("total pressure", "", float(time)) for time in moments)
+    return ()
+
+
+def _together(
+    experiment: Experiment,
+    conditions: Mapping[str, Floats],
+    readings: Sequence[Reading],
+    until: float | None,
+    solver: Solver | None,
+) -> list[Floats]:
+    """All readings by the kernel."""
+    from meanfree.integrate.many import many
+
+    wanted = [observables(reading, until) for reading in readings]
+    asked = list(dict.fromkeys(one for group in wanted for one in group))
+    tolerance = experiment.plan.solver if solver is None else solver
+    known: dict[str, Floats] = {}
+    for first in range(0, len(asked), TOGETHER):
+        part = asked[first : first + TOGETHER]
+        frame = many(experiment, conditions, part, rtol=tolerance.rtol, atol=tolerance.atol)
+        known |= {name: frame[name].to_numpy(float) for one in part for name in one.columns}
+    answers = []
+    for reading, group in zip(readings, wanted, strict=True):
+        columns = np.stack([known[name] for one in group for name in one.columns], axis=1)
+        if reading.kind == "highest pressure":
+            columns = columns.max(axis=1, keepdims=True)
+        answers.append(columns)
+    return answers
+
+
+def _one_by_one(
+    experiment: Experiment,
+    conditions: Mapping[str, Floats],
+    readings: Sequence[Reading],
+    solver: Solver | None,
+    progress: Progress,
+    note: str,
+) -> list[Floats]:
+    """All readings off single runs."""
+    count = len(next(iter(conditions.values())))
+    found = [np.full((count, reading.columns), np.nan) for reading in readings]
     for i in range(count):
         progress(i, count, note)
         try:

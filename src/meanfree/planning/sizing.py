@@ -14,12 +14,14 @@ from meanfree.experiment.experiment import Experiment
 from meanfree.experiment.inputs import with_inputs
 from meanfree.experiment.plan import Solver
 from meanfree.integrate.run import Run
-from meanfree.planning.goal import SHARP, Goal, Reach, carried_out, reach
+from meanfree.planning.goal import SHARP, Goal, carried_out, reach
+from meanfree.planning.readings import Reading, read_many
 from meanfree.planning.why_not import Reason, why_not
 from meanfree.progress import Progress, silent
 
-POINTS = 25
-"""Values at which the range is looked at before roots are sought between them."""
+POINTS, MANY = 25, 121
+"""Values at which the range is looked at before roots are sought between them: for a yield, and
+for a conversion, which all runs give at once."""
 
 BEYOND = 20.0
 """Runs go on to this many times the wanted time, so that slower ends have a time to show."""
@@ -91,25 +93,20 @@ def size(
     """
     if not low < high:
         raise InputError.at("--between", f"{low:g} {high:g}", "a lower and a higher value")
-    values = grid(low, high, POINTS)
-    reaches: list[Reach | None] = []
-    for i, value in enumerate(values):
-        progress(i, POINTS + 5, "looking over the range")
-        run = _run(experiment, goal, within, address, float(value))
-        reaches.append(None if run is None else reach(run, goal, within))
-    if all(entry is None for entry in reaches):
+    values, times, reached = looked_over(experiment, goal, within, address, low, high, progress)
+    if not np.isfinite(reached).any():
         raise InputError.at("--between", f"{low:g} {high:g} {unit}".strip(), "possible values")
-    excess = np.array([np.nan if r is None else r.most - goal.level for r in reaches])
+    excess = reached - goal.level
     found = _roots(_function(experiment, goal, within, address), values, excess)
     roots = []
     for place, (value, _) in enumerate(found):
-        progress(POINTS + place, POINTS + 5, "running what was found")
+        progress(place, len(found), "running what was found")
         run = carried_out(with_inputs(experiment, {address: value}), goal, BEYOND * within, SHARP)
         time = reach(run, goal, within).time
         roots.append(Root(value, within if time is None else time, run))
     reason = None
     if not roots:
-        ends = [i for i in (0, POINTS - 1) if reaches[i] is not None]
+        ends = [i for i in (0, len(values) - 1) if np.isfinite(excess[i])]
         ends = ends or [int(np.nanargmax(excess))]
         near = min(ends, key=lambda i: abs(excess[i]))
         changed = with_inputs(experiment, {address: float(values[near])})
@@ -120,12 +117,46 @@ def size(
         within=within,
         goal=goal,
         values=values,
-        times=np.array([np.nan if r is None or r.time is None else r.time for r in reaches]),
-        reached=np.array([np.nan if r is None else r.most for r in reaches]),
+        times=times,
+        reached=reached,
         roots=tuple(roots),
         rising=tuple(rising for _, rising in found),
         reason=reason,
     )
+
+
+def looked_over(
+    experiment: Experiment,
+    goal: Goal,
+    within: float,
+    address: str,
+    low: float,
+    high: float,
+    progress: Progress = silent,
+) -> tuple[Floats, Floats, Floats]:
+    """Values over the range, the time to the goal [s] and the most reached within the time.
+
+    A conversion is asked of all values at once; a yield, which may fall again, run by run.
+    """
+    if goal.kind == "conversion":
+        values = grid(low, high, MANY)
+        readings = [
+            Reading("reaction time", goal.gas, goal.level),
+            Reading("conversion", goal.gas, times=(within,)),
+        ]
+        until = BEYOND * within
+        read = read_many(experiment, {address: values}, readings, until=until, solver=ROUGH)
+        return values, read[0][:, 0], read[1][:, 0]
+    values = grid(low, high, POINTS)
+    times, reached = np.full(POINTS, np.nan), np.full(POINTS, np.nan)
+    for i, value in enumerate(values):
+        progress(i, POINTS, "looking over the range")
+        run = _run(experiment, goal, within, address, float(value))
+        if run is not None:
+            found = reach(run, goal, within)
+            times[i] = np.nan if found.time is None else found.time
+            reached[i] = found.most
+    return values, times, reached
 
 
 def _run(
