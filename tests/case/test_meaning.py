@@ -256,6 +256,30 @@ def test_an_own_enthalpy_shifts_that_of_the_library(tmp_path: Path) -> None:
     assert float(shifted.entropy(480.0)) == float(known.entropy(480.0))
 
 
+LOSS = 'reaction = "A -> "\nlaw = "fixed"\nk = "1e-3 1/s"\n'
+
+
+def test_what_leaves_has_no_heat_of_its_own(tmp_path: Path) -> None:
+    """Stated, it is refused; where labels leave an adiabatic vessel, none is asked for."""
+    cp = "".join(f'[gases.{g}]\nheat_capacity = "50 J/mol/K"\n\n' for g in "AB")
+    steps = (
+        ('"isothermal"', '"adiabatic"'),
+        (
+            LAW,
+            LAW + 'heat = "60 kJ/mol"\n\n[[steps]]\nname = "leak"\n' + LOSS,
+        ),
+    )
+    experiment = load_edited(tmp_path, *steps, ("[run]", cp + "[run]"), base=LABELS).experiment
+    assert [step.heat is None for step in experiment.steps] == [False, True]
+    heated = steps[0], (LAW, steps[1][1] + 'heat = "1 kJ/mol"\n'), ("[run]", cp + "[run]")
+    with pytest.raises(InputError) as error:
+        load_edited(tmp_path, *heated, base=LABELS)
+    assert [str(problem).partition(": ")[2] for problem in error.value.problems] == [
+        "steps.leak.heat: found heat of a step that brings or takes gas; expected no heat: what "
+        "comes and goes carries the energy of the gas, and no other"
+    ]
+
+
 def test_labels_with_heat_may_be_adiabatic(tmp_path: Path) -> None:
     cp = "".join(f'[gases.{g}]\nheat_capacity = "50 J/mol/K"\n\n' for g in "AB")
     edits = (

@@ -230,17 +230,34 @@ def _bath(reading: StepReading) -> Bath | None:
 
 
 def _check_heat(reading: StepReading) -> None:
-    """With an energy balance, a step of labels must say what heat it releases."""
-    temperature, reaction = reading.temperature, reading.reaction
+    """With an energy balance, steps of labels must state their heat and light its energy.
+
+    Heat and photon together could mean that the light is counted once or twice. A step that brings
+    or takes gas has no heat of its own.
+    """
+    temperature, reaction, table = reading.temperature, reading.reaction, reading.table
+    if table.has("heat") and table.has("photon"):
+        expected = "one of them: heat is all that one mole of events leaves behind, light included"
+        reading.wrong("heat", "both heat and photon", expected)
+        return
+    if reaction is not None and not (reaction.reactants and reaction.products):
+        if table.has("heat"):
+            expected = "no heat: what comes and goes carries the energy of the gas, and no other"
+            reading.wrong("heat", "heat of a step that brings or takes gas", expected)
+        return
     if temperature is None or reaction is None or not has_energy_balance(temperature):
         return
-    if reading.table.has("heat"):
+    if table.has("heat"):
         return
     labels = [name for name in reaction.gases if (gas := reading.gases.get(name)) and gas.is_label]
     if labels:
         found = f"nothing, though the temperature follows the energy and {labels[0]} is a label"
         expected = 'the heat that the step releases, such as heat = "180 kJ/mol"'
         reading.wrong("heat", found, expected)
+    elif table.needs_light and not table.has("photon"):
+        found = "nothing, though the temperature follows the energy and light drives the step"
+        expected = 'what one event takes in, such as photon = "365 nm"; or heat, light included'
+        reading.wrong("photon", found, expected)
 
 
 def _check_valid(reading: StepReading) -> None:
