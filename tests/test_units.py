@@ -157,6 +157,7 @@ V = 'a volume such as "1.8 L"'
         ("2 kPa gauge", "pressure", '"2 kPa gauge", a gauge pressure', f"{P} (an absolute pressure: add the pressure of the room)"),
         ("5 kpa", "pressure", '"5 kpa", in which "kpa" is no unit known here', f'{P} (did you mean "kPa"?)'),
         ("5 Pas", "pressure", '"5 Pas", in which "Pas" is no unit known here', f'{P} (did you mean "Pa"?)'),
+        ("5 Tor", "pressure", '"5 Tor", in which "Tor" is no unit known here', f'{P} (did you mean "torr"?)'),
         ("2 J/degC", "heat capacity", '"2 J/degC", with a temperature scale inside a compound unit', 'a heat capacity such as "40 J/K" (K instead)'),
         ("nan K", "temperature", '"nan K", which is not finite', f"{T} (a finite number)"),
         ("inf K", "temperature", '"inf K", which is not finite', f"{T} (a finite number)"),

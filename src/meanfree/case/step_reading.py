@@ -108,7 +108,8 @@ class StepReading:
         if self.reaction.bath:
             self.wrong("reaction", "+ M with a collision law", f"{expected}, without M")
         elif total != 2 or any(n != int(n) for _, n in molecules):
-            self.wrong("reaction", f"{total:g} molecules on the left", expected)
+            word = "molecule" if total == 1 else "molecules"
+            self.wrong("reaction", f"{total:g} {word} on the left", expected)
         elif self.table.orders is not None:
             self.wrong("orders", "orders with a collision law", "no orders: they are 1 and 1, or 2")
         for name, _ in molecules:

@@ -156,7 +156,9 @@ def _near(name: str) -> str:
     if name in _MEANT:
         return f'did you mean "{_MEANT[name]}"?'
     folded = {unit.lower(): unit for unit in _COMMON}
+    # A letter's case is the least of slips: "Tor" is nearer to "torr" than to "mTorr".
     near = folded.get(name.lower()) or next(
-        iter(difflib.get_close_matches(name, _COMMON, n=1, cutoff=0.6)), ""
+        (folded[unit] for unit in difflib.get_close_matches(name.lower(), folded, n=1, cutoff=0.6)),
+        "",
     )
     return f'did you mean "{near}"?' if near else ""

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING, Annotated, Any, Literal
+from typing import TYPE_CHECKING, Annotated, Any, ClassVar, Literal
 
 from pydantic import Field
 
@@ -18,6 +18,7 @@ if TYPE_CHECKING:
 class PhotolysisStep(StepTable):
     """J times the concentration."""
 
+    needs_light: ClassVar[bool] = True
     law: Literal["photolysis"]
     J: Annotated[Any, Later("8e-3 1/s")] = Field(description='such as "8e-3 1/s"')
     on: list[Time] = Field(

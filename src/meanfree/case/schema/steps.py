@@ -62,6 +62,7 @@ class StepTable(Table):
     }
     may_come_from_nothing: ClassVar[bool] = False
     may_go_to_nothing: ClassVar[bool] = False
+    needs_light: ClassVar[bool] = False
     name: Line = Field(description='a name of its own, such as "decomposition"')
     reaction: Line = Field(description='the reaction, such as "2 NOCl -> 2 NO + Cl2"')
     law: Any = Field(description="the rate law")
@@ -76,7 +77,8 @@ class StepTable(Table):
     )
     reverse: Any = Field(None, description='"thermochemistry", or a table with Kp, Kc or K and at')
     heat: MolarEnergy | None = Field(
-        None, description="heat that one mole of events releases (positive: exothermic)"
+        None,
+        description="heat that one mole of events releases, light included (positive: exothermic)",
     )
     photon: Annotated[Sourced, Quantity("photon energy")] | None = Field(
         None, description="energy or wavelength of the light that one event takes in"
