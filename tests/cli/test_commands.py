@@ -92,6 +92,73 @@ Assumed
     )
 
 
+RICH = """
+[[steps]]
+name = "loss"
+reaction = "Cl -> 0.5 Cl2"
+law = "wall"
+uptake = 0.01
+area = "500 cm^2"
+
+[[steps]]
+name = "split"
+reaction = "Cl2 + M -> 2 Cl + M"
+law = "falloff"
+k0 = { A = "1e-12 cm^3/s", Ea = "200 kJ/mol" }
+kinf = { A = "1e15 1/s", Ea = "230 kJ/mol" }
+broadening = "none"
+partners = { Ar = 0.5, others = 2 }
+uncertainty = { factor = 2 }
+valid = ["400 K", "900 K"]
+
+[[steps]]
+name = "abstraction"
+reaction = "Cl + NOCl -> Cl2 + NO"
+law = "cross-section"
+shape = "points"
+points = [["0 kJ/mol", "0.1 nm^2"], ["50 kJ/mol", "0.2 nm^2"]]
+beyond = "constant"
+
+[[samples]]
+at = "10 min"
+volume = "5 mL"
+
+[[samples]]
+at = "1 h"
+fraction = 0.1
+
+[[flows]]
+kind = "effusion"
+hole = "0.01 mm^2"
+
+[[flows]]
+kind = "dilution"
+rate = "1e-5 1/s"
+entering = { Ar = 1 }
+"""
+
+
+def test_check_says_what_stands_beside_the_numbers(capsys: Printed, case: Path) -> None:
+    case.write_text(GOOD.replace('"auto"', '"2 h"') + RICH)
+    assert run(["check", str(case)]) == 0
+    said = capsys.readouterr().out
+    for line in (
+        "    wall, form uptake only: uptake = 0.01, area = 500 cm² (counts each event)",
+        "    M counts 0.5 for Ar, 2 for all others",
+        "    k good to ×/÷ 2 at 1 standard deviation",
+        "    found from 400 K to 900 K",
+        "Samples\n  5 mL of gas drawn at 10 min\n  10 % of the gas drawn at 1 h\n",
+        "Flows\n  effusion: each gas leaves through 0.01 mm², into vacuum\n"
+        "  dilution: all gases leave alike, 1 × 10⁻⁵ 1/s, and Ar replaces them\n",
+        "  The gas is ideal and well mixed, and nothing flows but what is stated.\n"
+        "  Samples leave at once, as they are in the vessel, and do not come back.\n",
+    ):
+        assert f"{line}\n" in f"{said}\n", said
+    assert "    cross-section, shape points, beyond constant: points.0.energy = 0 kJ/mol" in said
+    assert "    falloff, broadening none: k0.A" in said
+    assert "nothing leaks" not in said
+
+
 def test_check_as_json(capsys: Printed, case: Path) -> None:
     assert run(["check", str(case), "--json", "--set", "fill.gases.Ar=200 torr"]) == 0
     summary = json.loads(capsys.readouterr().out)

@@ -10,6 +10,8 @@ from small_runs import dimerisation, nitrosyl_chloride
 from meanfree.constants import TORR
 from meanfree.experiment.experiment import Experiment
 from meanfree.experiment.fill import Fill, Portion
+from meanfree.experiment.flows import Flow
+from meanfree.experiment.samples import Sample
 from meanfree.gases.identity import find_gas
 from meanfree.integrate.single import integrate
 from meanfree.report.cautions import GUIDANCE, assumptions_of, cautions_of, grave_cautions
@@ -94,3 +96,20 @@ def test_assumptions_follow_the_experiment() -> None:
     assert any("rigid" in text for text in bulb)
     assert any("holds 1.000 bar" in text for text in piston)
     assert "One-way: dimerisation. Nothing brings their products back." in piston
+
+
+def test_what_flows_and_is_drawn_is_no_tight_vessel() -> None:
+    flow = Flow("pumping", rate=Sourced(1e-3, "1/s", dimension="frequency"))
+    minute = Sourced(60.0, "min", dimension="time")
+    sample = Sample(minute, fraction=Sourced(0.05))
+    for case in (nitrosyl_chloride(), dimerisation()):
+        said = list(assumptions_of(replace(case, flows=(flow, flow), samples=(sample,))))
+        assert not any("tight" in text or "closed" in text for text in said)
+        words = "pumping: all gases leave alike, 0.001 1/s"
+        assert (
+            f"It leaks as stated, which is no conversion, and not otherwise: {words}; {words}."
+        ) in said
+        assert "Samples leave at once, at the temperature of the gas: 5 % of the gas drawn at " in (
+            " ".join(said)
+        )
+        assert any("tight" in text for text in assumptions_of(case))

@@ -13,6 +13,8 @@ from meanfree.experiment.mechanism import GivenEquilibrium, Step
 from meanfree.experiment.temperature import Exchange, Program
 from meanfree.gases.gas import Gas
 from meanfree.report import wording
+from meanfree.report.flow_words import flow_words, sample_words
+from meanfree.report.law_words import choices, conditions
 from meanfree.sourced import Sourced
 
 
@@ -48,12 +50,14 @@ class StepUnderstood(_Record):
     name: str
     reaction: str
     law: str
+    choices: list[str]
     numbers: list[str]
     counts: str
     order: float
     orders: dict[str, float]
     bath: bool
     reverse: str | None
+    conditions: list[str]
     source: str
 
 
@@ -79,6 +83,8 @@ class Understood(_Record):
     fill: list[FilledUnderstood]
     gases: list[GasUnderstood]
     steps: list[StepUnderstood]
+    samples: list[str]
+    flows: list[str]
     run: str
     watch: str | None
     assumptions: list[str]
@@ -106,6 +112,8 @@ def understood(case: LoadedCase) -> Understood:
         fill=_fill(experiment),
         gases=[_gas(gas) for gas in experiment.gases],
         steps=[_step(step, experiment) for step in experiment.steps],
+        samples=[sample_words(sample) for sample in experiment.samples],
+        flows=[flow_words(flow, experiment) for flow in experiment.flows],
         run=_run(experiment),
         watch=experiment.watched,
         assumptions=_assumptions(experiment),
@@ -133,6 +141,8 @@ def _vessel(experiment: Experiment) -> str:
         parts.append(f"{width}inner surface {wording.number(area * 1e4)} cm²")
     if vessel.rated_pressure is not None:
         parts.append(f"rated {_given(vessel.rated_pressure)}")
+    if vessel.gauge_resolution is not None:
+        parts.append(f"gauge reads to {_given(vessel.gauge_resolution)}")
     if vessel.dead_space is not None:
         dead = vessel.dead_space
         parts.append(f"dead space {_given(dead.volume)} at {_given(dead.temperature)}")
@@ -213,12 +223,14 @@ def _step(step: Step, experiment: Experiment) -> StepUnderstood:
         name=step.name,
         reaction=wording.reaction(step.reaction, experiment),
         law=step.law.word,
+        choices=choices(step, experiment),
         numbers=numbers,
         counts=step.counts,
         order=step.order,
         orders=step.orders,
         bath=step.bath is not None,
         reverse=reverse,
+        conditions=list(conditions(step, experiment)),
         source=step.source,
     )
 
@@ -237,6 +249,10 @@ def _assumptions(experiment: Experiment) -> list[str]:
     initial = experiment.temperature.initial
     filling = experiment.fill.temperature(initial)
     lines = ["The gas is ideal and well mixed, and nothing leaks."]
+    if experiment.flows:
+        lines = ["The gas is ideal and well mixed, and nothing flows but what is stated."]
+    if experiment.samples:
+        lines.append("Samples leave at once, as they are in the vessel, and do not come back.")
     if filling != initial and experiment.vessel.is_rigid:
         lines.append(
             f"Filled at {wording.temperature(filling)}, the vessel is brought to "

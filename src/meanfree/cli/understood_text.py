@@ -17,6 +17,9 @@ def as_text(summary: Understood) -> str:
     lines += ["", "Steps"]
     for step in summary.steps:
         lines += _step_lines(step)
+    for heading, phrases in (("Samples", summary.samples), ("Flows", summary.flows)):
+        if phrases:
+            lines += ["", heading, *(f"  {phrase}" for phrase in phrases)]
     lines += ["", "Assumed", *(f"  {line}" for line in summary.assumptions)]
     if summary.notes:
         lines += ["", "Notes", *(f"  {note}" for note in summary.notes)]
@@ -73,11 +76,12 @@ def _step_lines(step: StepUnderstood) -> list[str]:
     counts = "each event" if step.counts == "events" else step.counts
     lines = [
         f"  {step.name}: {step.reaction}",
-        f"    {step.law}: {', '.join(step.numbers)} (counts {counts})",
+        f"    {', '.join([step.law, *step.choices])}: {', '.join(step.numbers)} (counts {counts})",
         f"    order {step.order + step.bath:g} ({orders}{bath})",
     ]
     if step.reverse:
         lines.append(f"    reverse by {step.reverse}")
+    lines += [f"    {condition}" for condition in step.conditions]
     if step.source:
         lines.append(f"    source: {step.source}")
     return lines

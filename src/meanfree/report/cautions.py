@@ -10,6 +10,7 @@ from meanfree.gases.gas import Gas
 from meanfree.integrate.run import Run, Status
 from meanfree.rates.collision import Collision
 from meanfree.report import wording
+from meanfree.report.flow_words import flow_words, sample_words
 from meanfree.report.hazards import condensation_in, dangers_in
 from meanfree.report.kinetics import RateConstant
 
@@ -18,11 +19,15 @@ GUIDANCE = (
     "flammable or toxic gases."
 )
 
+ROUNDING = 1e-9
+"""A temperature in degrees may come out this far, relatively, beyond the end of a range."""
+
 
 def grave_cautions(run: Run, rows: Sequence[RateConstant]) -> Iterator[str]:
     """Those that a reader must see before any figure."""
     yield from _of_pressure(run)
     yield from _of_suspects(rows)
+    yield from _of_laws(run)
     yield from condensation_in(run)
 
 
@@ -30,13 +35,16 @@ def cautions_of(run: Run, rows: Sequence[RateConstant]) -> Iterator[str]:
     """Cautions of a run, the gravest first, the general one last."""
     yield from grave_cautions(run, rows)
     yield from _of_orders(run)
-    yield from _of_ranges(run)
+    yield from _of_energies(run)
     for gas in run.experiment.gases:
         for caution in cautions_about(gas):
             yield f"{wording.chemical(gas)}: {wording.clean(caution)}."
     yield from dangers_in(run)
-    if run.status is Status.HORIZON:
-        yield f"The run is {run.status.value}; nothing here says where it ends."
+    if run.status in (Status.HORIZON, Status.RESTLESS):
+        yield (
+            f"The run is {run.status.value}; nothing here says where it ends. A time in run.until "
+            "ends it where you want it."
+        )
     yield GUIDANCE
 
 
@@ -76,20 +84,21 @@ def _of_orders(run: Run) -> Iterator[str]:
             )
 
 
-def _of_ranges(run: Run) -> Iterator[str]:
-    T = run.temperature(run.trajectory.times)
-    low, high = float(T.min()), float(T.max())
-    span = wording.temperature(low)
-    if high - low > 0.05:
-        span = f"{span} to {wording.temperature(high)}"
+def _of_laws(run: Run) -> Iterator[str]:
+    """Steps used outside the range in which their law was found."""
+    low, high, span = _span(run)
     for step in run.experiment.steps:
         if step.valid is None:
             continue
         lowest, highest = (limit.value for limit in step.valid)
-        if low < lowest or high > highest:
+        if low < lowest * (1 - ROUNDING) or high > highest * (1 + ROUNDING):
             stated = f"{wording.temperature(lowest)} to {wording.temperature(highest)}"
             name = wording.clean(step.name)
             yield f"Step {name} is used at {span}; its source holds for {stated}."
+
+
+def _of_energies(run: Run) -> Iterator[str]:
+    low, high, span = _span(run)
     for gas in run.experiment.gases:
         if gas.thermochemistry is None:
             continue
@@ -100,6 +109,14 @@ def _of_ranges(run: Run) -> Iterator[str]:
             )
             name = wording.chemical(gas)
             yield f"The energies of {name} are used at {span}; they hold for {stated}."
+
+
+def _span(run: Run) -> tuple[float, float, str]:
+    """Lowest and highest temperature of a run [K], and both in words."""
+    T = run.temperature(run.trajectory.times)
+    low, high = float(T.min()), float(T.max())
+    text = wording.temperature(low)
+    return low, high, f"{text} to {wording.temperature(high)}" if high - low > 0.05 else text
 
 
 def assumptions_of(experiment: Experiment) -> Iterator[str]:
@@ -130,10 +147,18 @@ def assumptions_of(experiment: Experiment) -> Iterator[str]:
 def _of_vessel(experiment: Experiment) -> Iterator[str]:
     vessel = experiment.vessel
     if vessel.is_rigid:
-        yield "The vessel is closed, tight and rigid: its volume does not change."
+        tight = "rigid" if experiment.flows else "closed, tight and rigid"
+        yield f"The vessel is {tight}: its volume does not change."
     else:
         shown = wording.pressure(experiment.held_pressure, wording.units_in_use(experiment))
-        yield f"The vessel is closed and tight; the piston follows at once and holds {shown}."
+        tight = "The" if experiment.flows else "The vessel is closed and tight; the"
+        yield f"{tight} piston follows at once and holds {shown}."
+    if experiment.flows:
+        phrases = "; ".join(flow_words(flow, experiment) for flow in experiment.flows)
+        yield f"It leaks as stated, which is no conversion, and not otherwise: {phrases}."
+    if experiment.samples:
+        drawn = "; ".join(sample_words(sample) for sample in experiment.samples)
+        yield f"Samples leave at once, at the temperature of the gas: {drawn}."
     if vessel.dead_space is not None:
         volume = wording.as_written(vessel.dead_space.volume)
         at = wording.temperature(vessel.dead_space.temperature.value)
