@@ -53,3 +53,17 @@ def test_beside_a_run(tmp_path, reaction, law, edits, exact):
     # in any order, and at one time only
     assert predict(experiment, T[::-1]).pressure == pytest.approx(ours.pressure[::-1], rel=1e-12)
     assert predict(experiment, np.zeros(1)).pressure == pytest.approx(ours.pressure[:1], rel=1e-12)
+
+
+def test_consecutive_steps_beside_a_run(tmp_path):
+    text = case_text("A -> 2 B", 'law = "fixed"\nk = "1e-3 1/s"').replace(
+        '"A", "B"', '"A", "B", "C"'
+    )
+    text += '[[steps]]\nname = "e"\nreaction = "B -> 3 C"\nlaw = "fixed"\nk = "4e-3 1/s"\n'
+    text += '[run]\nuntil = "4000 s"\n'
+    experiment = loaded(tmp_path, text, {}).experiment
+    ours, run = predict(experiment, T), integrate(experiment)
+    assert is_exact(experiment)
+    most = run.concentrations(T).max()
+    for i, gas in enumerate(run.system.gases):
+        assert ours.concentration(gas) == pytest.approx(run.concentrations(T)[i], abs=2e-8 * most)

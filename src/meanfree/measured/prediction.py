@@ -19,6 +19,9 @@ from meanfree.errors import ComputationError
 from meanfree.experiment.experiment import Experiment
 from meanfree.experiment.plan import Solver
 
+CONSECUTIVE = "consecutive first order"
+"""The name under which that integrated law is recognised."""
+
 SOLVER = Solver("LSODA", rtol=1e-10, atol=1e-16)
 """LSODA reaches 1e-9 or so at this: differences of 1e-4 in a parameter then keep four digits."""
 
@@ -85,10 +88,13 @@ def is_exact(experiment: Experiment) -> bool:
 
 def _by_closed_form(system: System, times: Floats) -> Prediction | None:
     """One reaction with an integrated law: all gases follow from the one it gives."""
-    one_way = system.n_steps == 1 or (system.n_steps == 2 and len(system.reverses.step) == 1)
-    form = recognise(system) if one_way else None
+    if system.n_steps > 2:
+        return None
+    form = recognise(system)
     if form is None:
         return None
+    if form.name == CONSECUTIVE:
+        return _consecutive(system, form.amount(times), system.gases.index(form.gas), times)
     place = system.gases.index(form.gas)
     net = np.zeros(system.n_gases)
     for gas, number in system.net.row(0):
@@ -102,6 +108,21 @@ def _by_closed_form(system: System, times: Floats) -> Prediction | None:
     if system.volume_varies:
         spread = R * T / system.held_pressure * x.sum(axis=0)
     return Prediction(system, x, spread, T, np.ones(len(times)))
+
+
+def _consecutive(system: System, second: Floats, place: int, times: Floats) -> Prediction:
+    """A → B → …, both first order: B is given, A decays by itself, the rest follows."""
+    T = np.full(len(times), system.initial_temperature)
+    k = ArrayEquations(system).coefficients(float(T[0]), 1.0, np.ones(2)).k
+    first = system.orders.row(0)[0][0]
+    one, two = dict(system.net.row(0)), dict(system.net.row(1))
+    left = float(system.initial_x[first]) * np.exp(one[first] * k[0] * times)
+    extent = (left - system.initial_x[first]) / one[first]
+    further = (second - system.initial_x[place] - one[place] * extent) / two[place]
+    x = np.repeat(system.initial_x[:, None], len(times), axis=1)
+    for gas in range(system.n_gases):
+        x[gas] += one.get(gas, 0.0) * extent + two.get(gas, 0.0) * further
+    return Prediction(system, x, np.ones(len(times)), T, np.ones(len(times)))
 
 
 def _of_order_zero(system: System, times: Floats) -> Prediction | None:
