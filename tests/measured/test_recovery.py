@@ -62,9 +62,8 @@ def test_recovery(tmp_path, name, size):
         values = truth + random.normal(0.0, sd, len(t))
         run = made_up(case, t, values, signal=signal, sd=sd if given else None, unit="")
         found = fit(FitRequest((run,), tuple(Asked(address) for address in addresses)))
-        covered += [
-            one.low <= true <= one.high for one, true in zip(found.estimates, known, strict=True)
-        ]
+        pairs = list(zip(found.estimates, known, strict=True))
+        covered += [one.low <= true <= one.high for one, true in pairs]
         scores.append([math.log(one.value / true) * one.value / one.stderr for one, true in pairs])
     allowed = 3.5 * math.sqrt(0.95 * 0.05 / repeats)
     assert covered / repeats == pytest.approx(np.full(len(addresses), 0.95), abs=allowed)
