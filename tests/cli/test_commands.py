@@ -151,7 +151,7 @@ def test_check_says_what_stands_beside_the_numbers(capsys: Printed, case: Path) 
         "Flows\n  effusion: each gas leaves through 0.01 mm², into vacuum\n"
         "  dilution: all gases leave alike, 1 × 10⁻⁵ 1/s, and Ar replaces them\n",
         "  The gas is ideal and well mixed, and nothing flows but what is stated.\n"
-        "  Samples leave at once, as they are in the vessel, and do not come back.\n",
+        "  Samples leave at once, as they are in the vessel, and do not come back.",
     ):
         assert f"{line}\n" in f"{said}\n", said
     assert "    cross-section, shape points, beyond constant: points.0.energy = 0 kJ/mol" in said
