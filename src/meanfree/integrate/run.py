@@ -35,6 +35,7 @@ class Status(Enum):
     CONVERTED = "99.9 % of the watched gas was converted"
     SETTLED = "99.9 % of the way to where it settles"
     HORIZON = "still moving at the longest time an automatic run takes"
+    RESTLESS = "still moving after the most steps an automatic run takes"
     FAILED = "the integrator failed"
 
 
@@ -58,7 +59,7 @@ class Run:
     Times are in s; every method takes an array of times and gives one entry a time along the
     last axis, SI units. ``beyond`` says where energies were used a little beyond their range, or
     as far as the case allows. ``settled_state`` is where the vessel comes to rest, where that is
-    known.
+    known; NaN for a gas that goes on after the watched one has come to rest.
     """
 
     experiment: Experiment

@@ -19,6 +19,47 @@ HORIZON = 1e17
 """The longest automatic run [s]: about three billion years."""
 
 
+MOST_STEPS = 30_000
+"""Steps after which an automatic run is ended as it is: one that swings for ever never rests.
+
+Ordinary runs take some hundreds; common practice, no source.
+"""
+
+
+def bearing_on(system: System, watched: int) -> list[int]:
+    """Gases whose amounts bear on the watched one, itself among them.
+
+    Where gas flows in, a product can pile up for ever while the watched gas has long come to
+    rest; what no rate on the way to the watched gas depends on need not rest with it.
+    """
+    from meanfree.equations.templates import depends_on
+
+    everything = list(range(system.n_gases))
+    if not len(system.open_steps) or system.volume_varies or system.temperature_varies:
+        return everything
+    of_all = set(np.flatnonzero(system.bath >= 0).tolist())
+    for block in system.blocks:
+        if depends_on(block.law) - {"T"}:
+            of_all.update(block.steps.tolist())
+    of_all.update(
+        int(j)
+        for j, forward in zip(system.reverses.step, system.reverses.forward, strict=True)
+        if int(forward) in of_all
+    )
+    bearing, pending = {watched}, [watched]
+    changed_by: dict[int, list[int]] = {}
+    for j, gas in zip(system.net.owner.tolist(), system.net.column.tolist(), strict=True):
+        changed_by.setdefault(gas, []).append(j)
+    while pending:
+        for j in changed_by.get(pending.pop(), ()):
+            if j in of_all:
+                return everything
+            needed = {gas for gas, _ in (*system.orders.row(j), *system.guards.row(j))}
+            pending.extend(needed - bearing)
+            bearing |= needed
+    return sorted(bearing)
+
+
 class Settling:
     """Watches a run after each step; remembers why it ended it.
 
@@ -33,6 +74,9 @@ class Settling:
         self.states: list[Floats] = [system.initial_state]
         self.most = np.abs(system.initial_state)
         self.reason = ""
+        gases = list(range(system.n_gases)) if watched is None else bearing_on(system, watched)
+        self.bearing = gases
+        self.kept = np.r_[gases, system.volume_index : system.size].astype(np.intp)
         # n/(theta n0) is what counts: drawn samples take their share without converting it.
         self.goal = (1.0 - CONVERTED) * float(np.prod([s.retained for s in system.segments]))
 
@@ -49,6 +93,9 @@ class Settling:
         if last_segment and self._still(t, y):
             self.reason = "settled"
             return True
+        if len(self.times) > MOST_STEPS:
+            self.reason = "restless"
+            return True
         return False
 
     def _still(self, t: float, y: Floats) -> bool:
@@ -61,9 +108,7 @@ class Settling:
 
     def _movement(self, begin: int, y: Floats) -> Floats:
         """Largest change of each gas (and v, T) since a step, over the most ever there."""
-        n, system = self.system.n_gases, self.system
-        kept = np.r_[0:n, system.volume_index : system.size]
-        since = np.array(self.states[begin:])[:, kept]
-        most = self.most[kept]
-        change = np.abs(since - y[kept]).max(axis=0)
+        since = np.array(self.states[begin:])[:, self.kept]
+        most = self.most[self.kept]
+        change = np.abs(since - y[self.kept]).max(axis=0)
         return np.asarray(change / np.where(most > 0, most, 1.0), float)

@@ -42,6 +42,8 @@ def integrate(experiment: Experiment, solver: Solver | None = None) -> Run:
     invariants = check(experiment, system, stepped.trajectory, solver.rtol)
     if invariants.failures:
         raise ComputationError("the run failed its own checks: " + "; ".join(invariants.failures))
+    states = stepped.trajectory(np.array([0.0, stepped.trajectory.end]))[: system.n_gases]
+    moved = bool(np.any(states[:, 0] != states[:, -1]))
     beyond = [
         *beyond_known_energies(experiment, system, stepped.trajectory),
         *beyond_laws(experiment, system, stepped.trajectory),
@@ -54,7 +56,7 @@ def integrate(experiment: Experiment, solver: Solver | None = None) -> Run:
         system,
         stepped.trajectory,
         status,
-        _message(experiment, status),
+        _message(experiment, status, moved),
         stepped.counters,
         solver.method,
         solver.rtol,
@@ -84,10 +86,11 @@ def _open_ended(
         assert end is not None, "the watcher saw the crossing"
         cut = replace(stepped, trajectory=trajectory.cut(max(end, min(extra, trajectory.end))))
         return cut, Status.CONVERTED, None
-    rest = trajectory(trajectory.end)[:, 0]
-    status = Status.SETTLED if stepped.stopped else Status.HORIZON
-    if status is Status.HORIZON:
-        return stepped, status, None
+    if settling.reason != "settled":
+        restless = settling.reason == "restless"
+        return stepped, Status.RESTLESS if restless else Status.HORIZON, None
+    status, rest = Status.SETTLED, trajectory(trajectory.end)[:, 0]
+    rest[np.setdiff1d(np.arange(system.n_gases), settling.bearing)] = np.nan
     end = _way_to_rest(system, stepped, rest, place)
     if end is None:
         return stepped, status, rest
@@ -101,7 +104,7 @@ def _way_to_rest(system: System, stepped: Stepped, rest: Floats, place: int | No
     start = system.initial_x
     moving = [place] if place is not None and abs(start[place] - rest[place]) > 0 else None
     if moving is None:
-        far = np.abs(start - rest[: system.n_gases])
+        far = np.nan_to_num(np.abs(start - rest[: system.n_gases]))
         moving = [int(i) for i in np.flatnonzero(far > 1e-6 * max(far.max(), 1e-300))]
     times = []
     for i in moving:
@@ -115,10 +118,12 @@ def _way_to_rest(system: System, stepped: Stepped, rest: Floats, place: int | No
     return max(times, default=None)
 
 
-def _message(experiment: Experiment, status: Status) -> str:
+def _message(experiment: Experiment, status: Status, moved: bool) -> str:
     watched = experiment.watched
     if status is Status.CONVERTED:
         return f"stopped when 99.9 % of {watched} was converted"
+    if status is Status.SETTLED and not moved:
+        return "stopped: nothing moves"
     if status is Status.SETTLED and watched is not None:
         return f"stopped when {watched} had gone 99.9 % of the way to where it settles"
     return f"stopped: {status.value}"
