@@ -5,6 +5,7 @@ from __future__ import annotations
 import kernel_problems as problems
 import numpy as np
 import pytest
+from benchmark_problems import hires
 
 from meanfree.equations.build import build_system
 from meanfree.kernel.engine import Kernel, Task
@@ -39,6 +40,18 @@ def test_published_end_of_rober() -> None:
         kept = Kernel(system).run(Variation(system, 1), Task(np.array([1e11]), rtol=rtol))
         assert kept.marks[0, 0] == Ending.REACHED
         np.testing.assert_allclose(kept.ends[0, :3], published, rtol=bound)
+
+
+def test_published_end_of_hires() -> None:
+    """Mazzia and Magherini, Test Set for IVP Solvers, release 2.4, 2008: HIRES at t = 321.8122."""
+    system = build_system(hires())
+    published = [
+        0.7371312573325668e-3, 0.1442485726316185e-3, 0.5888729740967575e-4, 0.1175651343283149e-2,
+        0.2386356198831331e-2, 0.6238968252742796e-2, 0.2849998395185769e-2, 0.2850001604814231e-2,
+    ]  # fmt: skip
+    kept = Kernel(system).run(Variation(system, 1), Task(np.array([321.8122]), rtol=1e-10))
+    # At 1e-10 a step, on the slope of a front that moves with the errors made before it.
+    np.testing.assert_allclose(kept.ends[0, :8], published, rtol=1e-7)
 
 
 @pytest.mark.parametrize("name", TABLEAUX)

@@ -94,8 +94,7 @@ def module_of(source: str, say: Say = silent) -> ModuleType:
 
     A cache that cannot be written or is damaged is said and replaced by a temporary folder.
     """
-    digest = hashlib.sha256(f"{versions()}\n{source}".encode()).hexdigest()[:32]
-    name = f"meanfree_kernel_{digest}"
+    name = file_of(source).stem
     if name in sys.modules:
         return sys.modules[name]
     folder = user_cache()
@@ -104,6 +103,12 @@ def module_of(source: str, say: Say = silent) -> ModuleType:
     except (OSError, ImportError, SyntaxError, ValueError, EOFError, AttributeError) as error:
         say(f"kernels are compiled into a temporary folder: {folder} cannot be used ({error})")
     return _imported(_written(temporary_cache(), name, source), name)
+
+
+def file_of(source: str) -> Path:
+    """Where the module with this source lies, once it has been written."""
+    digest = hashlib.sha256(f"{versions()}\n{source}".encode()).hexdigest()[:32]
+    return user_cache() / f"meanfree_kernel_{digest}.py"
 
 
 def _written(folder: Path, name: str, source: str) -> Path:

@@ -43,6 +43,7 @@ ERROR, BAD, FIRST, CROSSED, DEEPEST, NEGATIVE = (
 )
 TRIED, REFUSALS, MOST_STEPS = SLOT["tried"], SLOT["refusals"], SLOT["most_steps"]
 LEDGER, WORST = SLOT["atol_ledger"], SLOT["worst"]
+AUTOMATIC, SNAP_AT = SLOT["automatic"], SLOT["snap_at"]
 
 FIRST_STEP = 0.02
 """First step over the time in which a derivative changes; chosen by fewest steps on ROBER."""
@@ -109,6 +110,7 @@ def advance(
                         some_fresh = True
                 elif I[AGAIN, l] == 2:
                     I[AGAIN, l] = 1
+                    W[AUTOMATIC, l] = 1.0
                     lane.load(p, W, I, job, I[WHO, l], l)
                     some_fresh = True
                 elif W[T, l] >= W[STOP, l]:
@@ -125,7 +127,8 @@ def _enter(
     I[WHO, l], I[AGAIN, l] = c, 0
     W[DEEPEST, l] = W[TRIED, l] = W[REFUSALS, l] = 0.0
     lane.load(p, W, I, job, c, l)
-    W[DUE, l] = events.NEVER
+    W[DUE, l] = W[SNAP_AT, l] = events.NEVER
+    W[AUTOMATIC, l] = 1.0 if p.automatic and job.breaks.shape[1] > 0 else -1.0
     if p.n_functionals > 0:
         events.begin(p, W, I, ask, out, l)
     if p.automatic:

@@ -24,13 +24,14 @@ MOVING = 1e-6
 
 PENDING, CONVERTED, SETTLED = int(Ending.PENDING), int(Ending.CONVERTED), int(Ending.SETTLED)
 T, H, CROSSED, STEPS = SLOT["t"], SLOT["h"], SLOT["crossed"], SLOT["steps"]
+SNAP_AT = SLOT["snap_at"]
 
 
 @compiled
 def begin_watch(p: Places, W: Floats, I: Longs, l: int) -> None:
     """Forget what another condition left in this lane."""
     I[SNAPS, l] = 0
-    W[CROSSED, l] = -1.0
+    W[CROSSED, l], W[SNAP_AT, l] = -1.0, 0.0
     for i in range(p.size):
         W[p.most + i, l] = abs(W[p.state + i, l])
 
@@ -38,6 +39,9 @@ def begin_watch(p: Places, W: Floats, I: Longs, l: int) -> None:
 @compiled
 def watch(p: Places, W: Floats, I: Longs, table: Floats, ends: Floats, last: bool, l: int) -> int:
     """After an accepted step, before it is taken over: why the run ends here, or PENDING.
+
+    Called when the watched gas comes to its goal and when a state is to be remembered; after every
+    step where segments follow one another.
 
     ``last`` is True in the last segment.
     """
@@ -79,14 +83,14 @@ def _cross(
 def _rests(p: Places, W: Floats, I: Longs, l: int) -> bool:
     """True where nothing moved since t/WINDOW, judged each time a state is remembered."""
     t, count, width = W[T, l] + W[H, l], I[SNAPS, l], p.size + 1
-    if W[STEPS, l] == 4:
+    if W[STEPS, l] >= 4 and count > 0:
         nothing = True
         for i in range(p.size):
             if _counts(p, i) and W[p.new + i, l] != W[p.begin + i, l]:
                 nothing = False
         if nothing:
             return True
-    if count > 0 and t < SPACING * W[p.snaps + ((count - 1) % SNAPSHOTS) * width + p.size, l]:
+    if t < W[SNAP_AT, l]:
         return False
     rests = False
     for back in range(1, min(count, SNAPSHOTS) + 1):
@@ -101,6 +105,7 @@ def _rests(p: Places, W: Floats, I: Longs, l: int) -> bool:
     for i in range(p.size):
         W[place + i, l] = W[p.new + i, l]
     I[SNAPS, l] = count + 1
+    W[SNAP_AT, l] = SPACING * t
     return rests
 
 

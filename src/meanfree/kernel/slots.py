@@ -18,15 +18,17 @@ SCALARS = (
     "error", "factor", "accepted", "reached", "next_h", "attention", "negative",
     "refused", "tried", "refusals", "steps", "deepest",
     "rtol", "atol_x", "atol_ledger", "atol_heat", "most_steps", "automatic", "worst",
-    "theta", "end", "until", "crossed",
+    "theta", "end", "until", "crossed", "snap_at",
 )  # fmt: skip
 """Slots that every lane has besides its state and its parameters.
 
 Of time: the lane must not step over ``stop``; at ``due`` the next time of the grid comes;
 ``limited`` > 0 where the step ends at the stop. Of the step just made: ``accepted`` 1 or 0,
-``attention`` > 0 where the loop must look at the lane. ``worst`` is the multiplier above which a
+``attention`` > 0 where the loop must look at the lane. ``automatic`` > 0
+where it must look after every step. ``worst`` is the multiplier above which a
 pivot is bad. Counted: ``tried``, ``refusals``, ``steps``. ``theta`` is what drawn samples left;
-``end`` ends a run, ``until`` a second one; at ``crossed`` a level was crossed that may end a run.
+``end`` ends a run, ``until`` a second one; at ``crossed`` a level was crossed that may end a
+run, at ``snap_at`` it is seen whether anything moves.
 """
 
 
