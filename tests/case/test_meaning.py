@@ -222,6 +222,35 @@ def test_constants_of_several_kinds_around_a_cycle_may_close(tmp_path: Path) -> 
         load_text(tmp_path, text, {"steps.ac.reverse.K": "1.02"})
 
 
+@pytest.mark.parametrize("last", [30, 40])
+@pytest.mark.parametrize("varies", ["program", "adiabatic"])
+def test_enthalpies_around_a_cycle_add_up_where_the_temperature_varies(
+    tmp_path: Path, last: int, varies: str
+) -> None:
+    """A -> B -> C takes in 10 + 20 kJ/mol, so that A -> C takes in 30 (Hess)."""
+    given = (("ab", "A -> B", 2, 10), ("bc", "B -> C", 3, 20), ("ac", "A -> C", 6, last))
+    steps = "\n".join(
+        f'[[steps]]\nname = "{name}"\nreaction = "{reaction}"\nlaw = "fixed"\nk = "1 1/s"\n'
+        f'heat = "-{H} kJ/mol"\n'
+        f'reverse = {{ K = {K}, at = "480 K", enthalpy = "{H} kJ/mol" }}\n'
+        for name, reaction, K, H in given
+    )
+    heat = "".join(f'[gases.{gas}]\nheat_capacity = "50 J/mol/K"\n' for gas in "ABC")
+    mode = 'mode = "adiabatic"\nvalue = "480 K"'
+    if varies == "program":
+        mode, heat = 'mode = "program"\npoints = [["0 s", "480 K"], ["9 s", "600 K"]]', ""
+    text = LABELS[: LABELS.index("[[steps]]")].replace('"A", "B"', '"A", "B", "C"')
+    text = text.replace('mode = "isothermal"\nvalue = "480 K"', mode).replace("Ar =", "C =")
+    if last == 30:
+        assert len(load_text(tmp_path, text + heat + steps).experiment.steps) == 3
+        return
+    with pytest.raises(InputError) as caught:
+        load_text(tmp_path, text + heat + steps)
+    (problem,) = caught.value.problems
+    assert problem.key == "steps.ac.reverse.enthalpy"
+    assert problem.expected.startswith("30 kJ/mol here")
+
+
 def test_energies_are_there_where_they_are_needed_and_only_there(tmp_path: Path) -> None:
     gases = {g.name: g for g in load_edited(tmp_path, REVERSIBLE).experiment.gases}
     assert gases["NOCl"].thermochemistry is not None

@@ -195,7 +195,7 @@ def _joined(
         return None
     together.check_rates(experiment, findings)
     named = {gas.name: gas for gas in gases}
-    together.check_cycles(steps, named, experiment.temperature.initial, findings)
+    together.check_cycles(steps, named, experiment.temperature, findings)
     if findings.problems:
         return None
     from dataclasses import replace

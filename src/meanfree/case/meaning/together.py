@@ -11,6 +11,7 @@ from meanfree.case.findings import Findings
 from meanfree.case.meaning.energies import energies_needed, with_energies
 from meanfree.case.meaning.temperature import span
 from meanfree.case.schema.tables import GasTable
+from meanfree.constants import R
 from meanfree.experiment.equilibrium import ln_K
 from meanfree.experiment.experiment import Experiment
 from meanfree.experiment.mechanism import GivenEquilibrium, Step
@@ -19,6 +20,7 @@ from meanfree.experiment.vessel import Vessel
 from meanfree.gases.gas import Gas
 
 CLOSES = 0.01  # given constants are quoted to three digits or so
+NEARBY = 20.0  # [K]: with CLOSES this finds enthalpies that miss by some 1 kJ/mol at 500 K
 
 
 def check_dead_space(
@@ -124,12 +126,20 @@ def _note_idle(experiment: Experiment, findings: Findings) -> None:
 
 
 def check_cycles(
-    steps: Sequence[Step], gases: Mapping[str, Gas], T: float, findings: Findings
+    steps: Sequence[Step],
+    gases: Mapping[str, Gas],
+    temperature: Temperature,
+    findings: Findings,
 ) -> None:
-    """Given constants around a cycle must multiply to 1, or the cycle turns for ever."""
+    """Given constants around a cycle must multiply to 1, or the cycle turns for ever.
+
+    Where the temperature varies their enthalpies must add up to 0 for the same reason.
+    """
     reversible = [step for step in steps if step.reverse is not None]
     if not any(isinstance(step.reverse, GivenEquilibrium) for step in reversible):
         return
+    T = temperature.initial
+    others = {T + NEARBY} if has_energy_balance(temperature) else set(span(temperature))
     names = sorted({gas for step in reversible for gas in step.net})
     rows: list[tuple[np.ndarray, np.ndarray]] = []
     for place, step in enumerate(reversible):
@@ -143,25 +153,44 @@ def check_cycles(
         if np.max(np.abs(vector), initial=0.0) > 1e-9:
             rows.append((vector, mix))
         else:
-            _check_cycle(reversible, mix, gases, T, findings)
+            _check_cycle(reversible, mix, gases, [T, *sorted(others - {T})], findings)
 
 
 def _check_cycle(
-    steps: Sequence[Step], mix: np.ndarray, gases: Mapping[str, Gas], T: float, findings: Findings
+    steps: Sequence[Step],
+    mix: np.ndarray,
+    gases: Mapping[str, Gas],
+    temperatures: Sequence[float],
+    findings: Findings,
 ) -> None:
+    """The first of ``temperatures`` [K] is that at time zero; the others show the enthalpies."""
     used = [(step, float(m)) for step, m in zip(steps, mix, strict=True) if abs(m) > 1e-9]
     given = [(step, m) for step, m in used if isinstance(step.reverse, GivenEquilibrium)]
     if not given:
         return
+    allowed = CLOSES * max(1.0, *(abs(m) for _, m in used))
+    T, *others = temperatures
     excess = sum(m * ln_K(step, gases, T) for step, m in used)
     last, weight = given[-1]
-    if abs(excess) <= CLOSES * max(1.0, *(abs(m) for _, m in used)):
-        return
     assert isinstance(last.reverse, GivenEquilibrium)
     around = ", ".join(step.name for step, _ in used)
-    factor = math.exp(max(-700.0, min(700.0, -excess / weight)))
-    findings.wrong(
-        f"steps.{last.name}.reverse.{last.reverse.kind}",
-        f"constants around the cycle {around} that do not multiply to 1 at {T:g} K",
-        f"this one {factor:.4g} times as large, or another of them changed",
-    )
+    if abs(excess) > allowed:
+        factor = math.exp(max(-700.0, min(700.0, -excess / weight)))
+        findings.wrong(
+            f"steps.{last.name}.reverse.{last.reverse.kind}",
+            f"constants around the cycle {around} that do not multiply to 1 at {T:g} K",
+            f"this one {factor:.4g} times as large, or another of them changed",
+        )
+        return
+    for other in others:
+        change = sum(m * ln_K(step, gases, other) for step, m in used) - excess
+        if abs(change) > allowed and last.reverse.enthalpy is not None:
+            surplus = change * R / (1 / T - 1 / other)
+            right = (last.reverse.enthalpy.value - surplus / weight) / 1e3
+            findings.wrong(
+                f"steps.{last.name}.reverse.enthalpy",
+                f"enthalpies around the cycle {around} that do not add up to 0, so that its "
+                f"constants do not multiply to 1 at {other:g} K",
+                f"{right:.4g} kJ/mol here, or another of them changed",
+            )
+            return
