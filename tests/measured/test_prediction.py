@@ -6,7 +6,9 @@ import numpy as np
 import pytest
 from measured_runs import case_text, loaded
 
+from meanfree.experiment.inputs import with_inputs
 from meanfree.integrate.single import integrate
+from meanfree.measured.batches import predict_many
 from meanfree.measured.prediction import is_exact, predict
 
 T = np.array([0.0, 40.0, 400.0, 4000.0])
@@ -67,3 +69,25 @@ def test_consecutive_steps_beside_a_run(tmp_path):
     most = run.concentrations(T).max()
     for i, gas in enumerate(run.system.gases):
         assert ours.concentration(gas) == pytest.approx(run.concentrations(T)[i], abs=2e-8 * most)
+
+
+@pytest.mark.parametrize("edits", [(), (PISTON, DEAD), (WARMING,), (DEAD,)])
+def test_many_predictions_at_once_are_those_one_by_one(tmp_path, edits):
+    text = case_text("2 A -> B", ARRHENIUS)
+    for old, new in edits:
+        text = text.replace(old, new)
+    text = text.replace('"A", "B"', '"A", "B", "C"')
+    text += '[[steps]]\nname = "e"\nreaction = "B -> 3 C"\nlaw = "fixed"\nk = "4e-3 1/s"\n'
+    experiment = loaded(tmp_path, text, {}).experiment
+    rows = [
+        {"steps.d.A": A, "vessel.volume": V, "fill.gases.A": p}
+        for A, V, p in ((1e6, 0.5, 632.0), (1.001e6, 0.5, 632.0), (1e6, 0.6, 500.0))
+    ]
+    times = [T, T + 3.0, T[::-1]]
+    for row, t, ours in zip(rows, times, predict_many(experiment, rows, times), strict=True):
+        alone = predict(with_inputs(experiment, row), t)
+        # both at rtol 1e-10, by methods of their own
+        assert ours.pressure == pytest.approx(alone.pressure, rel=1e-8)
+        assert ours.temperature == pytest.approx(alone.temperature, rel=1e-12)
+        assert ours.spread == pytest.approx(alone.spread, rel=1e-8)
+        assert ours.x == pytest.approx(alone.x, abs=1e-8 * alone.x.max())

@@ -18,7 +18,6 @@ from meanfree.measured.judging import runs_test
 from meanfree.measured.least_squares import Loss, Scales, Solution, solve
 from meanfree.measured.misfit import Misfit
 from meanfree.measured.parameters import Parameter, parameters_of, scales_of
-from meanfree.measured.prediction import is_exact
 from meanfree.measured.profiles import BetterMinimum, Profile, profile
 from meanfree.measured.runs import MeasuredRun
 
@@ -48,7 +47,7 @@ def fit(request: FitRequest) -> Fit:
     misfit = Misfit(request.runs, parameters)
     _enough(misfit)
     scales = scales_of(parameters, T)
-    if not all(is_exact(run.experiment) for run in request.runs):
+    if not all(misfit.exact):
         scales = replace(scales, step=STEP_OF_INTEGRATION)
     misfit, solution = _minimised(misfit, scales, request)
     for _ in range(3):

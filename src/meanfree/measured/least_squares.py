@@ -105,24 +105,35 @@ class Solution:
 
 
 def differences(f: Residuals, x: Floats, scales: Scales) -> Floats:
-    """Jacobian by central differences, one-sided (second order) at a bound [shape (m, n)]."""
-    columns = []
+    """Jacobian by central differences, one-sided (second order) at a bound [shape (m, n)].
+
+    Where ``f`` has a method ``together`` it is asked for all points in one go.
+    """
+    points: list[Floats] = []
+    weights: list[list[tuple[int, float]]] = []
     low, high = scales.low, scales.high
     for i in range(len(x)):
         h = scales.step * max(scales.size[i], abs(x[i]) if scales.follow else 0.0)
-        up, down = x.copy(), x.copy()
-        up[i], down[i] = x[i] + h, x[i] - h
-        if up[i] > high[i]:
-            far = x.copy()
-            far[i] = x[i] - 2 * h
-            columns.append((3 * f(x) - 4 * f(down) + f(far)) / (2 * h))
-        elif down[i] < low[i]:
-            far = x.copy()
-            far[i] = x[i] + 2 * h
-            columns.append((-3 * f(x) + 4 * f(up) - f(far)) / (2 * h))
+        ahead, behind = x[i] + h <= high[i], x[i] - h >= low[i]
+        shifts: tuple[tuple[float, float], ...]
+        if ahead and behind:
+            shifts = ((h, 1.0), (-h, -1.0))
+        elif behind:
+            shifts = ((0.0, 3.0), (-h, -4.0), (-2 * h, 1.0))
         else:
-            columns.append((f(up) - f(down)) / (up[i] - down[i]))
-    return np.column_stack(columns) if columns else np.zeros((len(f(x)), 0))
+            shifts = ((0.0, -3.0), (h, 4.0), (2 * h, -1.0))
+        row = []
+        for shift, weight in shifts:
+            point = x.copy()
+            point[i] += shift
+            row.append((len(points), weight / (2 * h)))
+            points.append(point)
+        weights.append(row)
+    if not points:
+        return np.zeros((len(f(x)), 0))
+    together = getattr(f, "together", None)
+    values = [f(point) for point in points] if together is None else together(points)
+    return np.column_stack([sum(w * values[at] for at, w in row) for row in weights])
 
 
 def solve(
@@ -189,18 +200,39 @@ class _Inner:
     def at(self, x: Floats) -> Floats:
         self.evaluations += 1
         with np.errstate(all="ignore"):
-            r = np.asarray(self.f(x), float)
-        # A step too far may overflow; a large finite residual makes the method take a smaller one.
-        r = np.nan_to_num(r, nan=1e150, posinf=1e150, neginf=-1e150)
-        return np.asarray(np.clip(r, -1e150, 1e150))
+            return _finite(np.asarray(self.f(x), float))
 
     def slope(self, x: Floats) -> Floats:
         if self.given is not None:
             return np.asarray(self.given(x), float)
-        return differences(self.at, x, self.scales)
+        return differences(_Watched(self), x, self.scales)
 
     def jacobian(self, z: Floats) -> Floats:
         return np.asarray(self.slope(self.outer(z)) @ self.matrix)
+
+
+class _Watched:
+    """Residuals made finite and counted, one point at a time or several together."""
+
+    def __init__(self, inner: _Inner) -> None:
+        self.inner = inner
+
+    def __call__(self, x: Floats) -> Floats:
+        return self.inner.at(x)
+
+    def together(self, points: Sequence[Floats]) -> list[Floats]:
+        several = getattr(self.inner.f, "together", None)
+        if several is None:
+            return [self.inner.at(x) for x in points]
+        self.inner.evaluations += len(points)
+        with np.errstate(all="ignore"):
+            return [_finite(np.asarray(r, float)) for r in several(points)]
+
+
+def _finite(r: Floats) -> Floats:
+    """A step too far may overflow; large finite residuals make the method take a smaller one."""
+    r = np.nan_to_num(r, nan=1e150, posinf=1e150, neginf=-1e150)
+    return np.asarray(np.clip(r, -1e150, 1e150))
 
 
 def _from(

@@ -10,14 +10,16 @@ import numpy as np
 from meanfree.equations.system import Floats
 from meanfree.errors import ComputationError, InputError
 from meanfree.experiment.experiment import Experiment
+from meanfree.measured.batches import predict_many
 from meanfree.measured.parameters import (
     SIGNAL_OFFSET,
     TIME_OFFSET,
     Parameter,
     applied,
+    changes,
     offset_of,
 )
-from meanfree.measured.prediction import predict
+from meanfree.measured.prediction import Prediction, is_exact, predict
 from meanfree.measured.runs import MeasuredRun
 from meanfree.measured.signals import predicted
 
@@ -48,14 +50,63 @@ def curve(
 
     ``times`` [s] on the run's clock (temperatures [K] of rate constants); None: the readings'.
     """
-    readings, experiment = run.readings, applied(run, place, parameters, values)
+    return curves(run, place, parameters, [values], times)[0]
+
+
+def curves(
+    run: MeasuredRun,
+    place: int,
+    parameters: Sequence[Parameter],
+    rows: Sequence[Floats],
+    times: Floats | None = None,
+    exact: bool | None = None,
+) -> list[Floats]:
+    """`curve` for several sets of values, integrated together where there is no formula.
+
+    ``exact`` says whether there is one, where that is known already.
+
+    Raises ComputationError or InputError where one of them cannot be had.
+    """
+    readings = run.readings
     asked = readings.times if times is None else times
     if readings.signal.is_rate_constant:
-        return rate_constant_at(experiment, readings.signal.step, asked)
-    since = asked - offset_of(TIME_OFFSET, place, parameters, values)
+        return [
+            rate_constant_at(applied(run, place, parameters, row), readings.signal.step, asked)
+            for row in rows
+        ]
     # Before its start the gas is as it was filled.
-    shown = predicted(readings.signal, predict(experiment, np.maximum(since, 0.0)))
-    return shown + offset_of(SIGNAL_OFFSET, place, parameters, values)
+    since = [
+        np.maximum(asked - offset_of(TIME_OFFSET, place, parameters, row), 0.0) for row in rows
+    ]
+    return [
+        predicted(readings.signal, found) + offset_of(SIGNAL_OFFSET, place, parameters, row)
+        for found, row in zip(
+            _predictions(run, place, parameters, rows, since, exact), rows, strict=True
+        )
+    ]
+
+
+def _predictions(
+    run: MeasuredRun,
+    place: int,
+    parameters: Sequence[Parameter],
+    rows: Sequence[Floats],
+    times: Sequence[Floats],
+    exact: bool | None,
+) -> list[Prediction]:
+    changed = changes(place, parameters, rows[0])
+    if exact is None:
+        exact = is_exact(run.experiment)
+    if changed and not exact:
+        try:
+            return predict_many(
+                run.experiment, [changes(place, parameters, row) for row in rows], times
+            )
+        except ComputationError:
+            pass  # one by one, then: another integrator may do what the compiled one could not
+    return [
+        predict(applied(run, place, parameters, row), t) for row, t in zip(rows, times, strict=True)
+    ]
 
 
 class Misfit:
@@ -82,6 +133,9 @@ class Misfit:
                 # Any number does: it is put right by the scatter about the first fit.
                 self.estimates[group] = 0.01 * float(np.ptp(_value(run)))
         self.sizes = tuple(len(run.readings) for run in self.runs)
+        self.exact = tuple(
+            run.readings.signal.is_rate_constant or is_exact(run.experiment) for run in runs
+        )
         self.priors = tuple((i, p) for i, p in enumerate(parameters) if p.prior is not None)
 
     @property
@@ -107,26 +161,37 @@ class Misfit:
 
     def differences(self, inner: Floats) -> list[Floats]:
         """Reading less prediction of each run, as compared: SI, or ln of a rate constant."""
-        values = self.natural(inner)
-        found = []
+        return self._differences([inner])[0]
+
+    def _differences(self, rows: Sequence[Floats]) -> list[list[Floats]]:
+        values = [self.natural(inner) for inner in rows]
+        found: list[list[Floats]] = [[] for _ in rows]
         for place, run in enumerate(self.runs):
             try:
                 with np.errstate(all="ignore"):
-                    shown = curve(run, place, self.parameters, values)
+                    shown = curves(run, place, self.parameters, values, None, self.exact[place])
             except (ComputationError, InputError, ArithmeticError, ValueError):
-                found.append(np.full(len(run.readings), HOPELESS))
-                continue
-            if run.readings.signal.is_rate_constant:
-                shown = np.log(np.maximum(shown, 1e-300))
-            found.append(_value(run) - shown)
+                shown = [np.full(len(run.readings), np.nan) for _ in rows]
+            for each, one in zip(found, shown, strict=True):
+                if run.readings.signal.is_rate_constant:
+                    one = np.log(np.maximum(one, 1e-300))
+                difference = _value(run) - one
+                each.append(np.where(np.isfinite(difference), difference, HOPELESS))
         return found
 
     def __call__(self, inner: Floats) -> Floats:
         """Residuals of all readings, then of the priors, in standard deviations."""
-        parts = [
-            difference / self.deviation(place)
-            for place, difference in enumerate(self.differences(inner))
+        return self.together([inner])[0]
+
+    def together(self, rows: Sequence[Floats]) -> list[Floats]:
+        """Residuals at several sets of inner coordinates, predicted in one go where that pays."""
+        return [
+            self._weighted(inner, differences)
+            for inner, differences in zip(rows, self._differences(rows), strict=True)
         ]
+
+    def _weighted(self, inner: Floats, differences: Sequence[Floats]) -> Floats:
+        parts = [difference / self.deviation(place) for place, difference in enumerate(differences)]
         values = self.natural(inner)
         for i, parameter in self.priors:
             assert parameter.prior is not None

@@ -208,12 +208,17 @@ def applied(
     run: MeasuredRun, place: int, parameters: Sequence[Parameter], values: Floats
 ) -> Experiment:
     """The experiment of a run with the parameters at ``values`` (file's unit)."""
-    changes = {
+    changed = changes(place, parameters, values)
+    return with_inputs(run.experiment, changed) if changed else run.experiment
+
+
+def changes(place: int, parameters: Sequence[Parameter], values: Floats) -> dict[str, float]:
+    """What the parameters change of one run, by address (file's unit); offsets are not in it."""
+    return {
         parameter.key: float(value)
         for parameter, value in zip(parameters, values, strict=True)
         if place in parameter.runs and not parameter.is_offset
     }
-    return with_inputs(run.experiment, changes) if changes else run.experiment
 
 
 def offset_of(key: str, place: int, parameters: Sequence[Parameter], values: Floats) -> float:

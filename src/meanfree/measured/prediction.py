@@ -170,5 +170,13 @@ def _by_integration(system: System, times: Floats) -> Prediction:
         slope = np.array([s.slope for s in segments])[where]
         T = start + slope * (times - np.array([s.start for s in segments])[where])
     v = state[system.volume_index] if system.volume_varies else np.ones(len(times))
-    kept = np.cumprod([segment.retained for segment in segments])[where]
+    kept = kept_at(system, times)
     return Prediction(system, state[: system.n_gases], v + system.dead * T, np.asarray(T), kept)
+
+
+def kept_at(system: System, times: Floats) -> Floats:
+    """Fraction of the contents that drawn samples left behind [shape (n_times,)]."""
+    kept = np.ones(len(times))
+    for segment in system.segments:
+        kept = np.where(times > segment.start, kept * segment.retained, kept)
+    return kept

@@ -7,7 +7,7 @@ Venzon and Moolgavkar, Appl. Statist. 37 (1988) 87.
 from __future__ import annotations
 
 import math
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from typing import Final
 
@@ -109,9 +109,7 @@ class _Walk:
         low, high = self.scales.low[self.others], self.scales.high[self.others]
         guess = np.clip(guess, low, high)
 
-        def of_others(rest: Floats) -> Floats:
-            return self.residuals(self._joined(u, rest))
-
+        of_others = _OfOthers(self, u)
         if len(guess):
             size, step = self.scales.size[self.others], self.scales.step
             sub = Scales(guess, low, high, size, step=step, follow=self.scales.follow)
@@ -123,14 +121,33 @@ class _Walk:
         self.last[side] = (u, rest)
         excess = squares - self.least
         if excess < -BETTER * max(1.0, self.least):
-            raise BetterMinimum(self._joined(u, rest))
+            raise BetterMinimum(self.joined(u, rest))
         self.points[u] = excess
         return excess
 
-    def _joined(self, u: float, rest: Floats) -> Floats:
+    def joined(self, u: float, rest: Floats) -> Floats:
+        """All parameters: one at u, the others as given."""
         values = self.solution.values.copy()
         values[self.place], values[self.others] = u, rest
         return values
+
+
+class _OfOthers:
+    """Residuals as a function of the other parameters, one of them held at ``u``."""
+
+    def __init__(self, walk: _Walk, u: float) -> None:
+        self.walk, self.u = walk, u
+        if hasattr(walk.residuals, "together"):
+            self.together = self._together
+
+    def __call__(self, rest: Floats) -> Floats:
+        return self.walk.residuals(self.walk.joined(self.u, rest))
+
+    def _together(self, points: Sequence[Floats]) -> list[Floats]:
+        several: list[Floats] = self.walk.residuals.together(  # type: ignore[attr-defined]
+            [self.walk.joined(self.u, rest) for rest in points]
+        )
+        return several
 
 
 def _end(walk: _Walk, sign: float, threshold: float, farthest: float) -> float:
