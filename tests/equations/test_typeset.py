@@ -10,25 +10,22 @@ from dataclasses import replace
 from xml.etree import ElementTree
 
 import pytest
+from formula_values import Known, texts, value
 from random_experiments import MAKERS, random_experiment
 from written_cases import dinitrogen_tetroxide, simple
 
-from meanfree.equations.typeset import EquationSheet, equation_sheet
+from meanfree.equations.typeset import equation_sheet
 from meanfree.equations.typeset.names import SERIES, SLOTS, gas_label, slot
+from meanfree.equations.typeset.parts import calls
 from meanfree.equations.typeset.plain import Plain
-from meanfree.equations.typeset.steps import calls
 from meanfree.equations.typeset.tree import (
     Call,
     Cases,
     Concentration,
-    Fraction,
     Node,
     Number,
     Power,
-    Product,
     Relation,
-    Root,
-    Sum,
     Symbol,
     Total,
     Words,
@@ -42,10 +39,6 @@ from meanfree.rates.law import Law, StepContext
 from meanfree.sourced import Sourced as S
 
 MATH = "{http://www.w3.org/1998/Math/MathML}"
-
-
-def texts(sheet: EquationSheet) -> list[str]:
-    return [entry.text for group in sheet.groups for entry in group.entries]
 
 
 SIMPLE = """\
@@ -207,7 +200,6 @@ def test_written_rate_constants_are_the_numbers_of_the_laws(index: int) -> None:
 
 
 WITHIN_A_LAW = [Symbol("P", "r"), Symbol("k", "0"), Symbol("k", "∞"), Symbol("F", "c"), Symbol("N")]
-Known = dict[Node, float | Node]
 
 
 def assert_is_rate_constant(formula: Node, known: Known, law: Law, context: StepContext) -> None:
@@ -216,33 +208,6 @@ def assert_is_rate_constant(formula: Node, known: Known, law: Law, context: Step
     expected = float(law.rate_constant(context, 470.0, 1.2e5, 35.0))
     # The constants above are typed with ten digits.
     assert value(formula, known) == pytest.approx(expected, rel=1e-8)
-
-
-def value(part: Node, known: Known) -> float:
-    """The number that a written formula stands for."""
-    if part in known:
-        found = known[part]
-        return value(found, known) if isinstance(found, Node) else found
-    match part:
-        case Number():
-            return part.value
-        case Sum():
-            return sum(sign * value(term, known) for sign, term in part.terms)
-        case Product():
-            return math.prod(value(factor, known) for factor in part.factors)
-        case Fraction():
-            return value(part.above, known) / value(part.below, known)
-        case Power():
-            return float(value(part.base, known) ** value(part.exponent, known))
-        case Root():
-            return math.sqrt(value(part.inside, known))
-        case Call(name="exp"):
-            return math.exp(value(part.inside, known))
-        case Call(name="ln"):
-            return math.log(value(part.inside, known))
-        case Call(name="lg"):
-            return math.log10(value(part.inside, known))
-    raise AssertionError(f"{part} has no number")
 
 
 def test_names_that_are_formulas_get_subscripts_and_others_do_not() -> None:

@@ -7,8 +7,10 @@ from dataclasses import dataclass
 
 from meanfree import constants
 from meanfree.equations.typeset import names
+from meanfree.equations.typeset.flows import flow_lines, flow_terms, sample_lines
 from meanfree.equations.typeset.latex import LaTeX
 from meanfree.equations.typeset.mathml import mathml
+from meanfree.equations.typeset.parts import parts_of
 from meanfree.equations.typeset.plain import Plain
 from meanfree.equations.typeset.steps import P_STANDARD, Line, StepWriter, T, valued
 from meanfree.equations.typeset.surroundings import temperature_lines, vessel_lines
@@ -109,6 +111,8 @@ def equation_sheet(experiment: Experiment, most: int | None = MOST) -> EquationS
     writers = [StepWriter(experiment, j + 1, len(baths) > 1) for j in range(n_steps)]
     groups = [Group("Balances", _entries(_balances(experiment, writers, shown)))]
     groups += [Group(_heading(w), _entries(w.lines())) for w in writers[:shown_steps]]
+    groups.append(Group("Flows", _entries(flow_lines(experiment))))
+    groups.append(Group("Samples", _entries(sample_lines(experiment))))
     groups.append(Group("Vessel", _entries(vessel_lines(experiment))))
     groups.append(Group("Temperature", _entries(temperature_lines(experiment, writers))))
     groups.append(Group("Constants", _entries(_constants(groups))))
@@ -136,6 +140,8 @@ def _balances(experiment: Experiment, writers: list[StepWriter], shown: int) -> 
             for sign, rate in writer.rate_symbols() if number else []:
                 made[name].append((sign * number, rate))
     gases = experiment.gases[:shown]
+    for gas in gases:
+        made[gas.name] += flow_terms(experiment, gas)
     for gas in gases:
         left = Derivative(Symbol("n", names.gas_label(gas)))
         yield Line(_balance(left, made[gas.name], Symbol("V")), "equation", _idle(made[gas.name]))
@@ -182,8 +188,6 @@ def _balance(left: Node, terms: list[tuple[float, Node]], factor: Node | None) -
 
 def _constants(groups: list[Group]) -> Iterator[Line]:
     """The physical constants that the sheet uses, with their values."""
-    from meanfree.equations.typeset.steps import parts_of
-
     used = {p for g in groups for e in g.entries for p in parts_of(e.formula)}
     R, k_B, N_A = Symbol("R"), Symbol("k", "B"), Symbol("N", "A")
     known: list[tuple[Node, float, str]] = [

@@ -11,6 +11,7 @@ from meanfree.constants import STANDARD_PRESSURE, R
 from meanfree.equations.build import is_open
 from meanfree.equations.typeset import names
 from meanfree.equations.typeset.falloff import falloff_lines
+from meanfree.equations.typeset.parts import calls, depends_on_state, size
 from meanfree.equations.typeset.plain import Plain
 from meanfree.equations.typeset.tree import (
     Call,
@@ -154,13 +155,14 @@ class StepWriter:
         if size(formula) > LARGEST_FORMULA or "linear" in calls(formula):
             told = (self.template.coefficient.__doc__ or "").strip().splitlines()[0].rstrip(".")
             remark += f"; {told}"
+        as_filled = depends_on_state(formula)
         if size(formula) > LARGEST_FORMULA:
-            formula = Call("k", T)
+            formula = Call("k", Words("T, p") if as_filled else T)
         if isinstance(law, Falloff):
             first, *rest = falloff_lines(law, self.forward, self.M, values)
             yield Line(first, "equation", f"law: {law.word}" + self._counting())
             yield from map(Line, rest)
-        elif formula != names.slot("k")[0]:
+        elif not isinstance(formula, Symbol):
             yield Line(equals(self.forward, formula), "equation", remark)
         for name, value, symbol in zip(self.template.slots, numbers, values, strict=True):
             if isinstance(symbol, Symbol):
@@ -171,9 +173,20 @@ class StepWriter:
                 note = "; ".join(filter(None, [remark if same else "", names.visible(source)]))
                 yield Line(valued(shown, value, unit), "number", note)
         at = self.experiment.constant_temperature
-        if at is not None and formula != names.slot("k")[0] and not depends_on_state(formula):
-            k = float(law.rate_constant(self.context, at))
-            yield Line(valued(self.forward, k, self._unit("k")), "number", f"at {at:g} K")
+        if at is not None and not isinstance(formula, Symbol):
+            p, M = self.experiment.initial_pressure, self._filled_bath()
+            k = float(law.rate_constant(self.context, at, p, M))
+            remark = f"at {at:g} K" + (", as filled" if as_filled else "")
+            yield Line(valued(self.forward, k, self._unit("k")), "number", remark)
+
+    def _filled_bath(self) -> float:
+        """M at the start [mol/m^3]; 0 where the step has none."""
+        bath, experiment = self.step.bath, self.experiment
+        if bath is None:
+            return 0.0
+        dead = experiment.dead_capacity * experiment.temperature.initial
+        weighted = sum(n * bath.efficiency(gas) for gas, n in experiment.moles.items())
+        return weighted / (experiment.initial_volume + dead)
 
     def _half(self, value: float) -> Node:
         """One half as a fraction, other numbers as they are."""
@@ -280,8 +293,18 @@ class StepWriter:
             yield Line(equals(Symbol("ΔU", number), add(H, negative(work))))
 
 
+_WALL = {
+    "gamma": "uptake",
+    "D_0": "diffusion",
+    "p_0": "diffusion_pressure",
+    "m": "diffusion_power",
+}
+
+
 def address(slot: str) -> str:
     """Where the inputs of a law hold one of its numbers."""
+    if slot in _WALL:
+        return _WALL[slot]
     letter, _, limit = slot.partition("_")
     key = {"E": "Ea", "T": "T_ref", "F": "Fc.constant"}.get(letter, letter)
     if slot == "F_0":
@@ -296,33 +319,3 @@ def valued(symbol: Node, value: float, unit: Unit) -> Relation:
     if not unit.factors:
         return equals(symbol, value)
     return Relation(symbol, (Row((Number(value), unit)),))
-
-
-def parts_of(formula: Node) -> Iterator[Node]:
-    """A formula and everything in it."""
-    yield formula
-    for value in vars(formula).values():
-        stack = [value]
-        while stack:
-            item = stack.pop()
-            if isinstance(item, Node):
-                yield from parts_of(item)
-            elif isinstance(item, tuple):
-                stack.extend(item)
-
-
-def size(formula: Node) -> int:
-    """How many parts a formula has."""
-    return sum(1 for _ in parts_of(formula))
-
-
-def calls(formula: Node) -> set[str]:
-    """The functions that a formula uses."""
-    return {part.name for part in parts_of(formula) if isinstance(part, Call)}
-
-
-def depends_on_state(formula: Node) -> bool:
-    """True where a formula holds the pressure or M, and so changes at one temperature."""
-    parts = list(parts_of(formula))
-    M = any(isinstance(part, Words) and part.text == "M" for part in parts)
-    return M or any(isinstance(part, Symbol) and part.letter in {"p", "[M]"} for part in parts)

@@ -6,6 +6,7 @@ from collections.abc import Iterator, Sequence
 from itertools import pairwise
 
 from meanfree.equations.typeset import names
+from meanfree.equations.typeset.flows import LEAVING
 from meanfree.equations.typeset.steps import RT, Line, StepWriter, T, valued
 from meanfree.equations.typeset.tree import (
     Cases,
@@ -111,6 +112,8 @@ def _energy_balance(experiment: Experiment, writers: Sequence[StepWriter]) -> Li
     else:
         released = Total(multiply(Symbol("r", "j"), Symbol(heat, "j")), "j")
     right = negative(multiply(V, released))
+    if experiment.flows and rigid:
+        right = add(right, multiply(RT, LEAVING))
     if isinstance(mode, Exchange):
         flow = multiply(Symbol("G"), add(Symbol("T", "s"), negative(T)))
         right = add(right, flow)

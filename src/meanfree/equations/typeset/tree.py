@@ -1,7 +1,7 @@
 """A formula as a tree, built by writing it: ``A * (T / T_ref) ** n``.
 
 Rate laws are written over a namespace of functions; given this one they write themselves down in
-the form their author chose. No algebra is done but the trivial: 1 x, x + 0, x^0, -(-x).
+the form their author chose. No algebra is done but the trivial: 1 x, x + 0, 0/x, x^0, e^0, -(-x).
 """
 
 from __future__ import annotations
@@ -244,7 +244,7 @@ def multiply(*things: Any) -> Node:
 def divide(above: Any, below: Any) -> Node:
     """One part over another."""
     top, bottom = node(above), node(below)
-    if is_number(bottom, 1):
+    if is_number(bottom, 1) or is_number(top, 0):
         return top
     if isinstance(top, Sum) and len(top.terms) == 1 and top.terms[0][0] < 0:
         return negative(Fraction(top.terms[0][1], bottom))
@@ -278,7 +278,7 @@ class Written:
     @staticmethod
     def exp(x: Any) -> Node:
         """exp(x)"""
-        return Call("exp", node(x))
+        return Number(1.0) if is_number(node(x), 0) else Call("exp", node(x))
 
     @staticmethod
     def log(x: Any) -> Node:
