@@ -19,7 +19,7 @@ from meanfree.measured.arrhenius_lines import temperature_series
 from meanfree.measured.each_run import Point
 from meanfree.measured.fits import FitRequest
 from meanfree.measured.initial_rates import initial_rates
-from meanfree.measured.orders import in_words, order_test
+from meanfree.measured.orders import applicable, in_words, order_test
 from meanfree.measured.parameters import Asked
 from meanfree.measured.pseudo_first_order import pseudo_first_order
 from meanfree.measured.relative_rates import relative_rate
@@ -69,6 +69,21 @@ def test_order_beside_curve_fit(tmp_path):
     assert test.order == pytest.approx(values[1], abs=1e-3)
     # a likelihood is no parabola: a tenth of the width
     assert test.error == pytest.approx(math.sqrt(cov[1, 1]), rel=0.1)
+
+
+def test_the_order_of_a_table_is_refused(tmp_path):
+    """Its ks all have the unit of the written order; one of them alone cannot take another."""
+    law = 'law = "table"\npoints = [["290 K", "1e-3 1/s"], ["310 K", "2e-3 1/s"]]'
+    case = loaded(tmp_path, case_text("A -> B", law, "1 mol/m^3", 300.0), {})
+    run = made_up(case, np.array([0.0, 100, 300]), [1.0, 0.9, 0.7], signal=A, sd=0.01, **MOL)
+    request = FitRequest((run,), (Asked("steps.d.points.0.k"),))
+    assert applicable(request) is None
+    with pytest.raises(InputError) as error:
+        order_test(request, "d", "A")
+    assert str(error.value) == (
+        'fit.order.step: found "d" with law = "table", whose rate constant is several numbers; '
+        'expected a step with one k or A, such as law = "fixed" or "arrhenius"'
+    )
 
 
 def test_straight_line_beside_scipy():

@@ -16,6 +16,7 @@ from meanfree.measured.evidence import Candidate, evidence, ranked
 from meanfree.measured.fits import Fit, FitRequest, quantile
 from meanfree.measured.fitting import fit
 from meanfree.measured.parameters import Asked
+from meanfree.rates.law import Law
 
 USUAL: Final[tuple[float, ...]] = (0.0, 0.5, 1.0, 1.5, 2.0, 3.0)
 LOWEST, HIGHEST = -1.0, 5.0
@@ -50,7 +51,7 @@ def applicable(request: FitRequest) -> tuple[str, str] | None:
         return None
     step = experiment.steps[0]
     orders = {gas: order for gas, order in step.orders.items() if order != 0}
-    if len(orders) != 1 or not step.law.counted:
+    if len(orders) != 1 or not _has_one_constant(step.law):
         return None
     gas = next(iter(orders))
     address = f"steps.{step.name}.{step.law.counted}"
@@ -66,7 +67,8 @@ def order_test(
     Raises
     ------
     InputError
-        There is no such step, its rate constant is not fitted, or it does not use the gas.
+        There is no such step, its rate constant is several numbers or is not fitted, or it does
+        not use the gas.
     ComputationError
         None of the orders could be fitted.
     """
@@ -94,11 +96,23 @@ def _check(request: FitRequest, step: str, gas: str) -> None:
             raise InputError.at("fit.order.step", f'"{step}"', f"one of {', '.join(named)}")
         law = named[step].law
         address = f"steps.{step}.{law.counted}"
+        if law.counted and not _has_one_constant(law):
+            found = f'"{step}" with law = "{law.word}", whose rate constant is several numbers'
+            expected = 'a step with one k or A, such as law = "fixed" or "arrhenius"'
+            raise InputError.at("fit.order.step", found, expected)
         if not law.counted or address not in {one.address for one in request.asked}:
             expected = f"a fitted {address}" if law.counted else "a step with a k or an A"
             raise InputError.at("fit.order.step", f'"{step}", whose k is not fitted', expected)
         if named[step].net.get(gas, 0.0) >= 0:
             raise InputError.at("fit.order.gas", f'"{gas}"', f"a gas that {step} uses up")
+
+
+def _has_one_constant(law: Law) -> bool:
+    """True where one number of the law carries the unit of its rate constant.
+
+    Another order asks for another unit: all numbers of a table or of two limits would change.
+    """
+    return bool(law.counted) and "." not in law.counted
 
 
 class _Search:
