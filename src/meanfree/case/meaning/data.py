@@ -42,12 +42,11 @@ def readings_of(
         return None
     column = _column(table.signal, f"{key}.signal", dimension_of(signal), findings)
     deviation = _deviation(table.sd, f"{key}.sd", column, signal, findings)
+    layout = _layout(table, key, findings)
     if len(findings.problems) > before or column is None or deviation is None:
         return None
     zero = table.time.zero.value if table.time is not None and table.time.zero is not None else 0.0
-    request = FileRequest(
-        path, table.file, axis, column, signal, deviation, _layout(table, key, findings), zero
-    )
+    request = FileRequest(path, table.file, axis, column, signal, deviation, layout, zero)
     try:
         readings = read_file(request)
         if table.blank is not None:

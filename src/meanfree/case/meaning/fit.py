@@ -30,6 +30,7 @@ def asked_for(
 ) -> tuple[Asked, ...]:
     """The parameters of the table; what is wrong goes to ``findings``."""
     asked: list[Asked] = []
+    before = len(findings.problems)
     for address in table.parameters or ():
         known = _known(address, runs)
         low, high = _bounds(table, address, known, findings)
@@ -40,7 +41,7 @@ def asked_for(
             if address not in (table.parameters or ()):
                 expected = one_of(table.parameters) if table.parameters else "parameters = […] too"
                 findings.wrong(f"fit.{key}.{address}", "no parameter of the fit", expected)
-    if runs:
+    if runs and len(findings.problems) == before:
         try:
             parameters_of(runs, asked)
         except InputError as error:
