@@ -251,6 +251,29 @@ def test_enthalpies_around_a_cycle_add_up_where_the_temperature_varies(
     assert problem.expected.startswith("30 kJ/mol here")
 
 
+@pytest.mark.parametrize(("enthalpy", "noted"), [(57, False), (20, True)])
+def test_an_equilibrium_at_odds_with_the_energies_is_noted(
+    tmp_path: Path, enthalpy: int, noted: bool
+) -> None:
+    """N2O4 = 2 NO2 takes in 57.3 kJ/mol at 298 K (ATcT heats of formation 34.0 and 10.8)."""
+    loaded = load_edited(
+        tmp_path,
+        ('"isothermal"', '"adiabatic"'),
+        ('"480 K"', '"310 K"'),
+        ('NOCl = "50 torr"', 'N2O4 = "50 torr"'),
+        ("2 NOCl -> 2 NO + Cl2", "N2O4 -> 2 NO2"),
+        (
+            'A = "9.4e9 L/mol/s"',
+            'A = "1e14 1/s"\nreverse = { Kp = "0.15 bar", at = "298.15 K", '
+            f'enthalpy = "{enthalpy} kJ/mol" }}',
+        ),
+    )
+    notes = [note for note in loaded.experiment.notes if "reverse.enthalpy" in note]
+    assert bool(notes) == noted
+    if noted:
+        assert "is 20 kJ/mol, but by the energies of its gases it is 57.2" in notes[0]
+
+
 def test_energies_are_there_where_they_are_needed_and_only_there(tmp_path: Path) -> None:
     gases = {g.name: g for g in load_edited(tmp_path, REVERSIBLE).experiment.gases}
     assert gases["NOCl"].thermochemistry is not None

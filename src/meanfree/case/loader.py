@@ -195,6 +195,7 @@ def _joined(
         return None
     together.check_rates(experiment, findings)
     named = {gas.name: gas for gas in gases}
+    together.check_given_enthalpies(experiment, findings)
     together.check_cycles(steps, named, experiment.temperature, findings)
     if findings.problems:
         return None

@@ -20,6 +20,7 @@ from meanfree.experiment.vessel import Vessel
 from meanfree.gases.gas import Gas
 
 CLOSES = 0.01  # given constants are quoted to three digits or so
+SAME_HEAT = 2e3  # [J/mol]: enthalpies from two tables differ by that much; common practice
 NEARBY = 20.0  # [K]: with CLOSES this finds enthalpies that miss by some 1 kJ/mol at 500 K
 
 
@@ -122,6 +123,33 @@ def _note_idle(experiment: Experiment, findings: Findings) -> None:
             absent = [gas for gas, _ in step.reactants if gas not in present]
             findings.note(
                 f"steps.{step.name} never runs: nothing fills or forms {', '.join(absent)}."
+            )
+
+
+def check_given_enthalpies(experiment: Experiment, findings: Findings) -> None:
+    """Note where an equilibrium and the balance of heat of one step do not agree on its heat."""
+    if not has_energy_balance(experiment.temperature):
+        return
+    for step in experiment.steps:
+        given = step.reverse
+        if not isinstance(given, GivenEquilibrium) or given.enthalpy is None:
+            continue
+        if step.heat is not None:
+            used, by = -step.heat.value, "its heat"
+        else:
+            energies = [
+                (n, experiment.gas_named[gas].thermochemistry) for gas, n in step.net.items()
+            ]
+            used = sum(
+                n * float(of.enthalpy(given.at.value)) for n, of in energies if of is not None
+            )
+            by = "the energies of its gases"
+        stated = given.enthalpy.value
+        if abs(used - stated) > max(SAME_HEAT, 0.03 * abs(stated)):
+            findings.note(
+                f"steps.{step.name}: reverse.enthalpy is {stated / 1e3:.4g} kJ/mol, but by {by} "
+                f"it is {used / 1e3:.4g} kJ/mol; the equilibrium follows the former, the "
+                "temperature the latter."
             )
 
 
