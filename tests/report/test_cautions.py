@@ -113,3 +113,9 @@ def test_what_flows_and_is_drawn_is_no_tight_vessel() -> None:
             " ".join(said)
         )
         assert any("tight" in text for text in assumptions_of(case))
+
+
+def test_exposure_limits_are_readable_numbers() -> None:
+    """Ontario: carbon dioxide 30 000 ppm over 15 min."""
+    said = " ".join(all_of(filled(nitrosyl_chloride(), {"CO2": 1.0})))
+    assert "CO₂ has exposure limits: 30 000 ppm over 15 min, 5 000 ppm over 8 h" in said

@@ -125,4 +125,4 @@ def _poison(gas: Gas, known: Hazards) -> Iterator[str]:
 
 def _concentration(value: Sourced) -> str:
     """Mole fractions in ppm, mass concentrations in mg/m^3: both are 1e6 times the SI value."""
-    return f"{1e6 * value.value:.4g} {wording.pretty_unit(value.unit)}"
+    return f"{wording.given(1e6 * value.value, 4)} {wording.pretty_unit(value.unit)}"
