@@ -136,7 +136,7 @@ def _energy(step: Step, k_of: Callable[[float], float], T: float) -> float | Non
 
 def _forward(experiment: Experiment, step: Step, T: float) -> RateConstant:
     k_of = coefficient(experiment, step)
-    counted = getattr(step.law, step.law.counted, None) if step.law.counted else None
+    counted = step.law.inputs().get(step.law.counted)
     order = _full_order(step, step.order)
     partners = tuple(experiment.gas_named[name] for name in step.partners)
     own = (
