@@ -243,6 +243,21 @@ def test_a_wall_without_a_vessel_or_with_a_reverse(tmp_path: Path) -> None:
     ]
 
 
+def test_a_share_may_be_written_in_per_cent(tmp_path: Path) -> None:
+    """As a fraction of the fill may: uptake of 2 % is 0.02, a sample of 10 % leaves 0.9."""
+    wall = 'law = "wall"\nuptake = {}\nform = "uptake only"\n'
+    shares = [
+        k_of(case(tmp_path, "H -> 0.5 H2", wall.format(uptake), 'H = "1 Pa"', **SPHERE))
+        for uptake in ('"2 %"', "0.02")
+    ]
+    assert shares[0] == shares[1]
+    law = 'law = "fixed"\nk = "0 1/s"\n[[samples]]\nat = "0.5 s"\nfraction = "10 %"\n'
+    run = integrate(case(tmp_path, "O3 ->", law, 'O3 = "1 Pa"'))
+    assert run.amounts(1.0)[0, 0] / run.amounts(0.0)[0, 0] == pytest.approx(0.9, rel=1e-12)
+    refusal = refused(tmp_path, "O3 ->", law.replace("10 %", "110 %"), 'O3 = "1 Pa"')
+    assert refusal == ['samples.0.fraction: found "110 %"; expected a number above 0 and at most 1']
+
+
 def test_light_by_the_clock(tmp_path: Path) -> None:
     """Lit from 0.2 to 0.5 s of one second: exp(-0.3 J)."""
     law = 'law = "photolysis"\nJ = "2 1/s"\non = ["200 ms"]\noff = ["0.5 s"]\nphoton = "365 nm"\n'

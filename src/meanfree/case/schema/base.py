@@ -191,10 +191,14 @@ class Quantity:
 
 
 class Number:
-    """Marks a field that is a number without a unit, and reads it within its bounds."""
+    """Marks a field that is a number without a unit, and reads it within its bounds.
+
+    What goes up to 1 is a share of something, and may be written "10 %" as in the fill.
+    """
 
     def __init__(self, lowest: float, highest: float, *, above: bool = False) -> None:
         self.lowest, self.highest, self.above = lowest, highest, above
+        self.is_share = lowest == 0 and highest == 1
 
     @property
     def phrase(self) -> str:
@@ -204,7 +208,7 @@ class Number:
 
     def _read(self, value: object) -> Sourced:
         try:
-            number = read_number(value)
+            number = read_number(value, "fraction" if self.is_share else "pure")
         except QuantityError as error:
             raise _refusal(QuantityError(error.found, self.phrase)) from None
         low_enough = number.value > self.lowest if self.above else number.value >= self.lowest
@@ -217,7 +221,8 @@ class Number:
 
     def __get_pydantic_json_schema__(self, schema: Any, handler: Any) -> dict[str, Any]:
         low = "exclusiveMinimum" if self.above else "minimum"
-        return {"type": "number", low: self.lowest, "maximum": self.highest}
+        number = {"type": "number", low: self.lowest, "maximum": self.highest}
+        return {"anyOf": [number, {"type": "string"}]} if self.is_share else number
 
 
 class Later:
