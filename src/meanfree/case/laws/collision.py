@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING, Annotated, Literal
+from typing import TYPE_CHECKING, Annotated, ClassVar, Literal
 
 from pydantic import Field
 
@@ -20,6 +20,13 @@ _FACTOR = Number(0, 1e6, above=True)
 class CollisionStep(StepTable):
     """k = P Z exp(-E0/RT)."""
 
+    hints: ClassVar[dict[str, str]] = {
+        **StepTable.hints,
+        "P": "steric, the steric factor P; or A_over_Z",
+        "p": "steric, the steric factor P; or A_over_Z",
+        "E0": "threshold",
+        "A": "A_over_Z or steric, and Ea or threshold",
+    }
     law: Literal["collision"]
     threshold: MolarEnergy | None = Field(
         None, description="minimum energy along the line of centres E0; or Ea"

@@ -53,8 +53,9 @@ def parse_reaction(text: str, *, from_nothing: bool = False, to_nothing: bool = 
     """
     arrows = _ARROW.findall(text)
     if len(arrows) != 1 or _OTHER_ARROWS.search(_ARROW.sub(" ", text)) or "<->" in text:
-        found = quoted(text) + (" without an arrow" if not arrows else "")
-        if _OTHER_ARROWS.search(text) or "<->" in text:
+        both_ways = bool(_OTHER_ARROWS.search(text)) or "<->" in text
+        found = quoted(text) + ("" if arrows or both_ways else " without an arrow")
+        if both_ways:
             expected = f"one way with one arrow ->, such as {_EXAMPLE}; reverse adds the other way"
         else:
             expected = f"two sides with one arrow -> between them, such as {_EXAMPLE}"
