@@ -6,12 +6,20 @@ temperature modes and every kind of step. `plain_equations` writes their balance
 
 from __future__ import annotations
 
+from dataclasses import replace
 from functools import cache
+from itertools import product
 
 import numpy as np
 import plain_equations as plain
 import pytest
-from random_experiments import FRAMES, MAKERS, random_experiment, random_state
+from random_experiments import (
+    FRAMES,
+    MAKERS,
+    random_experiment,
+    random_state,
+)
+from rare_experiments import RARE, rare_experiment
 
 from meanfree.constants import STANDARD_PRESSURE, R
 from meanfree.equations import thermal
@@ -23,10 +31,13 @@ from meanfree.equations.templates import depends_on
 from meanfree.experiment.equilibrium import ln_K
 from meanfree.experiment.experiment import Experiment
 from meanfree.experiment.temperature import has_energy_balance
+from meanfree.rates.capture import Capture
 from meanfree.rates.registry import LAWS
+from meanfree.rates.wall import Wall
 
 COUNT = 3 * len(FRAMES)
-INDICES = range(COUNT)
+INDICES = range(COUNT + RARE)
+"""The random ones, and after them those with exact walls, ions and lamps."""
 
 # Both sides round differently: exp(-E/RT) and exp(-dG/RT) turn the rounding of an exponent of
 # size up to 100 into 100 eps = 2e-14, and G = H - TS loses up to a factor 30 more.
@@ -37,7 +48,7 @@ ROUNDING = 1e-11
 
 @cache
 def experiment(index: int) -> Experiment:
-    return random_experiment(index)
+    return random_experiment(index) if index < COUNT else rare_experiment(index - COUNT)
 
 
 @cache
@@ -138,9 +149,28 @@ def test_the_random_experiments_visit_everything() -> None:
     assert {"T"} in depend
     assert {"T", "M"} in depend
     assert {"T", "p"} in depend
+    walls = {
+        (s.law.form, experiment(i).vessel.shape.form)
+        for i in INDICES
+        for s in experiment(i).steps
+        if isinstance(s.law, Wall)
+    }
+    assert walls >= set(product(("exact", "quick"), ("sphere", "cylinder"))) - {
+        ("quick", "cylinder")
+    }
+    lit = [s.switches.min() for i in INDICES for s in [moment(i)[1]] if s.switches is not None]
+    assert set(lit) == {0.0, 1.0}
+    ions = [s.law for s in steps if isinstance(s.law, Capture) and s.law.dipole is not None]
+    # x = mu_D/sqrt(2 alpha k T) [SI: over 4 pi eps0] about 500 K, on both sides of 2
+    sizes = [
+        law.dipole.value / (2 * 1.1e-10 * law.polarisability["NO2"].value * 7e-21) ** 0.5
+        for law in ions
+    ]
+    assert min(sizes) < 1.7
+    assert max(sizes) > 2.3
 
 
-@pytest.mark.parametrize("index", INDICES)
+@pytest.mark.parametrize("index", INDICES, scope="module")
 def test_right_hand_sides_are_those_of_the_textbook(index: int) -> None:
     y, (t, segment) = random_state(index, system(index)), moment(index)
     found = plain.parts(experiment(index), t, y)
@@ -151,7 +181,7 @@ def test_right_hand_sides_are_those_of_the_textbook(index: int) -> None:
     assert np.all(np.abs(symbolic - found.dy) <= scale)
 
 
-@pytest.mark.parametrize("index", INDICES)
+@pytest.mark.parametrize("index", INDICES, scope="module")
 def test_jacobians_are_the_derivatives_by_a_complex_step(index: int) -> None:
     """A complex step of 1e-30 has no truncation error (Squire and Trapp 1998): rounding only."""
     y, (t, segment) = random_state(index, system(index)), moment(index)
@@ -164,7 +194,7 @@ def test_jacobians_are_the_derivatives_by_a_complex_step(index: int) -> None:
     assert np.all(np.abs(symbolic - exact) <= scale)
 
 
-@pytest.mark.parametrize("index", INDICES)
+@pytest.mark.parametrize("index", INDICES, scope="module")
 def test_readers_agree_where_gases_are_absent(index: int) -> None:
     """At zero, and a little below, where the smoothing of low orders acts."""
     frame = system(index)
@@ -181,21 +211,21 @@ def test_readers_agree_where_gases_are_absent(index: int) -> None:
     assert_same_jacobians(*jacobians, first, y)
 
 
-@pytest.mark.parametrize("index", INDICES)
+@pytest.mark.parametrize("index", INDICES, scope="module")
 def test_switched_off_steps_take_no_part(index: int) -> None:
     """A step that is switched off takes no part in either reader, nor in the Jacobian."""
     frame = system(index)
     y, (t, segment) = random_state(index, frame), moment(index)
     switches = np.random.default_rng(index).choice([0.0, 1.0, 0.3], frame.n_steps)
     lit = Segment(segment.start, segment.end, segment.temperature, segment.slope, switches)
-    arrays = ArrayEquations(frame)
-    full, part = arrays.rates(t, y, segment), arrays.rates(t, y, lit)
+    arrays, unlit = ArrayEquations(frame), replace(segment, switches=None)
+    full, part = arrays.rates(t, y, unlit), arrays.rates(t, y, lit)
     np.testing.assert_allclose(part, full * switches, rtol=1e-14)
     jacobians = arrays.jacobian(t, y, lit).toarray(), compiled(index).jacobian(t, y, lit)
     assert_same_jacobians(*jacobians, arrays.derivative(t, y, segment), y)
 
 
-@pytest.mark.parametrize("index", INDICES)
+@pytest.mark.parametrize("index", INDICES, scope="module")
 def test_elements_are_conserved(index: int) -> None:
     """Nothing but sources and losses (the ledger) changes the atoms in the vessel."""
     frame, gases = system(index), experiment(index).gases
@@ -217,7 +247,7 @@ def reversible() -> list[int]:
     return [i for i in INDICES if any(s.reverse is not None for s in experiment(i).steps)]
 
 
-@pytest.mark.parametrize("index", reversible())
+@pytest.mark.parametrize("index", reversible(), scope="module")
 def test_equilibrium_constants_are_those_of_the_experiment(index: int) -> None:
     """ln K_c of the System against ln K of `experiment.equilibrium`, K_c = K (p0/RT)^change."""
     frame = system(index)
@@ -245,7 +275,7 @@ def test_equilibrium_constants_are_those_of_the_experiment(index: int) -> None:
         np.testing.assert_allclose(slope, np.imag(own) / 1e-30, rtol=1e-9, atol=1e-14)
 
 
-@pytest.mark.parametrize("index", reversible())
+@pytest.mark.parametrize("index", reversible(), scope="module")
 def test_rates_balance_at_equilibrium(index: int) -> None:
     """Where the product of powers of c is K_c, a step and its reverse are equally fast."""
     frame, arrays = system(index), ArrayEquations(system(index))

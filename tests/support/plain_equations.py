@@ -13,7 +13,8 @@ from typing import Any
 
 import numpy as np
 from numpy.polynomial import chebyshev
-from scipy.constants import N_A, R, k
+from plain_walls import on_the_wall
+from scipy.constants import N_A, R, e, epsilon_0, k
 from scipy.special import gamma as gamma_function
 
 from meanfree.experiment.experiment import Experiment
@@ -82,7 +83,7 @@ def rate_constant(experiment: Experiment, step: Step, T: Any, p: Any, M: Any) ->
     if isinstance(law, Falloff):
         return _between_limits(law, T, M)
     if isinstance(law, Wall):
-        return _on_the_wall(experiment, law, step, T, p)
+        return on_the_wall(experiment, law, step, T, p)
     if isinstance(law, Table):
         return _between_points(law, T)
     a, b = (experiment.gas_named[name] for name in step.partners)
@@ -91,6 +92,8 @@ def rate_constant(experiment: Experiment, step: Step, T: Any, p: Any, M: Any) ->
     if isinstance(law, Capture):
         mu = a.molar_mass.value * b.molar_mass.value / (a.molar_mass.value + b.molar_mass.value)
         s = 0.5 if a.name == b.name else 1.0
+        if law.attraction != "dispersion":
+            return _of_an_ion(law, b if a.charge else a, mu / N_A, T)
         # The average of v (3 pi/2) (2 C6/E)^(1/3), the largest impact that passes -C6/r^6
         # (Levine, Molecular Reaction Dynamics, 2005, section 3.2 (from memory)).
         number = 2 ** (11 / 6) * gamma_function(2 / 3) * np.pi**0.5
@@ -108,6 +111,20 @@ def rate_constant(experiment: Experiment, step: Step, T: Any, p: Any, M: Any) ->
     at = law.Ea_at.value
     P = law.A_over_Z.value * np.exp(-law.Ea.value / (R * at)) / np.exp(-E0 / (R * at))
     return P * Z * np.exp(-E0 / (R * T))
+
+
+def _of_an_ion(law: Capture, neutral: Any, mu: float, T: Any) -> Any:
+    """2 pi e sqrt(alpha/mu) in electrostatic units, times K(x) for a neutral with a dipole.
+
+    T. Su and W. J. Chesnavich, J. Chem. Phys. 76, 5183 (1982) (from memory).
+    """
+    alpha = 4 * np.pi * epsilon_0 * law.polarisability[neutral.name].value  # [C m^2/V]
+    langevin = N_A * e / (2 * epsilon_0) * np.sqrt(alpha / mu)
+    if law.dipole is None:
+        return langevin
+    x = law.dipole.value / np.sqrt(2 * alpha * k * T)
+    rising = 0.4767 * x + 0.6200
+    return langevin * (rising if np.real(x) >= 2 else (x + 0.5090) ** 2 / 10.526 + 0.9754)
 
 
 def _limit(limit: Any, T: Any) -> Any:
@@ -128,18 +145,6 @@ def _between_limits(law: Falloff, T: Any, M: Any) -> Any:
         Fc = Fc + term.weight.value * np.exp(-at)
     N = 1 if law.broadening == "unit width" else 0.75 - 1.27 * np.log10(Fc)
     return k * 10 ** (np.log10(Fc) / (1 + (np.log10(reduced) / N) ** 2))
-
-
-def _on_the_wall(experiment: Experiment, law: Wall, step: Step, T: Any, p: Any) -> Any:
-    """gamma v S/4V; or 1/k = (r/pi)^2/D + 2 V (2 - gamma)/(gamma v S) in a sphere."""
-    mass = experiment.gas_named[step.reactants[0][0]].molar_mass.value
-    v, gamma = np.sqrt(8 * R * T / (np.pi * mass)), law.uptake.value
-    radius = (3 * experiment.vessel.volume.value / (4 * np.pi)) ** (1 / 3)
-    if law.form == "uptake only":
-        return gamma * v / 4 * 3 / radius
-    power = (T / law.diffusion_at.value) ** law.diffusion_power.value
-    D = law.diffusion.value * power * law.diffusion_pressure.value / p
-    return 1 / ((radius / np.pi) ** 2 / D + 2 * (2 - gamma) / (gamma * v) * radius / 3)
 
 
 def _between_points(law: Table, T: Any) -> Any:
@@ -184,6 +189,15 @@ def _average(law: CrossSection, a: Any, b: Any, T: Any) -> Any:
     sigma = tails[law.beyond if law.shape == "points" else law.shape]()
     tail = np.sum(weights * sigma * E * np.exp(nodes - E / (R * T))) * width
     return s * N_A * np.sqrt(8 * k * T / (np.pi * mu)) * (integral + tail) / (R * T) ** 2
+
+
+def _is_lit(law: Photolysis, t: float) -> float:
+    """1 between a time at which the lamp goes on and the next at which it goes off, else 0."""
+    changes = sorted([(on.value, 1.0) for on in law.on] + [(off.value, 0.0) for off in law.off])
+    state = 1.0 - changes[0][1] if changes else 1.0
+    for time, after in changes:
+        state = after if time <= t else state
+    return state
 
 
 def concentration_constant(experiment: Experiment, step: Step, T: Any) -> Any:
@@ -237,7 +251,8 @@ def parts(experiment: Experiment, t: float, y: np.ndarray) -> Parts:
         M: Any = 1.0
         if step.bath is not None:
             M = sum(step.bath.efficiency(name) * c[name] for name in names)
-        ways = [(1, rate_constant(experiment, step, T, p, M), dict(step.orders))]
+        lit = _is_lit(step.law, t) if isinstance(step.law, Photolysis) else 1.0
+        ways = [(1, lit * rate_constant(experiment, step, T, p, M), dict(step.orders))]
         if step.reverse is not None:
             back = ways[0][1] / concentration_constant(experiment, step, T)
             ways.append((-1, back, step.reverse_orders))

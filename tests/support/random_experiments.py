@@ -50,6 +50,8 @@ _GASES = {
     "N2O5": (13.3, 353.5, 78.0, 150.0, 5.0),
     "N2O3": (86.6, 314.7, 57.0, 103.0, 4.7),
     "Ar": (0.0, 154.8, 20.786, 20.786, 3.54),
+    "NO+": (989.0, 198.2, 29.1, 35.0, 3.2),
+    "NO2+": (974.0, 214.0, 34.0, 56.0, 3.5),
 }
 
 _REACTIONS: tuple[tuple[dict[str, float], dict[str, float]], ...] = (
@@ -269,7 +271,7 @@ def _open_step(rng: np.random.Generator, name: str, gas_name: str, source: bool)
     return replace(step, law=_fixed(rng, step))
 
 
-def _temperature(rng: np.random.Generator, mode: str) -> Temperature:
+def temperature(rng: np.random.Generator, mode: str) -> Temperature:
     start = S(rng.uniform(380, 560))
     if mode == "isothermal":
         return Isothermal(start)
@@ -308,7 +310,7 @@ def random_experiment(index: int) -> Experiment:
         tuple(gas(name) for name in names),
         tuple(steps),
         vessel,
-        _temperature(rng, mode),
+        temperature(rng, mode),
         fill,
     )
 
