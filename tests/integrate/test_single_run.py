@@ -226,6 +226,20 @@ def test_open_ended_runs_end_as_they_say():
     assert rest.settled_state[:2] == pytest.approx([0.7, 0.3], rel=1e-8)
 
 
+def test_an_open_ended_run_goes_on_to_the_last_row_asked_for():
+    """And ends there, not wherever the step that passed it happened to end."""
+    case = experiment([step("A -> B", 0.3)], {"A": 1.0})
+    asked = dataclasses.replace(case.plan, report_at=(si(40.0), si(5.0)))
+    run = integrate(dataclasses.replace(case, plan=asked))
+    assert run.end == 40.0
+    assert run.status is Status.CONVERTED
+    assert run.remaining("A", 40.0)[0] == pytest.approx(np.exp(-12.0), rel=REACHED)
+    early = dataclasses.replace(case.plan, report_at=(si(5.0),))
+    assert integrate(dataclasses.replace(case, plan=early)).end == pytest.approx(
+        np.log(1000) / 0.3, rel=REACHED
+    )
+
+
 def test_an_induction_period_is_not_taken_for_rest():
     """Autocatalysis from a seed of 1e-12: nothing seems to happen for most of the time."""
     run = integrate(experiment([step("A + B -> 2 B", 1.0)], {"A": 1.0, "B": 1e-12}))

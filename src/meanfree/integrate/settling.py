@@ -65,11 +65,11 @@ class Settling:
 
     Compared with the most that was ever there of each gas, not with the total: a gas that is
     only just appearing grows by as much as there is of it, so an induction period is never
-    taken for rest.
+    taken for rest. A run does not end before ``at_least`` [s].
     """
 
-    def __init__(self, system: System, watched: int | None) -> None:
-        self.system, self.watched = system, watched
+    def __init__(self, system: System, watched: int | None, at_least: float = 0.0) -> None:
+        self.system, self.watched, self.at_least = system, watched, at_least
         self.times: list[float] = [0.0]
         self.states: list[Floats] = [system.initial_state]
         self.most = np.abs(system.initial_state)
@@ -89,8 +89,8 @@ class Settling:
             start = self.system.initial_x[self.watched]
             if start > 0 and y[self.watched] <= self.goal * start:
                 self.reason = "converted"
-                return last_segment
-        if last_segment and self._still(t, y):
+                return last_segment and t >= self.at_least
+        if last_segment and t >= self.at_least and self._still(t, y):
             self.reason = "settled"
             return True
         if len(self.times) > MOST_STEPS:

@@ -74,12 +74,12 @@ def _open_ended(
     place = None if watched is None else system.gases.index(watched)
     if place is not None and system.initial_x[place] <= 0:
         place = None
-    settling = Settling(system, place)
+    extra = max((t.value for t in experiment.plan.report_at), default=0.0)
+    settling = Settling(system, place, extra)
     stepped = step_through(equations, solver, HORIZON, settling)  # type: ignore[arg-type]
     if stepped.failure:
         return stepped, Status.FAILED, None
     trajectory = stepped.trajectory
-    extra = max((t.value for t in experiment.plan.report_at), default=0.0)
     if settling.reason == "converted" and place is not None:
         goal = system.initial_x[place] * settling.goal
         end = last_crossing(trajectory, lambda t: trajectory(t)[place], goal)
