@@ -6,6 +6,7 @@ little more than one run by itself.
 
 from __future__ import annotations
 
+import warnings
 from collections.abc import Mapping, Sequence
 from dataclasses import replace
 
@@ -29,6 +30,8 @@ def predict_many(
     Every row names the same addresses. Raises ComputationError where a run failed or where the
     rows cannot be carried out together, InputError for an impossible value.
     """
+    from pandas.errors import PerformanceWarning
+
     from meanfree.integrate.many import many
     from meanfree.integrate.observables import At
 
@@ -43,7 +46,10 @@ def predict_many(
     until = Sourced(float(grid[-1]), "s", "the readings", "time")
     timed = replace(experiment, plan=replace(experiment.plan, until=until))
     columns = {address: np.array([row[address] for row in rows]) for address in rows[0]}
-    frame = many(timed, columns, asked, rtol=SOLVER.rtol, atol=SOLVER.atol, workers=1)
+    with warnings.catch_warnings():
+        # A frame of a hundred columns is what is asked for here.
+        warnings.simplefilter("ignore", PerformanceWarning)
+        frame = many(timed, columns, asked, rtol=SOLVER.rtol, atol=SOLVER.atol, workers=1)
     found = frame[names].to_numpy(float).reshape(len(rows), 2 + len(gases), len(grid))
     if not np.all(np.isfinite(found)):
         raise ComputationError("a run under changed inputs failed")

@@ -27,6 +27,10 @@ HOPELESS = 1e140
 """Residual of a prediction that cannot be computed: any step back is an improvement."""
 
 
+FEWEST_TOGETHER = 3
+"""Fewer predictions than this are integrated one by one: a call for many costs about two."""
+
+
 def rate_constant_at(experiment: Experiment, name: str, temperatures: Floats) -> Floats:
     """k of a step per event [SI, shape (n,)] at temperatures [K], in the bath as filled."""
     step = next(step for step in experiment.steps if step.name == name)
@@ -97,7 +101,7 @@ def _predictions(
     changed = changes(place, parameters, rows[0])
     if exact is None:
         exact = is_exact(run.experiment)
-    if changed and not exact:
+    if changed and not exact and len(rows) >= FEWEST_TOGETHER:
         try:
             return predict_many(
                 run.experiment, [changes(place, parameters, row) for row in rows], times

@@ -19,6 +19,9 @@ from meanfree.measured.least_squares import Residuals, Scales, Solution, solve
 FAR: Final[float] = 60.0
 """Steps of one standard error after which an interval counts as open; no source."""
 
+CLOSE: Final[float] = 1e-4
+"""How well an end of an interval is found, in standard errors: four digits of its length."""
+
 BETTER: Final[float] = 1e-6
 """A sum of squares lower by this is a better minimum and not rounding."""
 
@@ -111,9 +114,10 @@ class _Walk:
 
         of_others = _OfOthers(self, u)
         if len(guess):
+            # Differences are good to the square of their step: nothing finer can be found.
             size, step = self.scales.size[self.others], self.scales.step
             sub = Scales(guess, low, high, size, step=step, follow=self.scales.follow)
-            found = solve(of_others, sub, polish=False, most=60, tolerance=1e-10)
+            found = solve(of_others, sub, polish=False, most=60, tolerance=step**2)
             rest, squares = found.values, found.sum_of_squares
         else:
             r = of_others(guess)
@@ -181,17 +185,17 @@ def _end(walk: _Walk, sign: float, threshold: float, farthest: float) -> float:
 def _between(
     f: Callable[[float], float], inner: tuple[float, float], outer: tuple[float, float], step: float
 ) -> float:
-    """The root between two points of opposite sign, to 1e-7 of a step.
+    """The root between two points of opposite sign, to `CLOSE` of a standard error.
 
     Near a parabola the root of the excess is nearly straight: one secant step is often enough.
     """
     from scipy.optimize import brentq
 
     (a, fa), (b, fb) = inner, outer
-    width = 1e-7 * min(step, abs(b - a))
+    width = CLOSE * min(step, abs(b - a))
     c = a - fa * (b - a) / (fb - fa)
     fc = f(c)
-    if abs(fc) < 1e-7:
+    if abs(fc) < CLOSE:
         return c
     low, high = (c, b) if fc < 0 else (a, c)
     return float(brentq(f, low, high, xtol=width, rtol=1e-12))
