@@ -202,3 +202,39 @@ def test_impossible_requests_are_refused_together(tmp_path: Path) -> None:
         many(e, {"steps.two.k": [1.0, 2.0], "fill.at": [300.0] * 3}, [EndTime()])
     with pytest.raises(InputError, match="nan"):
         many(e, {"steps.two.k": [1.0, np.nan]}, [EndTime()])
+
+
+@pytest.mark.parametrize(
+    ("name", "gas", "times"),
+    [
+        ("azomethane-samples", "azomethane", (300.0, 1200.0, 3000.0, 7200.0)),
+        ("lamp-on-off", "NO", (30.0, 300.0, 590.0, 800.0)),
+    ],
+)
+def test_samples_flows_and_lamps_are_those_of_a_single_run(name, gas, times):
+    """The kernel restarts at the same breaks and draws, leaks and switches alike."""
+    case = load_case(Path(__file__).parents[2] / "cases" / f"{name}.toml").experiment
+    run = integrate(case)
+    asked = [At("partial pressure", gas, t) for t in times]
+    asked += [At("total pressure", "", t) for t in times]
+    frame = many(case, {"temperature.value": [case.temperature.initial] * 2}, asked)
+    ours = frame.iloc[0, 1:-1].to_numpy(float)
+    p = run.partial_pressures(times)
+    single = np.concatenate([p[run.index(gas)], p.sum(axis=0)])
+    # both at rtol 1e-8, which each reaches within ten tolerances
+    assert ours == pytest.approx(single, rel=1e-7)
+
+
+def test_volumes_drawn_from_a_piston_are_refused():
+    from laboratory import experiment, si, step
+
+    from meanfree.experiment.samples import Sample
+
+    case = experiment([step("A -> B", 0.1)], {"A": 1.0}, holds="pressure", until=10.0)
+    case = replace(case, samples=(Sample(si(5.0), volume=si(1e-5)),))
+    with pytest.raises(InputError) as caught:
+        many(case, {"temperature.value": [300.0]}, [EndTime()])
+    assert str(caught.value) == (
+        "samples: found a volume drawn from a piston; expected samples as fractions: "
+        "what a volume takes of a piston differs from run to run"
+    )

@@ -99,6 +99,9 @@ def many(
 def _refuse(experiment: Experiment, observables: Sequence[Observable]) -> None:
     gases = set(experiment.gas_named)
     problems = []
+    if not experiment.vessel.is_rigid and any(s.volume is not None for s in experiment.samples):
+        expected = "samples as fractions: what a volume takes of a piston differs from run to run"
+        problems.append(Problem("samples", "a volume drawn from a piston", expected))
     for o in observables:
         gas = getattr(o, "gas", "")
         needs = not isinstance(o, At) or "{}" in QUANTITIES.get(o.quantity, ("{}",))[0]
