@@ -60,6 +60,8 @@ def _constant(row: RateConstant) -> Table:
     )
     if row.shown_as_counted:
         line.append(f" = {row.shown_as_counted}")
+    if row.shown_by_pressure:
+        line.append(f" = {row.shown_by_pressure}")
     if row.ceiling is not None:
         line.append(f"; Z = {wording.rate(row.ceiling.Z, row.shown_unit, row.order)}")
     judged = row.judgement

@@ -130,7 +130,8 @@ def _walk(experiment: Experiment) -> dict[str, tuple[Path, Sourced]]:
         for key in ("at", "fraction", "volume"):
             add(f"samples.{index}.{key}", ("samples", index, key), getattr(sample, key))
     for index, gas in enumerate(experiment.gases):
-        add(f"gases.{gas.name}.diameter", ("gases", index, "diameter"), gas.diameter)
+        for key in ("diameter", "polarisability", "ionisation_energy", "dipole"):
+            add(f"gases.{gas.name}.{key}", ("gases", index, key), getattr(gas, key))
     for index, step in enumerate(experiment.steps):
         _walk_step(step, index, add)
     return found
@@ -141,7 +142,7 @@ Add = Callable[[str, Path, object], None]
 
 def _walk_vessel(experiment: Experiment, add: Add) -> None:
     vessel = experiment.vessel
-    for key in ("volume", "pressure", "rated_pressure"):
+    for key in ("volume", "pressure", "rated_pressure", "gauge_resolution"):
         add(f"vessel.{key}", ("vessel", key), getattr(vessel, key))
     if vessel.shape is not None:
         for key in ("diameter", "length", "surface"):

@@ -57,7 +57,8 @@ class Vessel:
     """A rigid vessel (``holds = "volume"``) or a piston or bag (``holds = "pressure"``).
 
     ``volume`` [m^3] is that at filling; ``pressure`` [Pa] is what a piston holds, by default
-    the sum of the filled partial pressures.
+    the sum of the filled partial pressures; ``gauge_resolution`` [Pa] the smallest change that its
+    gauge shows.
     """
 
     holds: Literal["volume", "pressure"]
@@ -66,6 +67,7 @@ class Vessel:
     rated_pressure: Sourced | None = None
     shape: Shape | None = None
     dead_space: DeadSpace | None = None
+    gauge_resolution: Sourced | None = None
 
     @property
     def is_rigid(self) -> bool:

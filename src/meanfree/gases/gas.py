@@ -23,6 +23,8 @@ class Gas:
     gave; `meanfree.gases.energies.thermochemistry_of` finds the rest when it is needed.
     ``cautions`` are said wherever the gas appears; those of energies stand with the energies.
     ``extrapolate`` allows energies at temperatures that their source does not cover.
+    ``polarisability`` [m^3] (as a volume), ``ionisation_energy`` [J/mol] and ``dipole`` [C m] are
+    what a reader gave for the long-range attraction; no table here has them.
     """
 
     name: str
@@ -34,6 +36,9 @@ class Gas:
     well_depth: Sourced | None = None
     cautions: tuple[str, ...] = ()
     extrapolate: bool = False
+    polarisability: Sourced | None = None
+    ionisation_energy: Sourced | None = None
+    dipole: Sourced | None = None
 
     @property
     def is_label(self) -> bool:

@@ -10,6 +10,7 @@ from __future__ import annotations
 import math
 from collections.abc import Callable
 from dataclasses import dataclass
+from enum import Enum
 
 from meanfree.collisions import encounters, line_of_centres, speeds
 from meanfree.constants import R
@@ -18,6 +19,44 @@ from meanfree.gases.gas import Gas
 _RAISED = str.maketrans("0123456789", "⁰¹²³⁴⁵⁶⁷⁸⁹")
 OVER = 1e-9
 """How far, relatively, P or k/Z must lie above 1 to count: rounding lies below."""
+
+
+NEAR = 0.1
+"""From this share of all encounters on a step is called limited by them; common practice, no
+source. The same share divides what a barrier takes from what a steric factor takes."""
+
+
+class Standing(Enum):
+    """How a rate constant stands to its ceilings. There are no others."""
+
+    NONE = "no reaction"
+    SUSPECT = "above hard spheres and above long-range capture: suspect"
+    ABOVE = "above hard spheres: long-range attraction, or suspect"
+    STEEP = "above hard spheres with that barrier: long-range attraction, or suspect"
+    LONG_RANGE = "above hard spheres, within long-range capture"
+    LIMITED = "collision-limited"
+    ACTIVATED = "activated: a barrier holds it"
+    HINDERED = "hindered: most encounters with the energy fail"
+    BOTH = "activated and hindered"
+    UNKNOWN = "below the collision limit; no activation energy is stated"
+    OVER_CAPTURE = "above long-range capture: suspect"
+    CAPTURED = "capture-limited"
+    BELOW_CAPTURE = "below long-range capture"
+
+    @property
+    def is_above(self) -> bool:
+        """True where hard spheres cannot give it."""
+        return self.may_be_wrong or self is Standing.LONG_RANGE
+
+    @property
+    def may_be_wrong(self) -> bool:
+        """True where nothing that is known explains it."""
+        return self in (
+            Standing.SUSPECT,
+            Standing.ABOVE,
+            Standing.STEEP,
+            Standing.OVER_CAPTURE,
+        )
 
 
 @dataclass(frozen=True, slots=True)
@@ -67,6 +106,28 @@ class Judgement:
     def is_suspect(self) -> bool:
         """True where hard spheres cannot give this rate constant."""
         return self.exceeds_ceiling or self.exceeds_barrier
+
+    def standing(self, long_range: float | None = None) -> Standing:
+        """Where k stands to Z and to a long-range ceiling [m^3/mol/s], None where not known."""
+        if self.k == 0:
+            return Standing.NONE
+        demanded = max(self.k, 0.0 if self.steric is None else self.steric * self.Z)
+        if self.is_suspect:
+            if long_range is None:
+                return Standing.ABOVE if self.exceeds_ceiling else Standing.STEEP
+            within = demanded <= long_range * (1 + OVER)
+            return Standing.LONG_RANGE if within else Standing.SUSPECT
+        return self._below()
+
+    def _below(self) -> Standing:
+        if self.k >= NEAR * self.Z:
+            return Standing.LIMITED
+        if self.steric is None:
+            return Standing.UNKNOWN
+        barrier = self.k / (self.steric * self.Z)
+        if self.steric < NEAR and barrier < NEAR:
+            return Standing.BOTH
+        return Standing.HINDERED if self.steric < barrier else Standing.ACTIVATED
 
     @property
     def verdict(self) -> str:
@@ -184,3 +245,17 @@ def judge(k: float, Ea: float | None, limit: Ceiling) -> Judgement:
         float(factors.a_over_z),
         bool(factors.threshold.below_half_rt),
     )
+
+
+def against_capture(k: float, long_range: float) -> Standing:
+    """Where ``k`` stands to a long-range ceiling [m^3/mol/s] where no diameter gives another.
+
+    Raises ValueError for a negative k.
+    """
+    if k < 0:
+        raise ValueError(f"k: found {k:g}; expected at least 0")
+    if k == 0:
+        return Standing.NONE
+    if k > long_range * (1 + OVER):
+        return Standing.OVER_CAPTURE
+    return Standing.CAPTURED if k >= NEAR * long_range else Standing.BELOW_CAPTURE

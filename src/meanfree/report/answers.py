@@ -92,6 +92,7 @@ def _vessel(run: Run, summary: RunSummary) -> list[Answer]:
             most = wording.pressure(vessel.highest_pressure_Pa, shown)
             note = f"at most {most}" + (f"; {note}" if note else "")
         found.append(Answer("Pressure", text, note))
+        found += _gauge(summary, shown)
     else:
         text = _from_to(vessel.initial_volume_m3, vessel.final_volume_m3, shown.volume, "volume")
         held = wording.pressure(run.experiment.held_pressure, shown)
@@ -105,6 +106,23 @@ def _vessel(run: Run, summary: RunSummary) -> list[Answer]:
             note = f"at most {wording.temperature(vessel.highest_temperature_K)}"
         found.append(Answer("Temperature", f"{start} → {end}", note))
     return found
+
+
+def _gauge(summary: RunSummary, shown: wording.UnitsInUse) -> list[Answer]:
+    """dp/dt at the start beside what a gauge of the stated resolution sees of it."""
+    vessel = summary.vessel
+    slope, resolution = vessel.initial_pressure_slope_Pa_per_s, vessel.gauge_resolution_Pa
+    if resolution is None or slope is None:
+        return []
+    text = "does not move"
+    if slope != 0:
+        text = f"{'rises' if slope > 0 else 'falls'} by {wording.slope(abs(slope), shown)}"
+    gauge = wording.quantity(resolution, shown.pressure, "pressure")
+    first = vessel.gauge_first_shows_it_s
+    note = f"a gauge good to {gauge} never shows a change"
+    if first is not None:
+        note = f"a gauge good to {gauge} first shows a change after {wording.duration(first)}"
+    return [Answer("Pressure at the start", text, note)]
 
 
 def _from_to(before: float, after: float, unit: str, dimension: str) -> str:

@@ -6,21 +6,23 @@ and the summary show these rows; none works out its own.
 
 from __future__ import annotations
 
-import math
-from collections.abc import Callable
 from dataclasses import dataclass
 
 from meanfree import units
-from meanfree.constants import STANDARD_PRESSURE, R
+from meanfree.constants import R
 from meanfree.equations.build import REVERSE_SUFFIX
-from meanfree.experiment.equilibrium import ln_K
 from meanfree.experiment.experiment import Experiment
 from meanfree.experiment.mechanism import Step, side
+from meanfree.experiment.rate_constants import (
+    activation_energy_at,
+    encounter,
+    order_of,
+    own_diameter,
+    rate_constant,
+)
 from meanfree.gases.gas import Gas
 from meanfree.integrate.run import Run
-from meanfree.rates.ceiling import Ceiling, Judgement, activation_energy, ceiling, judge
-from meanfree.rates.collision import Collision
-from meanfree.rates.fixed import Fixed
+from meanfree.rates.ceiling import Ceiling, Judgement, ceiling, judge
 from meanfree.report import wording
 
 
@@ -30,8 +32,8 @@ class RateConstant:
 
     ``reaction`` is as written, ``printed`` with subscripts. ``k`` is per event in ``unit`` (SI);
     ``counts`` and ``per`` say how the case counts it (k as counted = ``per`` k); ``shown_unit`` is
-    the unit of the case. ``judgement`` is None where the step is no encounter of two gases whose
-    masses and diameters are known.
+    the unit of the case, ``pressure_unit`` that in which its gauge is read. ``judgement`` is None
+    where the step is no encounter of two gases whose masses and diameters are known.
     """
 
     step: str
@@ -50,6 +52,7 @@ class RateConstant:
     judgement: Judgement | None
     source: str
     is_reverse: bool
+    pressure_unit: str = "kPa"
 
     @property
     def verdict(self) -> str:
@@ -72,6 +75,29 @@ class RateConstant:
     def shown(self) -> str:
         """k per event in the unit of the case."""
         return wording.quantity(self.k, self.shown_unit, units.rate_constant(self.order), 4)
+
+    @property
+    def by_pressure(self) -> float | None:
+        """k per event for partial pressures, k/(RT)^(order-1) [Pa^(1-order)/s]; first order: None.
+
+        Rate in pressure per time: -dp/dt of a gas is its net number times this times the product
+        of the partial pressures, at this temperature.
+        """
+        return None if self.order == 1 else self.k / (R * self.temperature) ** (self.order - 1)
+
+    @property
+    def by_pressure_unit(self) -> str:
+        """The SI unit of `by_pressure`, empty for a first order."""
+        return "" if self.order == 1 else pressure_rate_unit("Pa", self.order)
+
+    @property
+    def shown_by_pressure(self) -> str:
+        """`by_pressure` in the unit of the gauge: ``3.2 × 10⁻⁸ torr⁻¹ s⁻¹``; first order: empty."""
+        if self.by_pressure is None:
+            return ""
+        gauge = units.to_si(1.0, self.pressure_unit, "pressure")
+        value = self.by_pressure * gauge ** (self.order - 1)
+        return f"{wording.number(value, 4)} {wording.powers(self.pressure_unit, 1 - self.order)}"
 
     @property
     def shown_as_counted(self) -> str:
@@ -103,47 +129,10 @@ def temperatures(run: Run) -> tuple[float, ...]:
     return tuple(found)
 
 
-def coefficient(experiment: Experiment, step: Step, back: bool = False) -> Callable[[float], float]:
-    """k of a step (or of its reverse) as a function of T [K], at the pressure and bath filled."""
-    context = experiment.context(step)
-    M = _bath(experiment, step)
-
-    def forward(T: float) -> float:
-        return float(step.law.rate_constant(context, T, experiment.initial_pressure, M))
-
-    def reverse(T: float) -> float:
-        lnKc = ln_K(step, experiment.gas_named, T)
-        lnKc += step.change_of_moles * math.log(STANDARD_PRESSURE / (R * T))
-        return forward(T) * math.exp(-lnKc)
-
-    return reverse if back else forward
-
-
-def _bath(experiment: Experiment, step: Step) -> float:
-    """M [mol/m^3] at the start, 0 where the step has none."""
-    if step.bath is None:
-        return 0.0
-    spread = experiment.initial_volume + experiment.dead_capacity * experiment.temperature.initial
-    return sum(n * step.bath.efficiency(gas) for gas, n in experiment.moles.items()) / spread
-
-
-def _energy(step: Step, k_of: Callable[[float], float], T: float) -> float | None:
-    """Ea at T [J/mol]; a fixed k does not say how it changes with temperature."""
-    if isinstance(step.law, Fixed) or k_of(T) <= 0:
-        return None
-    return activation_energy(k_of, T)
-
-
 def _forward(experiment: Experiment, step: Step, T: float) -> RateConstant:
-    k_of = coefficient(experiment, step)
+    k_of = rate_constant(experiment, step)
     counted = step.law.inputs().get(step.law.counted)
-    order = _full_order(step, step.order)
-    partners = tuple(experiment.gas_named[name] for name in step.partners)
-    own = (
-        step.law.pair_diameter(experiment.context(step))
-        if isinstance(step.law, Collision)
-        else None
-    )
+    order = order_of(step)
     return _row(
         step.name,
         step.reaction.replace("⇌", "→"),
@@ -155,18 +144,17 @@ def _forward(experiment: Experiment, step: Step, T: float) -> RateConstant:
         T,
         k_of(T),
         order,
-        _energy(step, k_of, T),
-        partners,
-        own,
+        activation_energy_at(step, k_of, T),
+        encounter(experiment, step),
+        own_diameter(experiment, step),
         source_of(step),
         False,
     )
 
 
 def _reverse(experiment: Experiment, step: Step, T: float) -> RateConstant:
-    k_of = coefficient(experiment, step, back=True)
-    orders = step.reverse_orders
-    order = _full_order(step, sum(orders.values()))
+    k_of = rate_constant(experiment, step, back=True)
+    order = order_of(step, back=True)
     basis = "thermochemistry" if step.reverse == "thermochemistry" else "the given constant"
     bath = " + M" if step.bath is not None else ""
     text = f"{side(step.products)}{bath} → {side(step.reactants)}{bath}"
@@ -181,25 +169,12 @@ def _reverse(experiment: Experiment, step: Step, T: float) -> RateConstant:
         T,
         k_of(T),
         order,
-        _energy(step, k_of, T),
-        _encounter(experiment, orders) if step.bath is None else (),
+        activation_energy_at(step, k_of, T),
+        encounter(experiment, step, back=True),
         None,
         f"Kc from {basis}",
         True,
     )
-
-
-def _encounter(experiment: Experiment, orders: dict[str, float]) -> tuple[Gas, ...]:
-    """The two gases that meet, where orders say that two meet."""
-    if sum(orders.values()) != 2 or any(order not in (1.0, 2.0) for order in orders.values()):
-        return ()
-    return tuple(
-        experiment.gas_named[gas] for gas, order in orders.items() for _ in range(int(order))
-    )
-
-
-def _full_order(step: Step, order: float) -> float:
-    return order + 1.0 if step.bath is not None and not step.law.bath_inside else order
 
 
 def _row(
@@ -238,7 +213,15 @@ def _row(
         judgement=None if limit is None else judge(k, Ea, limit),
         source=source,
         is_reverse=is_reverse,
+        pressure_unit=wording.units_in_use(experiment).pressure,
     )
+
+
+def pressure_rate_unit(pressure: str, order: float) -> str:
+    """The unit of k for partial pressures: ``1/Pa/s`` of a second order, ``Pa/s`` of none."""
+    power = order - 1
+    raised = pressure if abs(power) == 1 else f"{pressure}^{abs(power):g}"
+    return f"1/{raised}/s" if power > 0 else f"{raised}/s"
 
 
 def source_of(step: Step) -> str:

@@ -51,7 +51,11 @@ class GasAmount(_Record):
 
 
 class VesselAnswer(_Record):
-    """What the gauge, the piston and the thermometer show."""
+    """What the gauge, the piston and the thermometer show.
+
+    The slope of the pressure is that at time zero, null for a piston; a gauge first shows a change
+    where the pressure has moved by its resolution, null: never, or no resolution is stated.
+    """
 
     filling_pressure_Pa: float
     initial_pressure_Pa: float
@@ -63,6 +67,9 @@ class VesselAnswer(_Record):
     final_temperature_K: float
     lowest_temperature_K: float
     highest_temperature_K: float
+    initial_pressure_slope_Pa_per_s: float | None
+    gauge_resolution_Pa: float | None
+    gauge_first_shows_it_s: float | None
 
 
 class EquilibriumAnswer(_Record):
@@ -77,7 +84,8 @@ class EquilibriumAnswer(_Record):
 class StepAnswer(_Record):
     """One rate constant against its collision limit.
 
-    ``k`` counts events, in SI; ``k_in_case`` is the same as the case counts and writes it.
+    ``k`` counts events, in SI; ``k_in_case`` is the same as the case counts and writes it;
+    ``k_by_pressure`` is k for partial pressures at ``T_K``, null for a first order.
     """
 
     step: str
@@ -90,6 +98,8 @@ class StepAnswer(_Record):
     counts_in_case: str
     k_in_case: float
     k_in_case_unit: str
+    k_by_pressure: float | None
+    k_by_pressure_unit: str
     Ea_J_per_mol: float | None
     Z_m3_per_mol_s: float | None
     E0_J_per_mol: float | None

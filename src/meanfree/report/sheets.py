@@ -114,6 +114,8 @@ def constants(rows: Sequence[RateConstant]) -> Sheet:
     counted = any(row.shown_as_counted for row in rows)
     heading = ["Step", "Reaction", "Law", "T", "k per event"]
     heading += ["k in the case"] if counted else []
+    gauged = any(row.shown_by_pressure for row in rows)
+    heading += ["k for pressures"] if gauged else []
     heading += ["Ea at T", "Source"]
     table = []
     for row in rows:
@@ -125,6 +127,7 @@ def constants(rows: Sequence[RateConstant]) -> Sheet:
         ]
         cells += [row.shown]
         cells += [row.shown_as_counted or "the same"] if counted else []
+        cells += [row.shown_by_pressure or NONE] if gauged else []
         cells += [NONE if row.Ea is None else f"{wording.number(row.Ea / 1e3, 4)} kJ/mol"]
         table.append([*cells, row.source])
     return Sheet(heading, table, words=(0, 1, 2, len(heading) - 1))
@@ -167,6 +170,12 @@ def convention(rows: Sequence[RateConstant]) -> list[str]:
             "Z is the rate constant if every encounter reacted, halved for like partners. "
             "P = k / (Z exp(−E0/RT)) with E0 = Ea − RT/2; A over Z = k exp(Ea/RT) / Z, "
             "√e = 1.65 times P where E0 is above zero."
+        )
+    if any(row.shown_by_pressure for row in rows):
+        found.append(
+            "k for pressures is k/(RT) to the power of its order less one: with partial pressures "
+            "instead of concentrations it gives the change of a pressure per time at that "
+            "temperature."
         )
     if any(wording.is_per_molecule(row.shown_unit) for row in rows):
         found.append("Units with molecule count single molecules, not moles.")

@@ -5,6 +5,7 @@ from __future__ import annotations
 from meanfree.errors import ComputationError
 from meanfree.experiment.equilibrium import Equilibrium, equilibrium, why_none
 from meanfree.experiment.experiment import Experiment
+from meanfree.integrate.gauge import first_shown, initial_slope
 from meanfree.integrate.run import Run
 from meanfree.integrate.verify import Verification
 from meanfree.report.cautions import cautions_about, cautions_of
@@ -95,8 +96,11 @@ def _notes(run: Run) -> list[str]:
     cautioned = {
         f"{gas.name}: {caution}" for gas in run.experiment.gases for caution in cautions_about(gas)
     }
+    ranges = tuple(f"steps.{step.name}: found from" for step in run.experiment.steps if step.valid)
     notes = dict.fromkeys([*run.experiment.notes, *run.notes])
-    return [note for note in notes if note.rstrip(".") not in cautioned]
+    return [
+        note for note in notes if note.rstrip(".") not in cautioned and not note.startswith(ranges)
+    ]
 
 
 def find_equilibrium(experiment: Experiment) -> tuple[Equilibrium | None, str]:
@@ -151,7 +155,7 @@ def _amount(run: Run, gas: str, resting: Equilibrium | None) -> GasAmount:
 
 def _vessel_answer(run: Run) -> VesselAnswer:
     experiment = run.experiment
-    times = run.trajectory.times
+    gauge, times = experiment.vessel.gauge_resolution, run.trajectory.times
     p, V, T = run.pressure(times), run.volume(times), run.temperature(times)
     return VesselAnswer(
         filling_pressure_Pa=experiment.fill.pressure(
@@ -166,6 +170,9 @@ def _vessel_answer(run: Run) -> VesselAnswer:
         final_temperature_K=float(T[-1]),
         lowest_temperature_K=float(T.min()),
         highest_temperature_K=float(T.max()),
+        initial_pressure_slope_Pa_per_s=initial_slope(run),
+        gauge_resolution_Pa=None if gauge is None else gauge.value,
+        gauge_first_shows_it_s=None if gauge is None else first_shown(run, gauge.value),
     )
 
 
@@ -182,6 +189,8 @@ def _step_answer(row: RateConstant) -> StepAnswer:
         counts_in_case=row.counts,
         k_in_case=row.in_case,
         k_in_case_unit=row.shown_unit,
+        k_by_pressure=row.by_pressure,
+        k_by_pressure_unit=row.by_pressure_unit,
         Ea_J_per_mol=row.Ea,
         Z_m3_per_mol_s=None if row.ceiling is None else row.ceiling.Z,
         E0_J_per_mol=None if judgement is None else judgement.threshold,

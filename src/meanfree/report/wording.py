@@ -157,6 +157,16 @@ def pretty_unit(unit: str) -> str:
     return "".join(parts).replace("angstrom", "Å").replace("micrometer", "µm")
 
 
+def powers(unit: str, power: float) -> str:
+    """A power of a unit per second, as printed.
+
+    >>> powers("torr", -1.0), powers("bar", -2.0), powers("Pa", 1.0), powers("torr", -0.5)
+    ('torr⁻¹ s⁻¹', 'bar⁻² s⁻¹', 'Pa s⁻¹', 'torr⁻⁰·⁵ s⁻¹')
+    """
+    raised = "" if power == 1 else f"{power:g}".translate(_SUPERSCRIPT)
+    return f"{pretty_unit(unit)}{raised} s⁻¹"
+
+
 def quantity(value: float, unit: str, dimension: str, digits: int = 3) -> str:
     """An SI value in a unit: ``50 torr``."""
     shown = units.from_si(float(value), unit, dimension) if unit else float(value)
@@ -256,6 +266,18 @@ def units_in_use(experiment: Experiment) -> UnitsInUse:
 def pressure(pascal: float, shown: UnitsInUse, digits: int = 4) -> str:
     """A pressure in the unit of the case."""
     return quantity(pascal, shown.pressure, "pressure", digits)
+
+
+def slope(pascal_per_second: float, shown: UnitsInUse) -> str:
+    """A change of pressure per time, above zero, per the time in which it is a number above one.
+
+    >>> slope(1.0, UnitsInUse("torr")), slope(2e4, UnitsInUse())
+    ('27.0 torr/h', '20.0 kPa/s')
+    """
+    per_second = units.from_si(pascal_per_second, shown.pressure, "pressure")
+    times = ((1.0, "s"), (MINUTE, "min"), (HOUR, "h"), (DAY, "d"))
+    length, name = next((one for one in times if per_second * one[0] >= 1), times[-1])
+    return f"{number(per_second * length)} {pretty_unit(shown.pressure)}/{name}"
 
 
 def change(before: float, after: float) -> str:

@@ -16,7 +16,8 @@ from meanfree.gases.identity import find_gas
 from meanfree.sourced import Sourced
 from meanfree.units.reading import described
 
-_NO_LABEL_KEYS = ("formula", "cas", "diameter", "enthalpy", "entropy")
+_OWN = ("diameter", "polarisability", "ionisation_energy", "dipole")
+_NO_LABEL_KEYS = ("formula", "cas", *_OWN, "enthalpy", "entropy")
 
 
 def read_labels(raw: Any, findings: Findings) -> tuple[str, ...]:
@@ -98,10 +99,15 @@ def _known(name: str, table: GasTable | None, findings: Findings) -> Gas | None:
     except InputError as error:
         findings.problems.extend(error.problems)
         return None
-    if table is not None and table.diameter is not None:
-        diameter = replace(table.diameter, source=table.source or AS_GIVEN)
-        gas = replace(gas, diameter=diameter)
-    return gas
+    if table is None:
+        return gas
+    ionisation = table.ionisation_energy
+    if ionisation is not None and ionisation.value <= 0:
+        found = f"{ionisation.value:g} J/mol"
+        findings.wrong(f"gases.{name}.ionisation_energy", found, "an energy above 0")
+    given: dict[str, Sourced | None] = {key: getattr(table, key) for key in _OWN}
+    own = {key: own_source(table, value) for key, value in given.items() if value is not None}
+    return replace(gas, **own)  # type: ignore[arg-type]
 
 
 def _refuse_label_values(name: str, table: GasTable | None, findings: Findings) -> None:

@@ -35,6 +35,9 @@ def read_vessel(raw: Any, findings: Findings) -> Vessel | None:
     dead = table.dead_space
     if table.pressure is not None and table.pressure.value <= 0:
         findings.wrong("vessel.pressure", "a pressure of 0", "a pressure above 0 Pa")
+    if table.gauge_resolution is not None and table.gauge_resolution.value <= 0:
+        found = "a resolution of 0"
+        findings.wrong("vessel.gauge_resolution", found, 'the smallest change shown, "0.1 torr"')
     if len(findings.problems) > before:
         return None
     return Vessel(
@@ -42,6 +45,7 @@ def read_vessel(raw: Any, findings: Findings) -> Vessel | None:
         volume=table.volume,
         pressure=table.pressure,
         rated_pressure=table.rated_pressure,
+        gauge_resolution=table.gauge_resolution,
         shape=inside,
         dead_space=None if dead is None else DeadSpace(dead.volume, dead.temperature),
     )

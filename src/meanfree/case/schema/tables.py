@@ -51,6 +51,9 @@ class VesselTable(Table):
         None, description="pressure that a piston holds; default: the sum of the filled ones"
     )
     rated_pressure: Pressure | None = Field(None, description="what the vessel is rated for")
+    gauge_resolution: Pressure | None = Field(
+        None, description="smallest change of pressure that its gauge shows"
+    )
     shape: ShapeTable | None = Field(None, description="form and inner surface")
     dead_space: DeadSpaceTable | None = Field(None, description="gauge and lines")
 
@@ -168,6 +171,15 @@ class GasTable(Table):
     formula: Line | None = Field(None, description='chemical formula, such as "NOCl"')
     cas: Line | None = Field(None, description='CAS number, such as "2696-92-6"')
     diameter: Length | None = Field(None, description="diameter of the molecule as a hard sphere")
+    polarisability: Annotated[Sourced, Quantity("polarisability")] | None = Field(
+        None, description="polarisability as a volume: for the long-range ceiling of its steps"
+    )
+    ionisation_energy: MolarEnergy | None = Field(
+        None, description="ionisation energy: for the long-range ceiling of two neutral gases"
+    )
+    dipole: Annotated[Sourced, Quantity("dipole moment")] | None = Field(
+        None, description="permanent dipole moment: for the long-range ceiling with an ion"
+    )
     enthalpy: MolarEnergy | None = Field(
         None, description="enthalpy of formation at 298.15 K; with entropy and heat_capacity"
     )
