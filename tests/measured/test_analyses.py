@@ -24,7 +24,7 @@ from meanfree.measured.parameters import Asked
 from meanfree.measured.pseudo_first_order import pseudo_first_order
 from meanfree.measured.relative_rates import relative_rate
 from meanfree.measured.signals import Signal
-from meanfree.measured.straight_lines import straight_line
+from meanfree.measured.straight_lines import correlated_line, straight_line
 from meanfree.rates.ceiling import ceiling
 
 MOL = {"unit": "mol/m^3"}
@@ -281,3 +281,23 @@ def test_no_wall_is_said(tmp_path):
     found = walls(tmp_path, 1e-3, 0.0)
     assert found.words.startswith("No wall is seen: the slope is zero within its interval")
     assert found.probability > 0.01
+
+
+def test_a_line_with_errors_that_go_together():
+    """Generalised least squares against simulation: the first reading's error moves all points."""
+    x = np.linspace(0.1, 1.0, 10)
+    V = 0.01**2 * np.eye(10) + 0.02**2
+    lower = np.linalg.cholesky(V)
+    slopes, errors = [], []
+    for n in range(400):
+        y = 2 * x + lower @ random(n).normal(size=10)
+        line = correlated_line(x, y, V, known=True, through_origin=True)
+        slopes.append(line.slope)
+        errors.append(line.slope_error)
+    # a standard deviation out of 400 is good to 1/sqrt(800), three of these allowed
+    assert np.std(slopes) == pytest.approx(np.mean(errors), rel=3 / math.sqrt(800))
+    assert np.mean(slopes) == pytest.approx(2.0, abs=3 * np.mean(errors) / 20)
+    alike = correlated_line(x, y, np.eye(10), known=False)
+    plain = straight_line(x, y)
+    assert alike.covariance == pytest.approx(plain.covariance, rel=1e-9)
+    assert alike.slope == pytest.approx(plain.slope, rel=1e-10)

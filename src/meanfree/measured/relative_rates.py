@@ -15,7 +15,7 @@ from meanfree.equations.system import Floats
 from meanfree.errors import InputError
 from meanfree.measured.fits import quantile
 from meanfree.measured.runs import MeasuredRun
-from meanfree.measured.straight_lines import Interval, Line, straight_line
+from meanfree.measured.straight_lines import Interval, Line, correlated_line
 
 
 @dataclass(frozen=True)
@@ -50,19 +50,13 @@ def relative_rate(
 
     Raises InputError where no two runs belong together or a reading is not above zero.
     """
-    xs, ys, errors = [], [], []
-    for one, other in _pairs(runs, gas, reference):
-        x, dx = _fallen(other)
-        y, dy = _fallen(one)
-        xs.append(x)
-        ys.append(y)
-        errors.append((dx, dy))
-    x, y = np.concatenate(xs), np.concatenate(ys)
+    pairs = [(_fallen(one), _fallen(other)) for one, other in _pairs(runs, gas, reference)]
+    x = np.concatenate([theirs.fallen for _, theirs in pairs])
+    y = np.concatenate([ours.fallen for ours, _ in pairs])
     if len(x) < 3:
         raise InputError.at("fit.analyses", f"{len(x)} pairs of readings", "at least three")
-    sd = _effective(x, y, errors)
-    line = straight_line(x, y, sd, through_origin=True)
-    free = straight_line(x, y, sd)
+    known = all(one.known for pair in pairs for one in pair)
+    line, free = (_line(pairs, x, y, known, through_origin=at) for at in (True, False))
     t, ratio = line.quantile, line.slope_interval
     k = None
     if reference_k is not None:
@@ -94,8 +88,18 @@ def _pairs(
     return pairs
 
 
-def _fallen(run: MeasuredRun) -> tuple[Floats, Floats | None]:
-    """ln(c0/c) from the second reading on, and its standard deviation where readings have one."""
+@dataclass(frozen=True)
+class _Fallen:
+    """ln(c0/c) from the second reading on, its variance, and that of ln c0, which all share."""
+
+    fallen: Floats
+    own: Floats
+    shared: float
+    known: bool
+
+
+def _fallen(run: MeasuredRun) -> _Fallen:
+    """Where no deviation is given, readings scatter alike: variances up to a common factor."""
     values, sd = run.readings.values, run.readings.sd
     if run.readings.signal.kind == "conversion":
         values = 1 - values
@@ -103,29 +107,39 @@ def _fallen(run: MeasuredRun) -> tuple[Floats, Floats | None]:
         line = run.readings.lines[int(np.flatnonzero(values <= 0)[0])]
         found = f"a reading of {run.name} (line {line}) that is not above zero"
         raise InputError.at("fit.analyses", found, "readings above zero")
+    relative = (np.ones(len(values)) if sd is None else sd) / values
     fallen = np.log(values[0] / values[1:])
-    return fallen, None if sd is None else np.hypot(sd[1:] / values[1:], sd[0] / values[0])
+    return _Fallen(fallen, relative[1:] ** 2, float(relative[0] ** 2), sd is not None)
 
 
-def _effective(
-    x: Floats, y: Floats, errors: Sequence[tuple[Floats | None, Floats | None]]
-) -> Floats | None:
-    """Deviations of y with those of x carried over by the slope; None where some are not known.
+def _line(
+    pairs: Sequence[tuple[_Fallen, _Fallen]],
+    x: Floats,
+    y: Floats,
+    known: bool,
+    *,
+    through_origin: bool,
+) -> Line:
+    """The line with the errors of both axes, those of each run's first readings shared.
 
-    Source: Orear, Am. J. Phys. 50 (1982) 912 (effective variance).
+    Errors of x are carried over to y by the slope (effective variance: Orear, Am. J. Phys. 50
+    (1982) 912).
     """
-    if any(dx is None or dy is None for dx, dy in errors):
-        return None
-    dx = np.concatenate([one for one, _ in errors if one is not None])
-    dy = np.concatenate([one for _, one in errors if one is not None])
     slope = float(x @ y / (x @ x))
     for _ in range(50):
-        sd = np.hypot(dy, slope * dx)
-        after = straight_line(x, y, sd, through_origin=True).slope
-        if abs(after - slope) <= 1e-12 * abs(slope):
+        V = np.zeros((len(x), len(x)))
+        start = 0
+        for ours, theirs in pairs:
+            n = len(ours.fallen)
+            here = slice(start, start + n)
+            V[here, here] = ours.shared + slope**2 * theirs.shared
+            V[here, here] += np.diag(ours.own + slope**2 * theirs.own)
+            start += n
+        line = correlated_line(x, y, V, known=known, through_origin=through_origin)
+        if abs(line.slope - slope) <= 1e-12 * abs(slope):
             break
-        slope = after
-    return np.asarray(np.hypot(dy, slope * dx))
+        slope = line.slope
+    return line
 
 
 def _words(free: Line, gas: str, reference: str) -> list[str]:

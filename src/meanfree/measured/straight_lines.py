@@ -133,3 +133,36 @@ def widened(line: Line) -> Line:
         return line
     scale = line.chi_square / freedom
     return replace(line, covariance=line.covariance * scale, freedom=freedom)
+
+
+def correlated_line(
+    x: Floats, y: Floats, covariance: Floats, *, known: bool, through_origin: bool = False
+) -> Line:
+    """The line through points whose errors go together: generalised least squares.
+
+    ``covariance`` [shape (n, n)] is that of y; where it is not ``known`` it holds up to a factor,
+    which the scatter tells. Source: Draper and Smith, Applied Regression Analysis, 3rd ed. 1998,
+    section 9.2.
+    """
+    lower = np.linalg.cholesky(covariance)
+    ones = np.zeros(len(x)) if through_origin else np.ones(len(x))
+    design = np.linalg.solve(lower, np.stack([ones, x], axis=1))
+    target = np.linalg.solve(lower, y)
+    used = design[:, 1:] if through_origin else design
+    inverse = np.linalg.inv(used.T @ used)
+    found = inverse @ (used.T @ target)
+    residuals = target - used @ found
+    squares, count = float(residuals @ residuals), used.shape[1]
+    cov = np.zeros((2, 2))
+    cov[2 - count :, 2 - count :] = inverse
+    freedom = len(x) - count
+    if not known:
+        cov = cov * squares / freedom
+    intercept, slope = (0.0, float(found[0])) if through_origin else map(float, found)
+    sd = np.sqrt(np.diag(covariance)) if known else None
+    plain = y - intercept - slope * x
+    r_squared = 1 - float(plain @ plain) / float(np.sum((y - y.mean()) ** 2))
+    given = None if known else freedom
+    return Line(
+        slope, intercept, cov, r_squared, given, x, y, sd, squares, through_origin=through_origin
+    )

@@ -17,6 +17,8 @@ def with_error(value: float, error: float, unit: str = "") -> str:
 
     >>> with_error(0.87999, 0.0036949), with_error(185714.2, 1775.6), with_error(3.0, math.nan)
     ('0.8800 ± 0.0037', '185 700 ± 1 800', '3.00')
+    >>> with_error(0.0021250, 2.9e-6), with_error(1.859e7, 4.9e5)
+    ('(2.1250 ± 0.0029) × 10⁻³', '(1.859 ± 0.049) × 10⁷')
     """
     tail = f" {wording.pretty_unit(unit)}" if unit else ""
     if not (math.isfinite(error) and error > 0 and math.isfinite(value)):
@@ -28,7 +30,7 @@ def with_error(value: float, error: float, unit: str = "") -> str:
     scale = 10.0**power
     mantissa = wording.number(value / scale, digits)
     small = wording.number(error / scale, 2)
-    return f"({mantissa} ± {small}) {wording.number(scale, 1).removeprefix('1 ')}{tail}"
+    return f"({mantissa} ± {small}) × {wording.power_of_ten(scale)}{tail}"
 
 
 def significant(value: float, error: float) -> int:

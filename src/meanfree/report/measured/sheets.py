@@ -38,7 +38,8 @@ def conventions(fit: Fit) -> Sheet | None:
     """Fitted rate constants counted per event and per gas lost; None where these are one."""
     rows = []
     found = rate_constants(fit)
-    if all(one.counts == "events" or one.value == found[0].value for one in found):
+    per_event = {one.address: one.value for one in found if one.counts == "events"}
+    if all(one.value == per_event[one.address] for one in found):
         return None
     for one in found:
         error = one.stderr if one.stderr is not None else float("nan")
