@@ -19,7 +19,8 @@ from meanfree.experiment.inputs import inputs
 from meanfree.experiment.mechanism import GivenEquilibrium
 from meanfree.gases.identity import find_gas
 from meanfree.planning.request import PlanRequest
-from meanfree.planning.window import Axis, Window, axis, over_the_limit, window
+from meanfree.planning.window import Window, axis, window
+from meanfree.planning.window_reasons import Axis, over_the_limit
 
 R = 8.31446261815324
 A, EA = 1e8, 100e3

@@ -13,7 +13,7 @@ from meanfree.errors import InputError, Problem
 if TYPE_CHECKING:
     from meanfree.case import LoadedCase
     from meanfree.experiment.experiment import Experiment
-    from meanfree.planning.window import Axis
+    from meanfree.planning.window_reasons import Axis
     from meanfree.progress import Progress
     from meanfree.report.planning.document import Document
     from meanfree.report.record import CaseRecord

@@ -99,6 +99,7 @@ def read_many(
     solver: Solver | None = None,
     progress: Progress = silent,
     note: str = "",
+    singly: bool = False,
 ) -> list[Floats]:
     """Readings of many conditions.
 
@@ -106,14 +107,14 @@ def read_many(
     [s] ends every run; None leaves it to the experiment. Returns one array a reading, of shape
     (n, columns); a condition that is impossible or fails gives NaN.
 
-    What the kernel can be asked for is asked of all conditions at once; the rest is read off
-    single runs.
+    What the kernel can be asked for is asked of all conditions at once; the rest, and with
+    ``singly`` everything, is read off single runs.
     """
     if until is not None:
         plan = replace(experiment.plan, until=Sourced(until, "s", dimension="time"), report_at=())
         experiment = replace(experiment, plan=plan)
     found: dict[int, Floats] = {}
-    together = {i: r for i, r in enumerate(readings) if observables(r, until)}
+    together = {i: r for i, r in enumerate(readings) if not singly and observables(r, until)}
     if together:
         try:
             answers = _together(experiment, conditions, list(together.values()), until, solver)
@@ -174,7 +175,8 @@ def _together(
     known: dict[str, Floats] = {}
     for first in range(0, len(asked), TOGETHER):
         part = asked[first : first + TOGETHER]
-        frame = many(experiment, conditions, part, rtol=tolerance.rtol, atol=tolerance.atol)
+        with np.errstate(invalid="ignore", divide="ignore"):
+            frame = many(experiment, conditions, part, rtol=tolerance.rtol, atol=tolerance.atol)
         known |= {name: frame[name].to_numpy(float) for one in part for name in one.columns}
     answers = []
     for reading, group in zip(readings, wanted, strict=True):

@@ -9,7 +9,8 @@ from matplotlib.figure import Figure
 from matplotlib.patches import Patch
 
 from meanfree.experiment.experiment import Experiment
-from meanfree.planning.window import Axis, Window
+from meanfree.planning.window import Window
+from meanfree.planning.window_reasons import Axis
 from meanfree.report import wording
 from meanfree.report.figures import style
 from meanfree.report.planning.naming import axis_label

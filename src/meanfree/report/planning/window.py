@@ -10,7 +10,8 @@ import numpy as np
 from pydantic import BaseModel, ConfigDict, Field
 
 from meanfree.experiment.experiment import Experiment
-from meanfree.planning.window import COARSE, REGIONS, Window
+from meanfree.planning.window import Window
+from meanfree.planning.window_reasons import COARSE, REGIONS
 from meanfree.report import wording
 from meanfree.report.figures import style
 from meanfree.report.figures import window as figures
