@@ -330,3 +330,20 @@ parameters = ["steps.d.k", "time_offset", "signal_offset"]
     assert found.estimate("steps.d.k").value == pytest.approx(0.9, rel=1e-4)
     assert found.estimate("time_offset").value == pytest.approx(5.0, abs=1e-3)
     assert found.estimate("signal_offset").value == pytest.approx(2.0, abs=1e-2)
+
+
+@pytest.mark.parametrize("decades", [-11, -6, -3, 3, 6, 11])
+def test_a_guess_that_is_off_by_decades(tmp_path, decades):
+    """Nothing reacts, or everything at once: no slope to follow, yet the same answer."""
+    _, law = LAWS["2 A -> B"]
+    y = noisy(law(T, 7e-4, 1.0), 0.01, 5)
+    run = made_up(
+        one_step(tmp_path, "2 A -> B", f"{7e-4 * 10.0**decades!r} m^3/mol/s"),
+        T,
+        y,
+        signal=Signal("concentration", ("A",)),
+        unit="mol/m^3",
+    )
+    found = fit(FitRequest((run,), (Asked("steps.d.k"),))).estimates[0]
+    values, _ = curve_fit(lambda t, k: law(t, k, 1.0), T, y, p0=[7e-4], xtol=1e-14)
+    assert found.value == pytest.approx(values[0], rel=1e-6)

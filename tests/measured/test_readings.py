@@ -161,6 +161,10 @@ def test_blank_that_is_too_short(tmp_path):
             "column y: 3 readings that are all 5; a signal that changes",
         ),
         ({"t": [0], "y": [5]}, ": 1 reading; at least two"),
+        (
+            {"t": [0, 1], "y": [5, 1e300]},
+            "line 3, column y: 1e+300, which no instrument shows; a number of a sensible size",
+        ),
     ],
 )
 def test_nonsense_is_refused(tmp_path, columns, expected):

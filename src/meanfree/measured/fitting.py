@@ -24,6 +24,9 @@ from meanfree.measured.runs import MeasuredRun
 STEP_OF_INTEGRATION: Final[float] = 1e-3
 """Step of differences where predictions are integrated to 1e-10: 1e-7 by either error."""
 
+DECADES: Final[tuple[int, ...]] = (-12, -9, -6, -4, -3, -2, -1, 1, 2, 3, 4, 6, 9, 12)
+"""Powers of ten by which a guess is tried to be off."""
+
 MOST_FACTOR: Final[float] = 23.0
 """Logarithm of the factor (1e10) by which a positive number may differ within its interval."""
 
@@ -89,7 +92,7 @@ def _enough(misfit: Misfit) -> None:
 def _minimised(misfit: Misfit, scales: Scales, request: FitRequest) -> tuple[Misfit, Solution]:
     """The minimum, with estimated deviations brought in line with the scatter about it."""
     width = WIDTHS[request.loss]
-    starts = _starts(scales, request)
+    starts = [*_starts(scales, request), *_from_afar(misfit, scales)]
     solution = _checked(solve(misfit, scales, loss=request.loss, width=width, starts=starts))
     if not any(misfit.groups):
         return misfit, solution
@@ -117,6 +120,25 @@ def _starts(scales: Scales, request: FitRequest) -> list[Floats]:
         matrix = scales.size[:, None] * scales.basis
     drawn = random.normal(size=(max(request.starts - 1, 0), len(scales.start)))
     return [np.clip(scales.start + matrix @ z, scales.low, scales.high) for z in drawn]
+
+
+def _from_afar(misfit: Misfit, scales: Scales) -> list[Floats]:
+    """A better start, where one rate constant by some power of ten makes the readings likelier.
+
+    A guess that is off by decades leaves nothing or everything to react, and no slope to follow.
+    """
+    rows = [scales.start]
+    for i, parameter in enumerate(misfit.parameters):
+        if not (parameter.logarithmic and parameter.key.startswith("steps.")):
+            continue
+        for decades in DECADES:
+            row = scales.start.copy()
+            row[i] += decades * math.log(10)
+            if scales.low[i] <= row[i] <= scales.high[i]:
+                rows.append(row)
+    squares = [float(r @ r) for r in misfit.together(rows)]
+    best = int(np.argmin(squares))
+    return [rows[best]] if squares[best] < 0.5 * squares[0] else []
 
 
 def _checked(solution: Solution) -> Solution:
@@ -222,9 +244,21 @@ def _estimate(
     return Estimate(parameter, value, math.nan if at else stderr, ends[0], ends[1], at, found)
 
 
+def _has_limit(one: Estimate) -> bool:
+    """True where a profile bounds an estimate on one side at least."""
+    low_open = not one.low > (0.0 if one.parameter.logarithmic else -math.inf)
+    return one.profile is not None and not (low_open and not one.high < math.inf)
+
+
 def _findings(found: Fit) -> list[str]:
     """What a reader should know, the gravest first."""
-    said = list(judging.undetermined(found.solution, found.parameters))
+    # On a plateau nothing changes with a number, yet its profile may find where that begins.
+    limited = [one.parameter.address for one in found.estimates if _has_limit(one)]
+    said = [
+        text
+        for text in judging.undetermined(found.solution, found.parameters)
+        if not any(text.startswith(f"The readings do not depend on {name}:") for name in limited)
+    ]
     named = " ".join(said)
     for one in found.estimates:
         name = one.parameter.address

@@ -19,6 +19,9 @@ from meanfree.measured.least_squares import Residuals, Scales, Solution, solve
 FAR: Final[float] = 60.0
 """Steps of one standard error after which an interval counts as open; no source."""
 
+HOPELESS: Final[float] = 1e200
+"""A sum of squares beyond this is that of a prediction that failed."""
+
 CLOSE: Final[float] = 1e-4
 """How well an end of an interval is found, in standard errors: four digits of its length."""
 
@@ -122,11 +125,11 @@ class _Walk:
         else:
             r = of_others(guess)
             rest, squares = guess, float(r @ r)
-        self.last[side] = (u, rest)
-        excess = squares - self.least
+        excess = squares - self.least if squares < HOPELESS else math.inf
         if excess < -BETTER * max(1.0, self.least):
             raise BetterMinimum(self.joined(u, rest))
-        self.points[u] = excess
+        if math.isfinite(excess):
+            self.points[u], self.last[side] = excess, (u, rest)
         return excess
 
     def joined(self, u: float, rest: Floats) -> Floats:
@@ -165,12 +168,19 @@ def _end(walk: _Walk, sign: float, threshold: float, farthest: float) -> float:
         return math.sqrt(max(walk.excess(u), 0.0)) - goal
 
     inner, below = walk.origin, -goal
-    distance = min(goal * walk.step, 0.5 * farthest)
+    distance, failures = min(goal * walk.step, 0.5 * farthest), 0
     while distance <= min(FAR * goal * walk.step, farthest):
         outer = walk.origin + sign * distance
         if sign * (outer - bound) >= 0:
             outer = float(bound)
         above = reach(outer)
+        if math.isinf(above):
+            # Nothing can be predicted there: that is no limit. Look nearer, a few times.
+            failures += 1
+            if failures > 6:
+                return sign * math.inf
+            distance = 0.5 * (distance + abs(inner - walk.origin))
+            continue
         if above >= 0:
             return _between(reach, (inner, below), (outer, above), walk.step)
         if outer == bound:

@@ -18,6 +18,9 @@ from meanfree.errors import InputError, Problem
 from meanfree.measured.delimited import Cells, Column, Layout, cells_of, column, decoded
 from meanfree.measured.signals import DIMENSIONS, LEAST, Signal
 
+HUGE = 1e60
+"""Numbers beyond this (SI) are slips of the keyboard; their squares would not fit a float."""
+
 
 @dataclass(frozen=True)
 class ColumnRequest:
@@ -128,7 +131,15 @@ def read_file(request: FileRequest) -> Readings:
         problems += _bad_deviations(columns.get("sd"))
     if problems:
         raise InputError(problem.inside(request.shown) for problem in problems)
-    return _in_si(request, columns)
+    readings = _in_si(request, columns)
+    for name, values in (("axis", readings.times), ("signal", readings.values)):
+        huge = np.flatnonzero(~(np.abs(values) < HUGE))
+        if len(huge):
+            column, at = columns[name], int(huge[0])
+            where = f"line {column.lines[at]}, column {column.name}"
+            found = f"{column.values[at]:g}, which no instrument shows"
+            raise _one(request, Problem(where, found, "a number of a sensible size"))
+    return readings
 
 
 def _open(request: FileRequest) -> Cells:
