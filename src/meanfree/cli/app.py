@@ -10,7 +10,21 @@ from typing import Annotated
 
 import typer
 
-from meanfree.cli import check, collide, compare, equations, fit, limits, schedule, schema, size, start, window
+from meanfree.cli import (
+    ceiling,
+    check,
+    collide,
+    compare,
+    equations,
+    fit,
+    limits,
+    schedule,
+    schema,
+    size,
+    start,
+    sweep,
+    window,
+)
 from meanfree.cli import run as predict
 from meanfree.cli.errors import report_errors
 
@@ -50,12 +64,14 @@ app.command("check")(check.check)
 app.command("run")(predict.run)
 app.command("equations")(equations.equations)
 app.command("collide")(collide.collide)
+app.command("ceiling")(ceiling.ceiling)
 app.command("limits")(limits.limits)
+app.command("size")(size.size)
 app.command("compare")(compare.compare)
 app.command("fit")(fit.fit)
-app.command("size")(size.size)
 app.command("schedule")(schedule.schedule)
 app.command("window")(window.window)
+app.command("sweep")(sweep.sweep)
 app.command("schema")(schema.schema)
 
 

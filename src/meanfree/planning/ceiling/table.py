@@ -6,7 +6,6 @@ ceiling where enough is known for one, what k is against them, and where k would
 
 from __future__ import annotations
 
-import math
 from collections.abc import Iterator
 from dataclasses import dataclass, field
 
@@ -149,9 +148,9 @@ def _asked(
     if between is not None:
         return between, "as asked"
     if step.valid is not None:
-        return (step.valid[0].value, step.valid[1].value), "where the step says that its law holds"
+        return (step.valid[0].value, step.valid[1].value), "where the step is valid"
     low, high = known_range(experiment.temperature)
-    return (low / WIDER, high * WIDER), "a quarter to both sides of the run's temperature"
+    return (low / WIDER, high * WIDER), "a quarter around the run's temperature"
 
 
 def _not_known(partners: tuple[Gas, ...]) -> str:
@@ -178,6 +177,7 @@ def _temperatures(
     if low + near < run < high - near:
         yield run, True
     elif not low - near <= run <= high + near:
-        yield math.sqrt(low * high), False
+        # A round number between them.
+        yield float(round(0.5 * (low + high))) if high - low > 2 else 0.5 * (low + high), False
     if high > low + near:
         yield high, abs(run - high) <= near

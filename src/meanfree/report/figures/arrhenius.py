@@ -54,7 +54,7 @@ def figure(question: PairQuestion) -> Figure:
     ax.set_xlim(float(x[0]), float(x[-1]))
     style.set_logarithmic(ax, _floor(min(seen)), _ceiling(max(seen)))
     style.label(ax, x="1000 K / T", y=f"Rate constant ({pretty_unit(unit)})")
-    _temperatures(ax, asked)
+    temperatures_along_top(ax, asked / SPAN, asked * SPAN)
     labels.at_ends(ax, ends)
     return drawn
 
@@ -68,15 +68,15 @@ def _ceiling(value: float) -> float:
     return float(10.0 ** np.ceil(np.log10(value) + 0.15))
 
 
-def _temperatures(ax: Axes, asked: float) -> None:
-    """Temperatures along the top, as many as stand clear of each other."""
+def temperatures_along_top(ax: Axes, coldest: float, hottest: float) -> None:
+    """Temperatures [K] along the top of an axis in 1000 K / T, as many as stand clear."""
     top = ax.twiny()
     top.set_xlim(ax.get_xlim())
     low, high = ax.get_xlim()
     places: list[float] = []
     kept: list[float] = []
     width = labels.size_of(ax)[0]
-    for kelvin in sorted(_round_temperatures(asked), reverse=True):
+    for kelvin in sorted(_round_temperatures(coldest, hottest), reverse=True):
         place = (1e3 / kelvin - low) / (high - low) * width
         if 0 <= place <= width and (not places or place - places[-1] > 0.5):
             places.append(place)
@@ -86,6 +86,6 @@ def _temperatures(ax: Axes, asked: float) -> None:
     top.set_xlabel("Temperature (K)")
 
 
-def _round_temperatures(asked: float) -> list[float]:
-    found = MaxNLocator(12, steps=[1, 2, 2.5, 5, 10]).tick_values(asked / SPAN, asked * SPAN)
+def _round_temperatures(coldest: float, hottest: float) -> list[float]:
+    found = MaxNLocator(12, steps=[1, 2, 2.5, 5, 10]).tick_values(coldest, hottest)
     return [float(kelvin) for kelvin in found if kelvin > 0]

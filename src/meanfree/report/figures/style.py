@@ -81,12 +81,15 @@ def drawing() -> Iterator[None]:
         yield
 
 
-def panels(heights: Sequence[float], beside: float, above: float) -> tuple[Figure, list[Axes]]:
-    """A figure of stacked panels with one time axis, all measures in inches.
+def panels(
+    heights: Sequence[float], beside: float, above: float, between: float = 0.28
+) -> tuple[Figure, list[Axes]]:
+    """A figure of stacked panels with one axis to the right, all measures in inches.
 
-    ``beside`` is the room for words right of the axes, ``above`` that over the first panel.
+    ``beside`` is the room for words right of the axes, ``above`` that over the first panel,
+    ``between`` that from one panel to the next.
     """
-    space, below, left = 0.28, 0.52, LEFT
+    space, below, left = between, 0.52, LEFT
     whole = sum(heights) + space * (len(heights) - 1) + below + above
     figure = Figure(figsize=(WIDTH, whole))
     axes: list[Axes] = []

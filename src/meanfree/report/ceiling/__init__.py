@@ -1,0 +1,1 @@
+"""`ceiling` as a summary, as words and tables, and as a document."""
