@@ -23,7 +23,7 @@ from meanfree.progress import Progress, silent
 
 Masks = dict[str, NDArray[np.bool_]]
 
-POINTS, FEWEST = 100, 10
+POINTS, FEWEST = 100, 8
 PATIENT = 10.0
 """Runs go on to this many times the patience, so that contours beyond it can be drawn."""
 
@@ -136,7 +136,7 @@ BUDGET = 25.0
 """Seconds that the runs of a map may take; a map that would take longer gets fewer points."""
 
 
-SLOW = 1.0
+SLOW = 0.6
 """Seconds for two runs after which it is plain that they are not carried out together."""
 
 
@@ -144,16 +144,15 @@ def _affordable(
     experiment: Experiment, readings: list[Reading], across: Axis, up: Axis, until: float
 ) -> tuple[Axis, Axis, bool]:
     """The axes, with fewer values where conditions cannot be carried out together, and whether
-    they are better carried out singly.
+    they are carried out singly then.
 
     What a run adds is measured on a few of them.
     """
 
     def seconds(columns: int, singly: bool = False) -> float:
-        places = np.linspace(0, len(across.values) - 1, columns).astype(int)
+        share = np.linspace(0.1, 0.9, columns)
         conditions = {
-            across.address: across.values[places],
-            up.address: np.full(columns, up.values[len(up.values) // 2]),
+            a.address: a.values[(share * (len(a.values) - 1)).astype(int)] for a in (across, up)
         }
         began = perf_counter()
         read_many(experiment, conditions, readings, until=until, solver=ROUGH, singly=singly)
@@ -161,17 +160,17 @@ def _affordable(
 
     seconds(2)  # not counted: it may compile
     two = seconds(2)
-    each = two / 2 if two > SLOW else max(seconds(8) - two, 0.0) / 6
+    each = two / 2 if two > SLOW else max(seconds(6) - two, 0.0) / 4
     if each * len(across.values) * len(up.values) <= BUDGET:
         return across, up, False
     alone = seconds(3, singly=True) / 3
-    count = max(FEWEST, int((BUDGET / min(each, alone)) ** 0.5))
+    count = max(FEWEST, int((BUDGET / alone) ** 0.5))
     count = min(count, len(across.values), len(up.values))
     fewer = [
         Axis(a.address, grid(float(a.values[0]), float(a.values[-1]), count), a.unit)
         for a in (across, up)
     ]
-    return fewer[0], fewer[1], alone < each
+    return fewer[0], fewer[1], True
 
 
 def _until(experiment: Experiment, request: PlanRequest) -> float:
