@@ -269,14 +269,14 @@ def pressure(pascal: float, shown: UnitsInUse, digits: int = 4) -> str:
 
 
 def slope(pascal_per_second: float, shown: UnitsInUse) -> str:
-    """A change of pressure per time, above zero, per the time in which it is a number above one.
+    """A change of pressure per time, above zero, in the first time that gives a tenth or more.
 
     >>> slope(1.0, UnitsInUse("torr")), slope(2e4, UnitsInUse())
-    ('27.0 torr/h', '20.0 kPa/s')
+    ('0.450 torr/min', '20.0 kPa/s')
     """
     per_second = units.from_si(pascal_per_second, shown.pressure, "pressure")
     times = ((1.0, "s"), (MINUTE, "min"), (HOUR, "h"), (DAY, "d"))
-    length, name = next((one for one in times if per_second * one[0] >= 1), times[-1])
+    length, name = next((one for one in times if per_second * one[0] >= 0.1), times[-1])
     return f"{number(per_second * length)} {pretty_unit(shown.pressure)}/{name}"
 
 
