@@ -14,6 +14,7 @@ from meanfree.case.schema.fit import FitTable
 from meanfree.case.schema.flows import FlowTable
 from meanfree.case.schema.plan import PlanTable
 from meanfree.case.schema.steps import ReverseTable
+from meanfree.case.schema.sweep import SweepTable
 from meanfree.case.schema.tables import (
     TEMPERATURES,
     CaseTable,
@@ -49,6 +50,7 @@ def case_schema() -> dict[str, Any]:
         data=(list[DataTable], Field(default=[], description="measured runs")),
         fit=(FitTable | None, None),
         plan=(PlanTable | None, None),
+        sweep=(SweepTable | None, None),
     )
     schema = model.model_json_schema()
     reverse = ReverseTable.model_json_schema()

@@ -28,6 +28,7 @@ from meanfree.case.meaning.vessel import read_vessel
 from meanfree.case.schema.base import shape
 from meanfree.case.schema.data import DataTable
 from meanfree.case.schema.fit import FitTable
+from meanfree.case.schema.sweep import SweepTable
 from meanfree.case.schema.tables import CaseTable, GasTable
 from meanfree.case.text import parse, read_text
 from meanfree.errors import InputError, Problem
@@ -66,6 +67,8 @@ def load_case(path: str | Path, settings: Mapping[str, str] | None = None) -> Lo
         data = _data(tables.get("data"), findings)
         if tables.get("fit") is not None:
             shape(FitTable, tables["fit"], "fit", findings)
+        if tables.get("sweep") is not None:
+            shape(SweepTable, tables["sweep"], "sweep", findings)
         plan = read_plan(tables.get("plan"), findings)
         planning = PlanRequest() if experiment is None else plan_request(plan, experiment, findings)
         if findings.problems or experiment is None:

@@ -26,7 +26,7 @@ from meanfree.cli import (
     window,
 )
 from meanfree.cli import run as predict
-from meanfree.cli.errors import report_errors
+from meanfree.cli.errors import INTERRUPTED, report_errors
 
 app = typer.Typer(
     name="meanfree",
@@ -80,7 +80,10 @@ def run(arguments: list[str]) -> int:
     command = typer.main.get_command(app)
 
     def call() -> None:
-        command.main(arguments or ["--help"], prog_name="meanfree", standalone_mode=False)
+        words = arguments or ["--help"]
+        status = command.main(words, prog_name="meanfree", standalone_mode=False)
+        if status == INTERRUPTED:  # what typer makes of Ctrl-C
+            raise KeyboardInterrupt
 
     names = list(getattr(command, "commands", {}))
     return report_errors(call, as_json="--json" in arguments, commands=names)

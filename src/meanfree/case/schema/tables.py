@@ -214,3 +214,4 @@ class CaseTable(Table):
     data: Any = Field(None, description="tables [[data]]")
     fit: Any = Field(None, description="the table [fit]")
     plan: Any = Field(None, description="the table [plan]")
+    sweep: Any = Field(None, description="the table [sweep]")

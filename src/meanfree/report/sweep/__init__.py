@@ -1,0 +1,1 @@
+"""What `sweep` leaves beside its parts: summary, page, figures, tables, manifest."""
