@@ -8,11 +8,25 @@ import numpy as np
 import pytest
 from laboratory import experiment, si, step
 
+from meanfree.errors import ComputationError
 from meanfree.integrate import settling
 from meanfree.integrate.run import Status
 from meanfree.integrate.single import integrate
 from meanfree.rates.arrhenius import Arrhenius
 from meanfree.rates.source import Source
+
+
+@pytest.mark.parametrize("holds", ["volume", "pressure"])
+def test_growth_without_bound_is_given_up_in_words(holds: str) -> None:
+    """A -> 2 A: ln(1e9)/k until the amount has grown a billion times."""
+    with pytest.raises(ComputationError) as caught:
+        integrate(experiment([step("A -> 2 A", 0.3)], {"A": 1.0}, holds=holds))
+    text = str(caught.value)
+    assert text.startswith("the amount of gas grew 1e+09 times by ")
+    time = float(text.split(" by ")[1].split(" s,")[0])
+    # the step that passed the bound ends within a tenth of the way
+    assert np.log(1e9) / 0.3 <= time < 1.1 * np.log(1e9) / 0.3
+    assert text.endswith('state a time under [run] until instead of "auto"')
 
 
 def test_a_product_that_piles_up_does_not_keep_the_watched_gas_waiting():

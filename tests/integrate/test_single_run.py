@@ -240,6 +240,13 @@ def test_an_open_ended_run_goes_on_to_the_last_row_asked_for():
     )
 
 
+@pytest.mark.parametrize("trace", [1e-14, 1e-18, 1e-24])
+def test_half_lives_of_a_filled_trace_are_right(trace):
+    """However little of the whole it is: pseudo-first order in a great excess of B."""
+    run = integrate(experiment([step("A + B -> C", 0.5)], {"A": trace, "B": 2.0}))
+    assert run.half_lives("A")[0].duration == pytest.approx(np.log(2), rel=REACHED)
+
+
 def test_an_induction_period_is_not_taken_for_rest():
     """Autocatalysis from a seed of 1e-12: nothing seems to happen for most of the time."""
     run = integrate(experiment([step("A + B -> 2 B", 1.0)], {"A": 1.0, "B": 1e-12}))

@@ -15,6 +15,9 @@ WINDOW = 100.0
 STILL = 1e-6
 """Change, over the most that was ever there, that counts as no movement."""
 
+BOUND = 1e9
+"""Growth of the amount of all gases at which an automatic run is given up."""
+
 HORIZON = 1e17
 """The longest automatic run [s]: about three billion years."""
 
@@ -92,6 +95,9 @@ class Settling:
                 return last_segment and t >= self.at_least
         if last_segment and t >= self.at_least and self._still(t, y):
             self.reason = "settled"
+            return True
+        if y[: self.system.n_gases].sum() > BOUND * self.system.total_concentration:
+            self.reason = "unbounded"
             return True
         if len(self.times) > MOST_STEPS:
             self.reason = "restless"

@@ -15,7 +15,7 @@ from meanfree.integrate.checks import check
 from meanfree.integrate.events import last_crossing
 from meanfree.integrate.ranges import beyond_known_energies, beyond_laws
 from meanfree.integrate.run import Run, Status
-from meanfree.integrate.settling import CONVERTED, HORIZON, Settling
+from meanfree.integrate.settling import BOUND, CONVERTED, HORIZON, Settling
 from meanfree.integrate.stepping import Stepped, equations_for, step_through
 
 
@@ -86,6 +86,11 @@ def _open_ended(
         assert end is not None, "the watcher saw the crossing"
         cut = replace(stepped, trajectory=trajectory.cut(max(end, min(extra, trajectory.end))))
         return cut, Status.CONVERTED, None
+    if settling.reason == "unbounded":
+        raise ComputationError(
+            f"the amount of gas grew {BOUND:g} times by {trajectory.end:.4g} s, and nothing in the "
+            'case ends it: state a time under [run] until instead of "auto"'
+        )
     if settling.reason != "settled":
         restless = settling.reason == "restless"
         return stepped, Status.RESTLESS if restless else Status.HORIZON, None

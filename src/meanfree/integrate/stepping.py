@@ -25,6 +25,9 @@ METHODS: dict[str, Any] = {"Radau": Radau, "BDF": BDF, "LSODA": LSODA}
 SYMBOLIC_GASES, SYMBOLIC_STEPS = 50, 150
 """Above either of these a mechanism is evaluated with sparse arrays instead of compiled sympy."""
 
+OF_ITS_OWN = 1e-12
+"""Absolute tolerance of a filled gas over its own fill, where that is less than over the total."""
+
 MOST_STEPS = 200_000
 """Steps after which a run is given up; common practice, no source."""
 
@@ -143,8 +146,14 @@ def _spread(system: System, y: Floats, temperature: float) -> float:
 
 
 def tolerances(system: System, solver: Solver) -> Floats:
-    """Absolute tolerance of every state [shape (size,)]; v and T are near one, never near zero."""
+    """Absolute tolerance of every state [shape (size,)]; v and T are near one, never near zero.
+
+    A filled trace is kept to `OF_ITS_OWN` of its own fill, however little of the whole that is.
+    """
     atol = np.full(system.size, solver.atol * system.total_concentration)
+    filled = system.initial_x > 0
+    gases = atol[: system.n_gases]
+    gases[filled] = np.minimum(gases[filled], OF_ITS_OWN * system.initial_x[filled])
     atol[system.n_gases :] = 1e-12 * system.total_concentration
     if system.exchanges_heat:
         atol[system.volume_index - 1] = 1e-9 * system.total_concentration * 8.3 * 300
