@@ -144,7 +144,8 @@ def test_a_name_that_no_file_can_have() -> None:
         (
             {"vessel.volme": "3 L"},
             "vessel.volme: found an unknown key (from --set); expected one of holds, volume, "
-            'pressure, rated_pressure, gauge_resolution, shape, dead_space (did you mean "volume"?)',
+            "pressure, rated_pressure, gauge_resolution, shape, dead_space "
+            '(did you mean "volume"?)',
         ),
     ],
 )
