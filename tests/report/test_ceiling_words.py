@@ -89,6 +89,7 @@ def test_crossings_in_words(found: Crossing, said: str) -> None:
 def test_no_crossing_says_where_it_was_looked_for(tmp_path: Path) -> None:
     one = one_of(tmp_path, ('"1e12 L', '"1e10 L'))
     assert crossings(one) == "nowhere from 133 to 1875 K"
+    assert crossings(one_of(tmp_path)) == "above Z everywhere from 133 to 1875 K"
 
 
 def test_units_are_those_of_the_step(tmp_path: Path) -> None:

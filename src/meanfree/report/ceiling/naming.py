@@ -8,9 +8,11 @@ from meanfree import units
 from meanfree.experiment.mechanism import side
 from meanfree.planning.ceiling import Crossing, Level, StepCeiling
 from meanfree.rates.attraction import Attraction
+from meanfree.rates.ceiling import OVER
 from meanfree.report import wording
 
 ORDER = 2.0
+_CALLED = {"hard spheres": "Z", "long range": "the long-range ceiling"}
 DEFAULT_UNIT = "L/mol/s"
 
 
@@ -41,16 +43,22 @@ def kelvins(span: tuple[float, float]) -> str:
 
 def crossing(found: Crossing) -> str:
     """``above Z from 1230 K on`` or ``above Z up to 210 K``"""
-    name = "Z" if found.ceiling == "hard spheres" else "the long-range ceiling"
+    name = _CALLED[found.ceiling]
     at = f"{found.temperature:.0f} K" if found.temperature >= 100 else f"{found.temperature:.3g} K"
     return f"above {name} {'from' if found.rising else 'below'} {at}{' on' if found.rising else ''}"
 
 
 def crossings(one: StepCeiling) -> str:
-    """Where k crosses its ceilings, in words; where it was looked for, where it does not."""
-    if one.crossings:
-        return "; ".join(crossing(found) for found in one.crossings)
-    return f"nowhere from {kelvins((round(one.searched[0]), round(one.searched[1])))}"
+    """Where k is above its ceilings, in words, and over what that was looked for."""
+    searched = kelvins((round(one.searched[0]), round(one.searched[1])))
+    crossed = {found.ceiling for found in one.crossings}
+    level = one.levels[0]
+    Z = None if level.limit is None else level.limit.Z
+    said = [crossing(found) for found in one.crossings]
+    for ceiling, value in (("hard spheres", Z), ("long range", level.long_range)):
+        if ceiling not in crossed and value is not None and level.k > value * (1 + OVER):
+            said.append(f"above {_CALLED[ceiling]} everywhere from {searched}")
+    return "; ".join(said) or f"nowhere from {searched}"
 
 
 def wrongs(one: StepCeiling) -> Iterator[str]:
