@@ -9,13 +9,13 @@ from __future__ import annotations
 import hashlib
 import json
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import cached_property
 from importlib import metadata
 from typing import Any
 
 from meanfree.campaigns.columns import Columns, columns_of
-from meanfree.campaigns.designs import Design
+from meanfree.campaigns.designs import Design, Listed, excerpt
 from meanfree.experiment.experiment import Experiment
 from meanfree.integrate.observables import Observable
 
@@ -52,6 +52,14 @@ class Campaign:
         """First condition of a part, and the first after it."""
         start = part * self.part_size
         return start, min(start + self.part_size, self.design.count)
+
+    def for_part(self, part: int) -> Campaign:
+        """What one part needs to be computed elsewhere, under the identity settled here."""
+        light = self
+        if isinstance(self.design, Listed):
+            light = replace(self, design=excerpt(self.design, *self.span(part)))
+        light.__dict__.update(identity=self.identity, hash=self.hash)
+        return light
 
     @cached_property
     def columns(self) -> Columns:

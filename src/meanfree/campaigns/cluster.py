@@ -7,6 +7,7 @@ scheduler nor this process holds many. A worker that is lost costs the parts it 
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
+from typing import Any
 
 from meanfree.campaigns.campaign import Campaign
 from meanfree.campaigns.part import Part, compute_part
@@ -14,6 +15,9 @@ from meanfree.errors import ComputationError, InputError
 
 AHEAD = 2
 """Parts under way for each thread of the cluster."""
+
+TRIES = 5
+"""Times that a part is begun before losing its worker counts as its own fault."""
 
 PATIENCE_S = 30.0
 
@@ -50,26 +54,42 @@ def on_cluster(campaign: Campaign, numbers: Sequence[int], scheduler: str) -> It
                 f"The scheduler at {scheduler} has no worker. Start some with: dask worker "
                 f"{scheduler} --nthreads 1"
             ) from None
-        shared = client.scatter(campaign, broadcast=True, hash=False)
         threads = sum(client.nthreads().values())
-        pending = list(reversed(numbers))
+        pending, tries = list(reversed(numbers)), dict.fromkeys(numbers, 0)
+        # The campaign travels with each part: what is only kept on workers goes when they go.
+        under_way: dict[Any, int] = {}
 
-        def begin() -> object:
-            return client.submit(compute_part, shared, pending.pop(), pure=False)
+        def begin() -> Any:
+            number = pending.pop()
+            tries[number] += 1
+            future = client.submit(compute_part, campaign.for_part(number), number, pure=False)
+            under_way[future] = number
+            return future
 
         ahead = min(len(pending), max(1, AHEAD * threads))
-        running = as_completed([begin() for _ in range(ahead)])
+        running = as_completed([begin() for _ in range(ahead)], loop=client.loop)
         for future in running:
+            number = under_way.pop(future)
             part = _result(future)
+            if part is None:
+                if tries[number] >= TRIES:
+                    raise ComputationError(f"Workers were lost {TRIES} times at part {number}.")
+                pending.append(number)
             future.release()
             if pending:
                 running.add(begin())
-            yield part
+            if part is not None:
+                yield part
 
 
-def _result(future: object) -> Part:
+def _result(future: Any) -> Part | None:
+    """The part, None where it was lost with its worker."""
+    from concurrent.futures import CancelledError
+
     try:
-        found: Part = future.result()  # type: ignore[attr-defined]
+        found: Part = future.result()
+    except CancelledError:
+        return None
     except ComputationError:
         raise
     except Exception as error:

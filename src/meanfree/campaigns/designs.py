@@ -131,6 +131,33 @@ class Listed:
 
 
 @dataclass(frozen=True)
+class Excerpt:
+    """Some rows of a long list, from ``first`` on, so that not all of it need travel."""
+
+    whole: Listed
+    first: int
+    count: int
+
+    @property
+    def addresses(self) -> tuple[str, ...]:
+        """What is varied."""
+        return self.whole.addresses
+
+    def rows(self, start: int, stop: int) -> dict[str, Floats]:
+        """Conditions ``start`` to ``stop`` of the whole list."""
+        return self.whole.rows(start - self.first, stop - self.first)
+
+    def described(self) -> dict[str, Any]:
+        """Everything that decides these conditions."""
+        return {"first": self.first, **self.whole.described()}
+
+
+def excerpt(design: Listed, start: int, stop: int) -> Excerpt:
+    """Rows ``start`` to ``stop`` of a list, under their old indices."""
+    return Excerpt(Listed(design.rows(start, stop), design.file), start, design.count)
+
+
+@dataclass(frozen=True)
 class Spread:
     """How one number is spread.
 

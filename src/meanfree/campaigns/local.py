@@ -10,6 +10,7 @@ import multiprocessing
 import os
 import signal
 from collections.abc import Iterator, Sequence
+from contextlib import suppress
 from dataclasses import dataclass
 from multiprocessing.connection import Connection, wait
 from multiprocessing.context import SpawnProcess
@@ -54,7 +55,7 @@ def _shared_out(campaign: Campaign, pending: list[int], pool: list[_Worker]) -> 
     while True:
         for place, worker in enumerate(pool):
             if worker.at is None and pending:
-                if not worker.process.is_alive():
+                if worker.is_lost or not worker.process.is_alive():
                     pool[place] = worker = _again(campaign, worker)
                 worker.begin(pending.pop())
         busy = [worker for worker in pool if worker.at is not None]
@@ -73,6 +74,8 @@ def _shared_out(campaign: Campaign, pending: list[int], pool: list[_Worker]) -> 
             elif answer is not None:
                 raise ComputationError(f"Part {number} failed: {answer}")
             else:
+                # Its pipe may close some time before the process has ended.
+                worker.is_lost = True
                 tries[number] = tries.get(number, 0) + 1
                 if tries[number] >= TRIES:
                     raise ComputationError(
@@ -101,17 +104,12 @@ class _Worker:
         theirs.close()
         self.at: int | None = None
         self.campaign = campaign
-        self.knows = False
+        self.is_lost = False
 
     def begin(self, number: int) -> None:
         self.at = number
-        try:
-            if not self.knows:
-                self.pipe.send(self.campaign)
-                self.knows = True
-            self.pipe.send(number)
-        except OSError:  # already gone: its sentinel will say so
-            pass
+        with suppress(OSError):  # already gone: its sentinel will say so
+            self.pipe.send((self.campaign.for_part(number), number))
 
     def answer(self) -> Any:
         """A part, an error in words, or None where the worker is gone."""
@@ -143,9 +141,8 @@ def _work(pipe: Connection) -> None:
     # Ctrl-C reaches every process of the terminal; the parent decides.
     signal.signal(signal.SIGINT, signal.SIG_IGN)
     try:
-        campaign: Campaign = pipe.recv()
         while True:
-            number: int = pipe.recv()
+            campaign, number = pipe.recv()
             pipe.send(_tried(campaign, number))
     except (EOFError, OSError):
         return
