@@ -238,8 +238,8 @@ def _drawings(result: SweepResult) -> list[Drawing]:
                 own = [curve for curve in digest.curves if curve.column == name]
                 drawn = style.rendered(figures.marginal(own, experiment, name))
                 caption = (
-                    f"{name} against each number, the others as the design has them: median, and "
-                    "the band that holds two conditions in three."
+                    f"{name} against each number, the others as the design has them: median of the "
+                    "runs that reached it, and the band that holds two in three of those."
                 )
                 found.append(Drawing(_numbered("marginal", place), *drawn, caption))
     return found
