@@ -79,6 +79,10 @@ class Store:
         """Parts still to be made, in order."""
         return [n for n in range(self.campaign.parts) if n not in self.finished]
 
+    def kept(self) -> int:
+        """Parts that lie in the folder now; an interruption may fall between disk and count."""
+        return sum(self.path(number).exists() for number in range(self.campaign.parts))
+
     def keep(self, part: Part) -> None:
         """Write a part, whole. Raises `ComputationError` for a full disk; the others stay."""
         draft = self.folder / f".{part_name(part.number)}"

@@ -174,7 +174,7 @@ def _told_where_it_stopped(store: Store) -> Iterator[None]:
         yield
     except KeyboardInterrupt:
         print(  # noqa: T201
-            f"{len(store.finished)} of {store.campaign.parts} parts are kept in {store.folder}. "
+            f"{store.kept()} of {store.campaign.parts} parts are kept in {store.folder}. "
             "The same command goes on from there.",
             file=sys.stderr,
         )
