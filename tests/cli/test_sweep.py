@@ -47,6 +47,8 @@ def test_a_grid(here: Path, capsys: Printed) -> None:
         "6 conditions: Dimerisation Conditions 6 grid over temperature, A filled"
     )
     assert "Failed none" in said
+    assert "Observable reached lowest median highest" in said
+    assert max(len(line) for line in printed.out.splitlines()) <= 80
     assert printed.err == ""  # no terminal, no progress
     folder = Path("outputs/grid/sweep")
     assert sorted(path.name for path in folder.iterdir()) == [
