@@ -33,7 +33,7 @@ SWEEP = {
 }
 AHEAD = 2
 HANDING_OUT = 1e-3
-"""Seconds that the scheduler spends on a part: what its authors state for a task."""
+"""Seconds that the scheduler spends on a part. Assumed; no source."""
 
 
 @dataclass(frozen=True)
