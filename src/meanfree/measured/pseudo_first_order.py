@@ -17,7 +17,7 @@ from meanfree.measured.runs import MeasuredRun
 from meanfree.measured.straight_lines import Interval, Line, straight_line, widened
 
 EXCESS = 10.0
-"""Partner over gas below which k' falls in the course of a run; common practice, no source."""
+"""Partner over gas below which k' falls during a run; common practice, no source."""
 
 
 @dataclass(frozen=True)
