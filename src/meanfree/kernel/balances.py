@@ -41,7 +41,7 @@ class Balances:
     @property
     def unknowns(self) -> int:
         """States and, where they border the matrix, baths."""
-        return self.layout.size + (len(self.baths) if self.border else 0)
+        return self.layout.states + (len(self.baths) if self.border else 0)
 
     @property
     def bordering(self) -> list[int]:
@@ -61,11 +61,11 @@ class Balances:
     def system_matrix(self, tape: Tape, jacobian: Matrix, shift: int) -> Matrix:
         """shift I - J, with the rows of the baths below: m - sum(w_i x_i) = 0."""
         matrix = {key: tape.neg(value) for key, value in jacobian.items()}
-        for i in range(self.layout.size):
+        for i in range(self.layout.states):
             matrix[i, i] = tape.add(shift, matrix[i, i]) if (i, i) in matrix else shift
         if self.border:
             for place, weights in enumerate(self.weights):
-                row = self.layout.size + place
+                row = self.layout.states + place
                 matrix[row, row] = tape.const(1.0)
                 for gas, weight in weights.items():
                     matrix[row, gas] = tape.const(-weight)
@@ -240,7 +240,7 @@ class _Point:
             for place, slope in self._bath_slopes(rate):
                 inner = t.mul(self.v_over_w, slope)
                 if self.b.border:
-                    put(layout.size + place, j, inner)
+                    put(layout.states + place, j, inner)
                 else:
                     for gas, weight in self.b.weights[place].items():
                         put(gas, j, t.mul(t.const(weight), inner))

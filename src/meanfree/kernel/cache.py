@@ -7,19 +7,26 @@ written anew.
 
 from __future__ import annotations
 
+import atexit
 import hashlib
 import importlib.util
 import os
+import shutil
 import stat
 import sys
 import tempfile
+import threading
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
 from functools import lru_cache
+from importlib.machinery import SourceFileLoader
 from pathlib import Path
-from types import ModuleType
+from types import CodeType, ModuleType
 
 from meanfree import __file__ as package_file
+
+_ONE_AT_A_TIME = threading.RLock()
+"""Numba's settings and the modules belong to the whole process."""
 
 Say = Callable[[str], None]
 """Takes a sentence for the user."""
@@ -34,18 +41,31 @@ def user_cache() -> Path:
     chosen = os.environ.get("MEANFREE_CACHE")
     if chosen:
         return Path(chosen)
+    try:
+        return _usual_cache() / "meanfree" / "kernels"
+    except RuntimeError:  # an account without a home, as in some containers
+        return temporary_cache()
+
+
+def _usual_cache() -> Path:
     if sys.platform == "win32":
-        base = os.environ.get("LOCALAPPDATA") or str(Path.home() / "AppData" / "Local")
-        return Path(base) / "meanfree" / "kernels"
+        base = os.environ.get("LOCALAPPDATA")
+        return Path(base) if base else Path.home() / "AppData" / "Local"
     if sys.platform == "darwin":
-        return Path.home() / "Library" / "Caches" / "meanfree" / "kernels"
-    return Path(os.environ.get("XDG_CACHE_HOME") or Path.home() / ".cache") / "meanfree" / "kernels"
+        return Path.home() / "Library" / "Caches"
+    base = os.environ.get("XDG_CACHE_HOME")
+    # The specification of that variable: a relative path is to be ignored.
+    return Path(base) if base and Path(base).is_absolute() else Path.home() / ".cache"
 
 
 @lru_cache(maxsize=1)
 def temporary_cache() -> Path:
-    """A private folder for this process, where the user's cannot be used."""
-    return Path(tempfile.mkdtemp(prefix="meanfree-kernels-"))
+    """A private folder where the user's cannot be used; it goes when this process ends."""
+    folder = Path(tempfile.mkdtemp(prefix="meanfree-kernels-"))
+    atexit.register(shutil.rmtree, folder, ignore_errors=True)
+    # Processes started from here share it, and leave none of their own behind.
+    os.environ["MEANFREE_CACHE"] = str(folder)
+    return folder
 
 
 @lru_cache(maxsize=1)
@@ -74,19 +94,31 @@ def machine_code_in_user_cache() -> Iterator[None]:
     one calls has changed; here the folder's name holds the hash of all of them.
     """
     from numba import config
+    from numba.core import ccallback, dispatcher
 
+    from meanfree.kernel.kept_code import KeptCode
+
+    with _ONE_AT_A_TIME:
+        before = config.CACHE_DIR, dispatcher.FunctionCache, ccallback.FunctionCache
+        config.CACHE_DIR = str(_code_folder())
+        dispatcher.FunctionCache = ccallback.FunctionCache = KeptCode
+        try:
+            yield
+        finally:
+            config.CACHE_DIR, dispatcher.FunctionCache, ccallback.FunctionCache = before
+
+
+def _code_folder() -> Path:
+    """A folder for machine code that can be written: the user's, else a temporary one."""
     digest = hashlib.sha256(versions().encode()).hexdigest()[:16]
-    before, folder = config.CACHE_DIR, user_cache() / digest
+    folder = user_cache() / digest
     try:
         folder.mkdir(parents=True, exist_ok=True, mode=0o700)
         _insist_on_private(folder.parent)
+        with tempfile.TemporaryFile(dir=folder):
+            return folder
     except OSError:
-        folder = temporary_cache()
-    config.CACHE_DIR = str(folder)
-    try:
-        yield
-    finally:
-        config.CACHE_DIR = before
+        return temporary_cache()
 
 
 def module_of(source: str, say: Say = silent) -> ModuleType:
@@ -94,15 +126,16 @@ def module_of(source: str, say: Say = silent) -> ModuleType:
 
     A cache that cannot be written or is damaged is said and replaced by a temporary folder.
     """
-    name = file_of(source).stem
-    if name in sys.modules:
-        return sys.modules[name]
-    folder = user_cache()
-    try:
-        return _imported(_written(folder, name, source), name)
-    except (OSError, ImportError, SyntaxError, ValueError, EOFError, AttributeError) as error:
-        say(f"kernels are compiled into a temporary folder: {folder} cannot be used ({error})")
-    return _imported(_written(temporary_cache(), name, source), name)
+    with _ONE_AT_A_TIME:
+        name = file_of(source).stem
+        if name in sys.modules:
+            return sys.modules[name]
+        folder = user_cache()
+        try:
+            return _imported(_written(folder, name, source), name)
+        except (OSError, ImportError, SyntaxError, ValueError, AttributeError) as error:
+            say(f"kernels are compiled into a temporary folder: {folder} cannot be used ({error})")
+        return _imported(_written(temporary_cache(), name, source), name)
 
 
 def file_of(source: str) -> Path:
@@ -140,14 +173,24 @@ def _insist_on_private(folder: Path) -> None:
         folder.chmod(0o700)
 
 
+class _Plainly(SourceFileLoader):
+    """Reads the source each time: Python's own compiled copies are trusted unseen."""
+
+    def get_code(self, fullname: str) -> CodeType:
+        path = self.get_filename(fullname)
+        code: CodeType = self.source_to_code(self.get_data(path), path)
+        return code
+
+
 def _imported(path: Path, name: str) -> ModuleType:
-    spec = importlib.util.spec_from_file_location(name, path)
+    spec = importlib.util.spec_from_loader(name, _Plainly(name, str(path)))
     if spec is None or spec.loader is None:
         raise ImportError(f"{path} is no module")
     module = importlib.util.module_from_spec(spec)
     sys.modules[name] = module
     try:
-        spec.loader.exec_module(module)
+        with machine_code_in_user_cache():
+            spec.loader.exec_module(module)
     except BaseException:
         del sys.modules[name]
         raise

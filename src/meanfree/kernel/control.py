@@ -39,23 +39,28 @@ def judge(
 ) -> None:
     """The new state, whether it is accepted, the next step, and whether the loop must look.
 
-    The error is the root mean square of the last stage over the tolerances. May be repeated:
-    nothing that is read here is written.
+    The error is the root mean square of the last stage over the tolerances; with derivatives, the
+    largest of those of the states and of each direction. May be repeated: nothing that is read
+    here is written.
     """
 
     def scalar(name: str) -> int:
         return t.input(layout.scalar(name))
 
-    lowest, scales = t.const(0.0), []
+    lowest, sizes, states = t.const(0.0), list[int](), layout.states
     for i, (w, u) in enumerate(zip(argument, last, strict=True)):
         new = out[layout.new + i] = t.add(w, u)
-        larger = t.max(t.unary(Op.ABS, t.input(layout.state + i)), t.unary(Op.ABS, new))
-        scales.append(t.madd(scalar("rtol"), larger, absolute_tolerance(layout, t, i)))
+        size = t.max(t.unary(Op.ABS, t.input(layout.state + i)), t.unary(Op.ABS, new))
+        # A derivative counts as no smaller than what it is a derivative of.
+        sizes.append(size if i < states else t.max(size, sizes[i % states]))
         if i < layout.system.n_gases:
             lowest = t.min(new, lowest)
-    total = _sum_of_squares(t, last, scales)
     one, never = t.const(1.0), t.const(-1.0)
-    error = t.mul(total, t.const(1.0 / layout.size))
+    error = _mean_square(layout, t, last, sizes, 0)
+    for k in range(len(layout.directions) if layout.controlled else 0):
+        further = _mean_square(layout, t, last, sizes, states * (1 + k))
+        # What is no number must not be passed over for what is one.
+        error = t.add(t.max(further, error), t.sub(further, further))
     exponent = t.const(-0.5 / (error_order + 1))
     factor = t.mul(t.const(SAFETY), t.unary(Op.EXP, t.mul(exponent, t.unary(Op.LOG, error))))
     factor = t.min(t.max(factor, t.const(SHRINK)), t.const(GROW))
@@ -80,6 +85,15 @@ def judge(
         ("negative", t.neg(lowest)),
     ):  # fmt: skip
         out[layout.scalar(name)] = value
+
+
+def _mean_square(layout: Layout, t: Tape, last: list[int], sizes: list[int], first: int) -> int:
+    """Mean square of the errors of the states, or of their derivatives in one direction."""
+    part, rtol = slice(first, first + layout.states), t.input(layout.scalar("rtol"))
+    scales = [
+        t.madd(rtol, size, absolute_tolerance(layout, t, i)) for i, size in enumerate(sizes[part])
+    ]
+    return t.mul(_sum_of_squares(t, last[part], scales), t.const(1.0 / layout.states))
 
 
 def _sum_of_squares(t: Tape, values: list[int], scales: list[int]) -> int:

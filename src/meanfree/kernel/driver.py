@@ -8,7 +8,7 @@ from __future__ import annotations
 
 import numpy as np
 
-from meanfree.kernel import events, lane, pivoting, resting
+from meanfree.kernel import events, jumps, lane, pivoting, resting
 from meanfree.kernel.records import (
     AGAIN,
     FRESH,
@@ -114,7 +114,7 @@ def advance(
                     lane.load(p, W, I, job, I[WHO, l], l)
                     some_fresh = True
                 elif W[T, l] >= W[STOP, l]:
-                    _pass_break(p, W, I, job, ask, l)
+                    _pass_break(p, W, I, addresses, codes, job, ask, l)
                     some_fresh = True
     return count
 
@@ -239,9 +239,15 @@ def _close(p: Places, W: Floats, I: Longs, ask: Request, out: Kept, ending: int,
 
 
 @compiled
-def _pass_break(p: Places, W: Floats, I: Longs, job: Conditions, ask: Request, l: int) -> None:
+def _pass_break(
+    p: Places, W: Floats, I: Longs, addresses: Longs, codes: Longs, job: Conditions, ask: Request,
+    l: int,
+) -> None:  # fmt: skip
     """A break, and what it means for levels that shrink with the contents."""
-    lane.pass_break(p, W, I, job.breaks, job.changed, l)
+    if p.size > p.states:
+        jumps.pass_break(p, W, I, job, addresses, codes, l)
+    else:
+        lane.pass_break(p, W, I, job.breaks, job.changed, l)
     for f in range(p.n_functionals):
         if not ask.flags[f, 2]:
             events.set_level(p, W, I, ask.flags, ask.levels, f, l)

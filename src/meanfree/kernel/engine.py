@@ -130,11 +130,11 @@ class Kernel:
             np.zeros((LEVEL + len(task.functionals), lanes), np.int64),
             np.array(self._all_addresses(compiled, lanes), np.int64),
             np.array([code.ctypes.data for code in codes], np.int64),
-            np.array([(r, c, s) for (r, c), s in self.program.matrix.items()], np.int64),
+            np.array(self.program.entries, np.int64),
             method.a,
             method.c,
             method.dense,
-            self._conditions(numbers, variation.count),
+            self._conditions(variation, numbers),
             request,
             kept,
         )
@@ -185,6 +185,7 @@ class Kernel:
         return Places(
             lanes=lanes,
             size=layout.size,
+            states=layout.states,
             gases=system.n_gases,
             unknowns=program.unknowns,
             n_parameters=len(layout.parameters),
@@ -238,7 +239,8 @@ class Kernel:
             self._addresses[lanes] = addresses(self.program.phases, lanes, self.say)
         return self._addresses[lanes]
 
-    def _conditions(self, numbers: list[Floats], count: int) -> Conditions:
+    def _conditions(self, variation: Variation, numbers: list[Floats]) -> Conditions:
+        count = variation.count
         layout, later = self.program.layout, self.system.segments[1:]
         varied = [i for i, column in enumerate(numbers) if len(column) > 1]
         own = np.empty((len(varied), count))
@@ -257,6 +259,7 @@ class Kernel:
             own,
             np.array(breaks, float).reshape(1, len(later), 3 + len(names)),
             np.array([column for _, column in names], np.int64),
+            np.zeros((1, len(later), 0, 3)),
         )
 
 

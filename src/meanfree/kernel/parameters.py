@@ -74,6 +74,10 @@ class Variation:
         }
         return Variation(self.system, min(stop, self.count) - start, kept)
 
+    def start(self, layout: Layout) -> list[Floats]:
+        """What follows the state at time zero: nothing where no derivatives are carried along."""
+        return []
+
     # Rate constants that last
 
     def constants(self, j: int) -> Floats:
@@ -143,16 +147,18 @@ def parameter(layout: Layout, variation: Variation, name: Name) -> Floats:
 def columns(layout: Layout, variation: Variation, atol: float, end: Floats) -> list[Floats]:
     """Everything a lane takes in: state, parameters, three absolute tolerances, end [s].
 
-    Each of shape (count,), or (1,) where all conditions share it.
+    The state is followed by its derivatives where there are directions. Each is of shape (count,),
+    or (1,) where all conditions share it.
     """
     system, total = layout.system, variation.total
     zero, one = np.zeros(1), np.ones(1)
     state = [variation.get("x", i) for i in range(system.n_gases)]
-    state += [zero] * (layout.size - system.n_gases)
+    state += [zero] * (layout.states - system.n_gases)
     if system.volume_varies:
         state[system.volume_index] = one
     if layout.has_T:
         state[layout.T_index] = variation.get("T")
+    state += variation.start(layout)
     parameters = [parameter(layout, variation, name) for name in layout.parameters]
     tolerances = [atol * total, 1e-12 * total, 1e-9 * total * 8.3 * 300]
     return [*state, *parameters, *tolerances, end]

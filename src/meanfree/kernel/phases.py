@@ -23,8 +23,9 @@ from meanfree.kernel.tape import Op, Phase, Tape
 class Program:
     """The phases with what one needs to know of their slots.
 
-    ``matrix`` maps a place of the matrix to the slot of its entry before factorisation;
-    ``end`` is the first slot that no phase uses.
+    ``entries``: block, row, column and slot; block 0 is the matrix before factorisation, block
+    1 + k what couples the derivatives in direction k to the state. ``end`` is the first slot that
+    no phase uses.
     """
 
     layout: Layout
@@ -37,7 +38,7 @@ class Program:
     assemble: Phase
     evaluate: Phase
     judge: Phase
-    matrix: dict[tuple[int, int], int]
+    entries: list[tuple[int, int, int, int]]
     end: int
     operations: int = field(default=0)
 
@@ -53,7 +54,7 @@ def build_program(
     """The phases of a System; baths border the matrix where that needs fewer products."""
     candidates = []
     for border in (False, True):
-        writer = _Writer(system, tableau, border, varied)
+        writer = Writer(Layout(system, tableau.stages, varied=varied), tableau, border)
         if border and not writer.balances.baths:
             continue
         candidates.append(writer)
@@ -61,12 +62,11 @@ def build_program(
     return best.write()
 
 
-class _Writer:
-    def __init__(
-        self, system: System, tableau: Tableau, border: bool, varied: frozenset[Name]
-    ) -> None:
-        self.tableau = tableau
-        self.layout = Layout(system, tableau.stages, varied=varied)
+class Writer:
+    """Writes the phases for one layout; baths border the matrix or are put in."""
+
+    def __init__(self, layout: Layout, tableau: Tableau, border: bool) -> None:
+        self.tableau, self.layout = tableau, layout
         self.balances = Balances(self.layout, border)
         tape = Tape()
         state = self._state(tape, self.layout.state)
@@ -78,8 +78,9 @@ class _Writer:
         return [tape.input(first + i) for i in range(self.layout.size)]
 
     def write(self) -> Program:
+        """All phases, and where things lie."""
         layout, tableau = self.layout, self.tableau
-        first = layout.first_parameter + len(layout.parameters)
+        first = self._own_slots(layout.first_parameter + len(layout.parameters))
         slots: dict[tuple[int, int], int] = {}
         for b in self.plan.order:
             slots[b, b] = first + len(slots)
@@ -102,10 +103,17 @@ class _Writer:
             assemble,
             self._evaluate(),
             self._judging(),
-            matrix,
+            [*((0, *key, slot) for key, slot in matrix.items()), *self._couplings()],
             first + len(slots) + len(matrix),
             sum(len(phase.tape.entries) for phase in step),
         )
+
+    def _own_slots(self, first: int) -> int:
+        """The first slot behind those that a writer needs besides."""
+        return first
+
+    def _couplings(self) -> list[tuple[int, int, int, int]]:
+        return []
 
     def _factor(self) -> Phase:
         layout, t = self.layout, Tape()
@@ -116,7 +124,7 @@ class _Writer:
         worst = self._eliminate(t, matrix)
         outputs.update({self.factors[key]: matrix[key] for key in self.factors})
         outputs[layout.scalar("bad")] = worst
-        for i, value in enumerate(self._solve(t, rhs, matrix)):
+        for i, value in enumerate(self._solve(t, rhs, matrix)[: layout.size]):
             outputs[layout.stage(0) + i] = value
         return Phase("factor", t, outputs)
 
@@ -135,7 +143,7 @@ class _Writer:
         return worst
 
     def _solve(self, t: Tape, rhs: list[int], matrix: Matrix) -> list[int]:
-        """Solution for the states; the baths' rows have nothing on their right."""
+        """Solution for all unknowns; the baths' rows have nothing on their right."""
         x = [*rhs, *[t.const(0.0)] * (self.balances.unknowns - len(rhs))]
         for b in self.plan.order:
             for r in self.plan.rows[b]:
@@ -145,7 +153,15 @@ class _Writer:
             for c in self.plan.columns[b]:
                 total = t.nmadd(matrix[b, c], x[c], total)
             x[b] = t.mul(total, matrix[b, b])
-        return x[: self.layout.size]
+        return x
+
+    def _rates(self, t: Tape, argument: list[int]) -> list[int]:
+        """What the stages evaluate."""
+        return self.balances.derivative(t, argument)
+
+    def _solved(self, t: Tape, rhs: list[int], matrix: Matrix) -> list[int]:
+        """A stage, from its right-hand side and the factors."""
+        return self._solve(t, rhs, matrix)[: self.layout.size]
 
     def _stage(self, s: int) -> Phase:
         layout, t, method = self.layout, Tape(), self.tableau
@@ -155,7 +171,7 @@ class _Writer:
         argument = self._argument(t, s, stages)
         if s + 1 == method.stages or self._continues(s + 1):
             outputs.update({layout.argument + i: value for i, value in enumerate(argument)})
-        rhs = self.balances.derivative(t, argument)
+        rhs = self._rates(t, argument)
         inverse_h = t.input(layout.scalar("inverse_h"))
         for i in range(size):
             earlier = t.combine(
@@ -163,7 +179,7 @@ class _Writer:
             )
             rhs[i] = t.madd(inverse_h, earlier, rhs[i])
         matrix = {key: t.input(slot) for key, slot in self.factors.items()}
-        new = self._solve(t, rhs, matrix)
+        new = self._solved(t, rhs, matrix)
         outputs.update({layout.stage(s) + i: value for i, value in enumerate(new)})
         if s + 1 == method.stages:
             control.judge(layout, t, method.error_order, argument, new, outputs)
@@ -208,7 +224,7 @@ class _Writer:
                 t.combine((w, rhs[i]) for i, w in weights.items())
                 for weights in self.balances.weights
             ]
-        second = [t.const(0.0)] * layout.size
+        second = [t.const(0.0)] * layout.states
         for (row, column), value in jacobian.items():
             second[row] = t.madd(value, change[column], second[row])
         fastest = t.const(0.0)
@@ -228,5 +244,5 @@ class _Writer:
 
     def _evaluate(self) -> Phase:
         layout, t = self.layout, Tape()
-        rhs = self.balances.derivative(t, self._state(t, layout.argument))
+        rhs = self._rates(t, self._state(t, layout.argument))
         return Phase("evaluate", t, {layout.value + i: value for i, value in enumerate(rhs)})

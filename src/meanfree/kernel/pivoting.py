@@ -77,14 +77,15 @@ def pivoted_step(
 ) -> bool:
     """The stages of one lane and the last one's argument, as the step's phases leave them.
 
-    ``entries`` [n, 3]: row, column and slot of the matrix before factorisation; ``a``, ``c`` are
+    ``entries`` [n, 4]: block, row, column and slot, see `meanfree.kernel.phases`; ``a``, ``c`` are
     the method's. False where the matrix is singular.
     """
     base = W.ctypes.data
     call_address(addresses[ASSEMBLE], base, codes[ASSEMBLE])
     A, order = np.zeros((p.unknowns, p.unknowns)), np.empty(p.unknowns, np.int64)
     for e in range(len(entries)):
-        A[entries[e, 0], entries[e, 1]] = W[entries[e, 2], l]
+        if entries[e, 0] == 0:
+            A[entries[e, 1], entries[e, 2]] = W[entries[e, 3], l]
     if not factorise(A, order):
         return False
     rhs = np.zeros(p.unknowns)
@@ -95,12 +96,21 @@ def pivoted_step(
                 w += a[s, q] * W[p.stage + q * p.size + i, l]
             W[p.argument + i, l] = w
         call_address(addresses[EVALUATE], base, codes[EVALUATE])
-        for i in range(p.size):
-            earlier = 0.0
-            for q in range(s):
-                earlier += c[s, q] * W[p.stage + q * p.size + i, l]
-            rhs[i] = W[p.value + i, l] + W[INVERSE_H, l] * earlier
-        x = solve(A, order, rhs)
-        for i in range(p.size):
-            W[p.stage + s * p.size + i, l] = x[i]
+        x = np.zeros(p.unknowns)
+        for block in range(p.size // p.states):
+            first = block * p.states
+            for i in range(p.states):
+                earlier = 0.0
+                for q in range(s):
+                    earlier += c[s, q] * W[p.stage + q * p.size + first + i, l]
+                rhs[i] = W[p.value + first + i, l] + W[INVERSE_H, l] * earlier
+            if block > 0:
+                for e in range(len(entries)):
+                    if entries[e, 0] == block:
+                        rhs[entries[e, 1]] += W[entries[e, 3], l] * x[entries[e, 2]]
+            y = solve(A, order, rhs)
+            if block == 0:
+                x[:] = y
+            for i in range(p.states):
+                W[p.stage + s * p.size + first + i, l] = y[i]
     return True

@@ -29,12 +29,14 @@ def compiled(function: Any) -> Any:
 class Places(NamedTuple):
     """Numbers of one job: sizes, first slots, and what is asked. No arrays, so it costs nothing.
 
-    ``heat``, ``v`` and ``T`` are places in the state, -1 without them, as is ``watched``, the gas
-    whose conversion counts in an ``automatic`` run.
+    ``size`` counts the ``states`` and their derivatives. ``heat``, ``v`` and ``T`` are places in
+    the state, -1 without them, as is ``watched``, the gas whose conversion counts in an
+    ``automatic`` run.
     """
 
     lanes: int
     size: int
+    states: int
     gases: int
     unknowns: int
     n_parameters: int
@@ -68,6 +70,7 @@ class Conditions(NamedTuple):
     end [s]: ``common`` [size + n_parameters + 4], but ``own`` [n_varied, n] in its places
     ``varied``. ``breaks`` [rows, n_breaks, 3 + n_changed]: when a segment starts [s], the fraction
     retained, the temperature [K] (0: as it is), and the values of the parameters ``changed``.
+    ``moving`` [rows, n_breaks, n_directions, 3]: derivatives of the first three.
     """
 
     common: Floats
@@ -75,6 +78,7 @@ class Conditions(NamedTuple):
     own: Floats
     breaks: Floats
     changed: Longs
+    moving: Floats
 
 
 class Request(NamedTuple):

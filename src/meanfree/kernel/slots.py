@@ -38,13 +38,17 @@ class Layout:
 
     The state is the System's, followed by T where a program moves it: then T is a state with a
     known slope. Parameters get their places as phases ask for them; those ``varied`` are never
-    taken for fixed numbers.
+    taken for fixed numbers. Behind the state lie its derivatives in ``directions``, one block of
+    the state's length for each; a direction is the parameters that move along it. Where they are
+    ``controlled`` their errors count in the choice of steps as those of the states do.
     """
 
     system: System
     stages: int
     parameters: dict[Name, int] = field(default_factory=dict)
     varied: frozenset[Name] = frozenset()
+    directions: tuple[frozenset[Name], ...] = ()
+    controlled: bool = True
 
     @property
     def has_T(self) -> bool:
@@ -52,14 +56,19 @@ class Layout:
         return self.system.mode != "isothermal"
 
     @cached_property
-    def size(self) -> int:
+    def states(self) -> int:
         """Number of states."""
         return self.system.size + int(self.system.mode == "program")
+
+    @cached_property
+    def size(self) -> int:
+        """Number of states and of their derivatives."""
+        return self.states * (1 + len(self.directions))
 
     @property
     def T_index(self) -> int:
         """Place of T in the state."""
-        return self.size - 1
+        return self.states - 1
 
     def scalar(self, name: str) -> int:
         """Slot of one of `SCALARS`."""
