@@ -22,6 +22,7 @@ from functools import lru_cache
 from importlib.machinery import SourceFileLoader
 from pathlib import Path
 from types import CodeType, ModuleType
+from typing import Any
 
 from meanfree import __file__ as package_file
 
@@ -98,14 +99,18 @@ def machine_code_in_user_cache() -> Iterator[None]:
 
     from meanfree.kernel.kept_code import KeptCode
 
+    holders: tuple[Any, ...] = (dispatcher, ccallback)
     with _ONE_AT_A_TIME:
-        before = config.CACHE_DIR, dispatcher.FunctionCache, ccallback.FunctionCache
+        folder_before, caches_before = config.CACHE_DIR, [h.FunctionCache for h in holders]
         config.CACHE_DIR = str(_code_folder())
-        dispatcher.FunctionCache = ccallback.FunctionCache = KeptCode
+        for holder in holders:
+            holder.FunctionCache = KeptCode
         try:
             yield
         finally:
-            config.CACHE_DIR, dispatcher.FunctionCache, ccallback.FunctionCache = before
+            config.CACHE_DIR = folder_before
+            for holder, cache in zip(holders, caches_before, strict=True):
+                holder.FunctionCache = cache
 
 
 def _code_folder() -> Path:
