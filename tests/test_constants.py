@@ -7,6 +7,7 @@ Sources: SI brochure, 9th edition (2019), table 1, for the exact ones; CODATA 20
 from __future__ import annotations
 
 import pytest
+from validation import Checked
 
 from meanfree import constants
 
@@ -40,6 +41,8 @@ def test_exact_constants(name: str, published: float) -> None:
         ("TORR", 133.322368),
     ],
 )
-def test_constants_to_the_digits_written(name: str, published: float) -> None:
+def test_constants_to_the_digits_written(name: str, published: float, checked: Checked) -> None:
     # Nine significant digits are written above, eight for epsilon_0: half a unit of the last.
-    assert getattr(constants, name) == pytest.approx(published, rel=6e-9)
+    source = "CODATA 2018 and 2022 (from memory); IUPAC Green Book"
+    ours = getattr(constants, name)
+    checked("R, ε₀, m_u, torr", ours, f"{published!r}", "", source, rel=6e-9)

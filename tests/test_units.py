@@ -9,6 +9,7 @@ import math
 import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
+from validation import Checked
 
 from meanfree.units import (
     QuantityError,
@@ -65,12 +66,11 @@ N_A = 6.02214076e23  # exact, SI Brochure, 9th ed.
     ],
 )
 def test_published_factors(
-    text: str, dimension: str, value: float, digits: int, source: str
+    text: str, dimension: str, value: float, digits: int, source: str, checked: Checked
 ) -> None:
     """The tolerance is half a unit of the last digit that the source prints."""
-    assert read(text, dimension).value == pytest.approx(value, rel=0.5 * 10.0 ** (1 - digits)), (
-        source
-    )
+    ours, within = read(text, dimension).value, 0.5 * 10.0 ** (1 - digits)
+    checked("units in SI", ours, f"{value!r}", "", source, rel=within)
 
 
 @pytest.mark.parametrize(

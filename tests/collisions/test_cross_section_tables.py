@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 
 import pytest
+from validation import Checked
 
 from meanfree.collisions.encounters import cross_section_from_diameters
 
@@ -76,11 +77,14 @@ def test_sieve_diameters_against_measured_cross_sections(
     [
         # Atkins, Physical Chemistry, data section: collision cross-sections [nm^2]; He and Ar
         # with Breck's diameters, N2 (from memory) with 370 pm.
-        (260.0, 0.21),
-        (340.0, 0.36),
-        (370.0, 0.43),
+        (260.0, "0.21"),
+        (340.0, "0.36"),
+        (370.0, "0.43"),
     ],
 )
-def test_collision_cross_sections_of_atkins(picometre: float, square_nanometre: float) -> None:
+def test_collision_cross_sections_of_atkins(
+    picometre: float, square_nanometre: str, checked: Checked
+) -> None:
     ours = 1e18 * float(cross_section_from_diameters(picometre * 1e-12, picometre * 1e-12))
-    assert abs(ours - square_nanometre) < 0.005  # two printed digits
+    source = "Atkins, Physical Chemistry, data section (N₂ from memory)"
+    checked("cross-sections of He, Ar, N₂", ours, square_nanometre, "nm²", source)

@@ -7,6 +7,7 @@ import math
 import numpy as np
 import pytest
 from scipy import constants, integrate
+from validation import Checked
 
 from meanfree.collisions import encounters, line_of_centres, mixtures, plane, speeds, walls
 
@@ -193,12 +194,16 @@ def test_impingement_is_the_mean_of_the_normal_velocity() -> None:
     assert tau == pytest.approx(concentration * volume / leak, rel=1e-14, abs=0.0)
 
 
-def test_graham_effusion_of_uranium_hexafluorides() -> None:
+def test_graham_effusion_of_uranium_hexafluorides(checked: Checked) -> None:
     # Ideal separation factor of (235)UF6 and (238)UF6 by effusion, a textbook figure of 1.00429
     # (from memory): sqrt(352.04 / 349.03).
     fast = float(walls.effusion_rate(100.0, 349.034e-3, 340.0, 1e-8))
     slow = float(walls.effusion_rate(100.0, 352.041e-3, 340.0, 1e-8))
-    assert abs(fast / slow - 1.00429) < 1e-5  # rounding of the printed figure and the masses
+    source = "a textbook figure (from memory)"
+    name = "effusion of the two UF₆"
+    checked(
+        name, fast / slow, "1.00429", "", source, within=1e-5
+    )  # rounding of the printed figure and the masses
 
 
 def test_free_path_in_a_mixture_is_mean_speed_over_collision_frequency() -> None:

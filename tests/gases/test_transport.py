@@ -5,6 +5,7 @@ from __future__ import annotations
 import numpy as np
 import pytest
 from scipy.constants import N_A, R, k
+from validation import Checked
 
 from meanfree.gases import transport
 from meanfree.gases.energies import thermochemistry_of
@@ -45,17 +46,21 @@ HANDBOOK = [
 
 @pytest.mark.parametrize(("name", "viscosity", "conductivity", "margin"), HANDBOOK)
 def test_pure_gases_against_the_handbook(
-    name: str, viscosity: float, conductivity: float, margin: float
+    name: str, viscosity: float, conductivity: float, margin: float, checked: Checked
 ) -> None:
     """Viscosity within 2 %: the diameters were fitted to viscosity, the handbook rounds to
     0.1 uPa s (1 % at worst)."""
     mass, diameter, depth = size(name)
     eta = transport.viscosity(300.0, mass, diameter, well_depth=depth)
-    assert float(eta) == pytest.approx(1e-6 * viscosity, rel=0.02)
+    source = "CRC Handbook (from memory)"
+    ours = 1e6 * float(eta)
+    checked("viscosity of 15 gases, 300 K", ours, f"{viscosity}", "μPa s", source, rel=0.02)
     energies = thermochemistry_of(find_gas(name))
     assert energies is not None
     conducted = transport.thermal_conductivity(eta, mass, energies.heat_capacity(300.0))
-    assert float(conducted) == pytest.approx(1e-3 * conductivity, rel=margin)
+    name = f"conductivity of gases, 300 K, within {100 * margin:.0f} %"
+    ours = 1e3 * float(conducted)
+    checked(name, ours, f"{conductivity}", "mW/m/K", source, rel=margin)
 
 
 @pytest.mark.parametrize(
@@ -75,7 +80,7 @@ def test_pure_gases_against_the_handbook(
     ],
 )
 def test_binary_diffusion_against_measurements(
-    first: str, second: str, temperature: float, measured: float
+    first: str, second: str, temperature: float, measured: float, checked: Checked
 ) -> None:
     """Within 10 %: combining rules and viscosity diameters give 8 % on average over the
     table of Poling et al., and these are simple molecules."""
@@ -91,20 +96,25 @@ def test_binary_diffusion_against_measurements(
         well_depth_1=depth_1,
         well_depth_2=depth_2,
     )
-    assert float(found) == pytest.approx(1e-4 * measured, rel=0.10)
+    source = "Poling et al., 5th ed.; Marrero and Mason (1972) (from memory)"
+    quantity = "diffusion of nine pairs at 1 atm"
+    checked(quantity, 1e4 * float(found), f"{measured}", "cm²/s", source, rel=0.10)
 
 
 @pytest.mark.parametrize("reduced", [0.4, 0.7, 1.0, 2.0, 4.0, 10.0, 50.0, 100.0])
-def test_collision_integrals(reduced: float) -> None:
+def test_collision_integrals(reduced: float, checked: Checked) -> None:
     """Against Kim and Monroe, J. Comput. Phys. 273, 358 (2014), a later calculation good to
     6 digits. The fit of 1972 states 0.1 % for what it fitted, which itself was 0.5 % off at
     the ends."""
     from chemicals.lennard_jones import collision_integral_Kim_Monroe as reference
 
-    found = float(transport.reduced_integral_diffusion(reduced))
-    assert found == pytest.approx(reference(reduced, l=1, s=1), rel=5e-3)
-    found = float(transport.reduced_integral_viscosity(reduced))
-    assert found == pytest.approx(reference(reduced, l=2, s=2), rel=5e-3)
+    source = "Kim and Monroe, J. Comput. Phys. 273, 358 (2014)"
+    for name, ours, l in (
+        ("collision integral of diffusion", transport.reduced_integral_diffusion(reduced), 1),
+        ("collision integral of viscosity", transport.reduced_integral_viscosity(reduced), 2),
+    ):
+        exact = f"{reference(reduced, l=l, s=l):.7g}"
+        checked(f"{name}, T* 0.4 to 100", ours, exact, "", source, rel=5e-3)
 
 
 def test_hard_spheres_obey_the_exact_ratios() -> None:
@@ -177,19 +187,20 @@ def test_modified_eucken_factor(cv_over_r: float) -> None:
     assert factor == pytest.approx(1.32 + 1.77 / cv_over_r, rel=1e-13)
 
 
-def test_air_as_a_mixture() -> None:
+def test_air_as_a_mixture(checked: Checked) -> None:
     """Viscosity of air at 300 K 18.6 uPa s, conductivity 26.4 mW/m/K (CRC, from memory)."""
     names, fractions = ("N2", "O2", "Ar"), (0.781, 0.210, 0.009)
     mass, diameter, depth = (np.array(c) for c in zip(*map(size, names), strict=True))
     eta = transport.viscosity(300.0, mass, diameter, well_depth=depth)
-    assert float(transport.mixture_viscosity(fractions, eta, mass)) == pytest.approx(
-        18.6e-6, rel=0.02
-    )
+    source = "CRC Handbook (from memory)"
+    ours = 1e6 * float(transport.mixture_viscosity(fractions, eta, mass))
+    checked("viscosity of air, 300 K", ours, "18.6", "μPa s", source, rel=0.02)
     energies = [thermochemistry_of(find_gas(name)) for name in names]
     cp = np.array([float(e.heat_capacity(300.0)) for e in energies if e is not None])
     conducted = transport.thermal_conductivity(eta, mass, cp)
     mixed = transport.mixture_thermal_conductivity(fractions, conducted, eta, mass)
-    assert float(mixed) == pytest.approx(26.4e-3, rel=0.05)
+    ours = 1e3 * float(mixed)
+    checked("conductivity of air, 300 K", ours, "26.4", "mW/m/K", source, rel=0.05)
 
 
 def test_a_label_has_nothing_to_go_by() -> None:

@@ -22,7 +22,7 @@ def both(found):
     return {one.counts: one.value for one in rate_constants(found)}
 
 
-def test_butadiene_by_total_pressure(tmp_path):
+def test_butadiene_by_total_pressure(tmp_path, checked):
     """Vaughan, J. Am. Chem. Soc. 54, 3863 (1932), in Smith, Chemical Engineering Kinetics.
 
     Loss: 0.880 ± 0.004 L/mol/min from the signal with p0 fixed, 0.8659 from the line (both
@@ -31,7 +31,8 @@ def test_butadiene_by_total_pressure(tmp_path):
     data = butadiene(tmp_path, K)
     found = fit(data.request)
     one = found.estimate("steps.d.k")
-    assert one.value == pytest.approx(0.880, abs=5e-4)
+    source = "Vaughan, J. Am. Chem. Soc. 54, 3863 (1932), recomputed"
+    checked("loss of butadiene, 326 °C, signal", one.value, "0.880", "L/mol/min", source)
     assert one.stderr == pytest.approx(0.004, abs=5e-4)
     assert both(found)["loss of A"] == one.value
     assert both(found)["events"] == pytest.approx(one.value / 2, rel=1e-14)
@@ -39,7 +40,8 @@ def test_butadiene_by_total_pressure(tmp_path):
     k, _, unit = in_file(line, data.runs[0])
     assert unit == "L/mol/min"
     # arithmetic, but for the unit: 1 mmHg is 133.322387 Pa here, 101325/760 in the check: 1.4e-7
-    assert 2 * k == pytest.approx(0.865916796747, rel=2e-7)
+    name = "loss of butadiene, 326 °C, straight line"
+    checked(name, 2 * k, "0.865916796747", "L/mol/min", source, rel=2e-7)
     assert k == pytest.approx(0.432958398374, rel=2e-7)
     assert line.line.r_squared == pytest.approx(0.999343548427, rel=1e-9)
     assert line.how == "p(A) = p0(A) + 2 (p − p0)"
@@ -66,7 +68,7 @@ def test_butadiene_with_free_pressure_at_the_start(tmp_path):
     assert p0.stderr == pytest.approx(np.sqrt(cov[1, 1]) / 133.322387415, rel=1e-4)
 
 
-def test_peroxide_by_total_pressure(tmp_path):
+def test_peroxide_by_total_pressure(tmp_path, checked):
     """Trotman-Dickenson, J. Chem. Educ. 46, 396 (1969); Fogler 3rd ed., Ex. 5-1 and 5-2.
 
     Fogler reads 0.08 1/min; the line gives 0.0782 (recomputed), the signal 0.080.
@@ -83,9 +85,13 @@ signal = { column = "P/mmHg", unit = "mmHg", is = "total pressure" }
     table = "t/min;P/mmHg\n0;7,5\n2,5;10,5\n5;12,5\n10;15,8\n15;17,9\n20;19,4\n"
     data = measured(tmp_path, text + K, {"run.csv": table})
     found = fit(data.request)
-    assert found.estimate("steps.d.k").value == pytest.approx(0.080, abs=5e-4)
+    ours = found.estimate("steps.d.k").value
+    source = "Trotman-Dickenson (1969); Fogler, 3rd ed., Ex. 5-1, 5-2"
+    checked("k of di-tert-butyl peroxide, 170 °C, signal", ours, "0.080", "min⁻¹", source)
     line = integrated_line(data.runs[0])
-    assert in_file(line, data.runs[0])[0] == pytest.approx(0.0782047658457, rel=1e-9)
+    ours = in_file(line, data.runs[0])[0]
+    name = "k of di-tert-butyl peroxide, 170 °C, line"
+    checked(name, ours, "0.0782047658457", "min⁻¹", source + ", recomputed", rel=1e-9)
     assert line.line.r_squared == pytest.approx(0.99972148926, rel=1e-9)
     assert line.how == "p(A) = p0(A) − 0.5 (p − p0)"
     # one molecule an event: both ways of counting are one
@@ -97,7 +103,7 @@ signal = { column = "P/mmHg", unit = "mmHg", is = "total pressure" }
     assert order.low < 1 < order.high
 
 
-def test_butadiene_by_concentration(tmp_path):
+def test_butadiene_by_concentration(tmp_path, checked):
     """Zumdahl, Chemistry: 0.0614 L/mol/s for loss; the line 0.06124 (recomputed), signal 0.0609."""
     law = 'law = "fixed"\nk = "0.05 L/mol/s"'
     text = case_text(law=law, fill="0.01 mol/L", T=500)
@@ -116,7 +122,10 @@ signal = { column = 2, unit = "mol/L", is = "concentration of A" }
     assert both(found)["loss of A"] == pytest.approx(0.0609, abs=5e-5)
     assert both(found)["events"] == pytest.approx(0.0609 / 2, abs=3e-5)
     line = integrated_line(data.runs[0])
-    assert 2 * in_file(line, data.runs[0])[0] == pytest.approx(0.0612389061119, rel=1e-9)
+    ours = 2 * in_file(line, data.runs[0])[0]
+    name = "loss of butadiene by concentration, line"
+    checked(name, ours, "0.0614", "L/mol/s", "Zumdahl, Chemistry", rel=0.005)
+    assert ours == pytest.approx(0.0612389061119, rel=1e-9)
     assert line.line.r_squared == pytest.approx(0.999873585431, rel=1e-9)
 
 
@@ -127,7 +136,7 @@ HYDROGEN_IODIDE = (
 """K and L/mol/s. Bodenstein, Z. phys. Chem. 29, 295 (1899), as textbooks have it."""
 
 
-def test_hydrogen_iodide_against_temperature():
+def test_hydrogen_iodide_against_temperature(checked):
     """Ea 185.714 kJ/mol, A 8.7615e10 L/mol/s (recomputed); textbooks say 184 (from memory)."""
     T, k = HYDROGEN_IODIDE
     gas = find_gas("HI")
@@ -135,6 +144,9 @@ def test_hydrogen_iodide_against_temperature():
     series = temperature_series("d", points, (gas, gas))
     assert series.Ea.value == pytest.approx(185714.182505, rel=1e-9)
     assert 1e3 * series.A.value == pytest.approx(87615227504.3, rel=1e-9)
+    source = "Bodenstein (1899); textbooks (from memory)"
+    name = "Ea of 2 HI → H₂ + I₂, nine temperatures"
+    checked(name, 1e-3 * series.Ea.value, "184", "kJ/mol", source, rel=0.012)
     assert series.Ea.low < 184e3 < series.Ea.high
     assert series.words[0].startswith("The points curve upwards at high temperature")
     # a straight line of ln k against 1/T by an independent routine

@@ -11,6 +11,7 @@ import pytest
 from laboratory import experiment, si, step
 from scipy.integrate import solve_bvp
 from scipy.optimize import minimize_scalar
+from validation import Checked
 
 from meanfree.case import load_case
 from meanfree.constants import R
@@ -48,13 +49,17 @@ def delta_of(theta0: float, j: int) -> float:
 
 @pytest.mark.parametrize(
     ("j", "published", "ours"),
-    [(0, 0.878, heat.SLAB), (1, 2.000, heat.CYLINDER), (2, 3.322, heat.SPHERE)],
+    [(0, "0.878", heat.SLAB), (1, "2.000", heat.CYLINDER), (2, "3.322", heat.SPHERE)],
 )
-def test_critical_frank_kamenetskii_parameters(j: int, published: float, ours: float) -> None:
+def test_critical_frank_kamenetskii_parameters(
+    j: int, published: str, ours: float, checked: Checked
+) -> None:
     """Frank-Kamenetskii (1969), chapter 6: the largest delta that still has a steady state."""
     best = minimize_scalar(lambda theta0: -delta_of(theta0, j), bounds=(0.5, 2.5), method="bounded")
     # The published numbers have three decimals; ours at most four.
-    assert -best.fun == pytest.approx(published, abs=5.1e-4)
+    source = "Frank-Kamenetskii (1969), chapter 6"
+    form = ("slab", "long cylinder", "sphere")[j]
+    checked(f"critical δ of a {form}", -best.fun, published, "", source, within=5.1e-4)
     assert -best.fun == pytest.approx(ours, abs=5.1e-5)
 
 

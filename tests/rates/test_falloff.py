@@ -13,6 +13,7 @@ from hypothesis import given
 from hypothesis import strategies as st
 from laboratory import si
 from scipy.constants import N_A, R, k, pi
+from validation import Checked
 
 from meanfree.gases.gas import Gas
 from meanfree.rates.falloff import Broadening, Centre, CentreTerm, Falloff
@@ -67,14 +68,15 @@ def test_lindemann_limits(T: float) -> None:
     assert half == pytest.approx(kinf / 2, rel=1e-12)
 
 
-def test_two_pressures_of_lindemann_hinshelwood() -> None:
+def test_two_pressures_of_lindemann_hinshelwood(checked: Checked) -> None:
     """Atkins' exercise (from memory): k = 2.50e-4 1/s at 1.30 kPa and 2.10e-5 at 12 Pa.
 
     They give k_a = 1.9e-6 1/(Pa s); put back in as k0, the law must return both k.
     """
     k1, p1, k2, p2 = 2.5e-4, 1300.0, 2.1e-5, 12.0
     k_a = (1 / p2 - 1 / p1) / (1 / k2 - 1 / k1)
-    assert k_a == pytest.approx(1.9e-6, abs=0.05e-6)
+    source = "Atkins, Physical Chemistry, exercise (from memory)"
+    checked("activation of Lindemann and Hinshelwood", k_a, "1.9e-6", "Pa⁻¹ s⁻¹", source)
     kinf = 1 / (1 / k1 - 1 / (k_a * p1))
     T = 500.0
     law = Falloff(PowerLaw(si(k_a * R * T)), PowerLaw(si(kinf)))
@@ -154,14 +156,15 @@ ORLANDO = Falloff(
 )
 
 
-def test_nitrate_radical_and_nitrogen_dioxide() -> None:
+def test_nitrate_radical_and_nitrogen_dioxide(checked: Checked) -> None:
     """NO3 + NO2 + N2, discharge flow, 236 to 358 K: k(298 K, 1 bar) = 1.2e-12 cm^3/s.
 
     k0 = 2.8e-30 (T/300)^-3.5, kinf = 1.66e-12 (T/300)^-0.2, Fc = 2.5 exp(-1950/T)
     + 0.9 exp(-T/430); the published value has two digits.
     """
     k298 = ORLANDO.rate_constant(context(), 298.0, M=at_pressure(298.0, 1.0)) / CM3
-    assert k298 == pytest.approx(1.2e-12, abs=0.05e-12)
+    source = "discharge flow, 236 to 358 K (abstract)"
+    checked("k of NO₃ + NO₂ + N₂, 298 K, 1 bar", k298, "1.2e-12", "cm³/s", source)
     # the formula evaluated by hand with six digits: Fc(300), and k at the ends of the range
     assert ORLANDO.Fc is not None
     assert ORLANDO.Fc(300.0) == pytest.approx(0.451726, abs=1e-6)
@@ -170,13 +173,14 @@ def test_nitrate_radical_and_nitrogen_dioxide() -> None:
         assert value == pytest.approx(expected, rel=1e-6)
 
 
-def test_hydroxyl_and_ethene_centre() -> None:
+def test_hydroxyl_and_ethene_centre(checked: Checked) -> None:
     """Fulle et al. (1997), cited by IUPAC: Fc = 0.21 exp(-220/T) + exp(-T/305), 0.47 at 300 K."""
     centre = Centre(terms=(CentreTerm(si(0.21), si(220.0), True), CentreTerm(si(1.0), si(305.0))))
-    assert centre(300.0) == pytest.approx(0.47, abs=0.005)
+    source = "Fulle et al. (1997), cited by IUPAC"
+    checked("F_c of HO + C₂H₄, 300 K", centre(300.0), "0.47", "", source)
 
 
-def test_hydroxyl_and_nitrogen_dioxide() -> None:
+def test_hydroxyl_and_nitrogen_dioxide(checked: Checked) -> None:
     """IUPAC 2017 (from memory): 3.2e-30 (T/300)^-4.5, 3e-11, Fc 0.41: 9.8e-12 at 298 K, 1 bar."""
     law = Falloff(
         power_law(3.2e-30 * CM6, -4.5),
@@ -185,7 +189,8 @@ def test_hydroxyl_and_nitrogen_dioxide() -> None:
         Centre(si(0.41)),
     )
     value = law.rate_constant(context(), 298.0, M=at_pressure(298.0, 1.0)) / CM3
-    assert value == pytest.approx(9.8e-12, abs=0.05e-12)
+    source = "IUPAC (2017, from memory)"
+    checked("k of OH + NO₂ + M, 298 K, 1 bar", value, "9.8e-12", "cm³/s", source)
 
 
 C3H6 = molecule("C3H6", 42.08e-3, 4.5e-10)
