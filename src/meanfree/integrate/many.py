@@ -41,6 +41,8 @@ from meanfree.progress import Progress, silent
 if TYPE_CHECKING:
     import pandas as pd
 
+    from meanfree.integrate.slopes_of_observables import SlopingRunner
+
 CHUNK = 20_000
 """Conditions that one thread takes at a time."""
 
@@ -53,6 +55,7 @@ def many(
     conditions: Mapping[str, Any],
     observables: Sequence[Observable],
     *,
+    sensitivities: Sequence[str] = (),
     rtol: float | None = None,
     atol: float | None = None,
     workers: int | None = None,
@@ -63,7 +66,9 @@ def many(
     ``conditions`` maps addresses to columns (a DataFrame does), in the unit and convention of the
     case; every row is one run. The frame returned has the conditions, then a column for each
     observable (its name ends in its unit, NaN is what was not reached), then ``ending`` in words.
-    A run that failed has NaN everywhere and says why.
+    A run that failed has NaN everywhere and says why. ``sensitivities`` are addresses: for each
+    of them come a column ``d_COLUMN_by_ADDRESS`` for every column, the derivative by the number at
+    the address in the unit of the case; events and ends that move are followed.
 
     ``rtol`` and ``atol`` (over the initial concentration) are those of the experiment's solver
     unless given; ``workers`` threads share the work, by default one for each core.
@@ -80,20 +85,20 @@ def many(
     solver = experiment.plan.solver
     precision = (solver.rtol if rtol is None else rtol, solver.atol if atol is None else atol)
     names = [name for o in observables for name in o.columns]
+    names += [f"d_{name}_by_{address}" for name in names for address in sensitivities]
     results = np.full((len(names), count), np.nan)
     endings = np.zeros(count, np.int64)
     done = 0
     for rows, values, marks in _carried_out(
-        experiment, table, count, observables, precision, workers
+        experiment, table, count, observables, precision, workers, tuple(sensitivities)
     ):
         results[:, rows] = values
         endings[rows] = marks
         done += len(marks)
         progress(done, count, "runs")
-    frame = pd.DataFrame({**table, **dict(zip(names, results, strict=True))}, copy=False)
     words = pd.Index([ending.sentence for ending in Ending])
-    frame[ENDING] = pd.Categorical.from_codes(endings, words)
-    return frame
+    said = {ENDING: pd.Categorical.from_codes(endings, words)}
+    return pd.DataFrame({**table, **dict(zip(names, results, strict=True)), **said}, copy=False)
 
 
 def _refuse(experiment: Experiment, observables: Sequence[Observable]) -> None:
@@ -129,13 +134,18 @@ def _carried_out(
     observables: Sequence[Observable],
     precision: tuple[float, float],
     workers: int | None,
+    sensitivities: tuple[str, ...],
 ) -> Iterator[Chunk]:
     """(rows, values, endings) of chunk after chunk."""
     threads = max(1, min(workers or os.cpu_count() or 1, -(-count // 64)))
     with ThreadPoolExecutor(threads) as pool:
         for block in blocks_of(experiment, table, count):
             size = min(CHUNK, max(64, -(-len(block.rows) // threads)))
-            runner = _Runner(block, observables, precision)
+            runner: Runner | SlopingRunner = Runner(block, observables, precision)
+            if sensitivities:
+                from meanfree.integrate.slopes_of_observables import SlopingRunner
+
+                runner = SlopingRunner(block, table, observables, precision, sensitivities)
             runner.prepare(size)
             starts = range(0, len(block.rows), size)
             # A few chunks ahead of what is taken, so that results do not pile up.
@@ -149,7 +159,7 @@ def _carried_out(
 
 
 @dataclass
-class _Runner:
+class Runner:
     """Carries out chunks of one block."""
 
     block: Block

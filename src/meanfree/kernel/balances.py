@@ -10,6 +10,7 @@ from __future__ import annotations
 import numpy as np
 
 from meanfree.constants import R
+from meanfree.equations.system import Floats
 from meanfree.kernel.rates_tape import Rate, RateWriter, Surrounding
 from meanfree.kernel.slots import Layout
 from meanfree.kernel.tape import Tape
@@ -153,8 +154,8 @@ class _Point:
                 energy = t.combine([(n, gases.enthalpy(i)) for i, n in net])
                 slope = t.combine([(n, cp[i]) for i, n in net])
             else:
-                energy, slope = t.const(-float(system.heat_given[j])), zero
-            energy = t.sub(energy, t.const(float(system.photon[j])))
+                energy, slope = t.neg(self._stated("heat", j, system.heat_given)), zero
+            energy = t.sub(energy, self._stated("photon", j, system.photon))
             if not system.volume_varies:
                 change = self.b.rates.change[j]
                 energy = t.nmadd(t.const(change * R), T, energy)
@@ -181,6 +182,13 @@ class _Point:
             self.exchanged = t.mul(self.exchange, t.sub(around, T))
             heat = t.add(heat, self.exchanged)
         self.heating = t.mul(heat, self.inverse_capacity)
+
+    def _stated(self, what: str, j: int, values: Floats) -> int:
+        """A stated energy of a step: a number, unless it moves."""
+        layout = self.b.layout
+        if (what, j) in layout.varied:
+            return self.t.input(layout.parameter(what, j))
+        return self.t.const(float(values[j]))
 
     @property
     def dT(self) -> int:

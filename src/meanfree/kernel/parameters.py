@@ -27,7 +27,7 @@ class Variation:
     ``values`` maps names to arrays of shape (count,): ("number", block, slot, position),
     ("lnK_at", row), ("at", row), ("enthalpy", row), ("x", gas), ("T",) the temperature at time
     zero, ("p",) the held pressure, ("dead",), ("wall",), ("exchange",), ("surroundings",), ("V",)
-    the volume at time zero.
+    the volume at time zero, ("heat", step), ("photon", step).
     """
 
     system: System
@@ -48,6 +48,9 @@ class Variation:
             return float(getattr(system.reverses, str(kind))[int(name[1])])
         if kind == "x":
             return float(system.initial_x[int(name[1])])
+        if kind in ("heat", "photon"):
+            stated = system.heat_given if kind == "heat" else system.photon
+            return float(stated[int(name[1])])
         return {
             "T": system.initial_temperature,
             "p": system.held_pressure,

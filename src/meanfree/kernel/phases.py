@@ -155,7 +155,7 @@ class Writer:
             x[b] = t.mul(total, matrix[b, b])
         return x
 
-    def _rates(self, t: Tape, argument: list[int]) -> list[int]:
+    def rates(self, t: Tape, argument: list[int]) -> list[int]:
         """What the stages evaluate."""
         return self.balances.derivative(t, argument)
 
@@ -171,7 +171,7 @@ class Writer:
         argument = self._argument(t, s, stages)
         if s + 1 == method.stages or self._continues(s + 1):
             outputs.update({layout.argument + i: value for i, value in enumerate(argument)})
-        rhs = self._rates(t, argument)
+        rhs = self.rates(t, argument)
         inverse_h = t.input(layout.scalar("inverse_h"))
         for i in range(size):
             earlier = t.combine(
@@ -244,5 +244,5 @@ class Writer:
 
     def _evaluate(self) -> Phase:
         layout, t = self.layout, Tape()
-        rhs = self._rates(t, self._state(t, layout.argument))
+        rhs = self.rates(t, self._state(t, layout.argument))
         return Phase("evaluate", t, {layout.value + i: value for i, value in enumerate(rhs)})

@@ -26,7 +26,8 @@ class TangentKernel(Kernel):
         varied: frozenset[Name] = frozenset(), controlled: bool = True,
     ) -> None:  # fmt: skip
         super().__init__(variation.system, tableau, compiled=compiled, lanes=lanes, varied=varied)
-        directions = variation.directions(self.program.layout)
+        self.plain = self.program.layout
+        directions = variation.directions(self.plain)
         self.program = build_tangent_program(
             variation.system, tableau, directions, varied, controlled
         )

@@ -105,7 +105,8 @@ class TangentWriter(Writer):
             for key, slot in slots.items()
         ]
 
-    def _rates(self, t: Tape, argument: list[int]) -> list[int]:
+    def rates(self, t: Tape, argument: list[int]) -> list[int]:
+        """dy/dt, then ds/dt of every direction."""
         rhs = self.balances.derivative(t, self._blocks(argument)[0])
         tangents, everything = Tangents(t, rhs), [*rhs]
         for k in range(len(self.layout.directions)):
