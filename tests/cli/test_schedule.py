@@ -57,6 +57,21 @@ def test_json_and_the_other_designs(capsys: Printed, case: Path) -> None:
     assert manifest["command"] == "meanfree schedule bulb.toml --samples 4 --design conversion"
 
 
+def test_what_samples_take_is_told(capsys: Printed, case: Path) -> None:
+    found = 'plan.samples.parameters=["steps.decomposition.A", "fill.gases.NOCl"]'
+    takes = ["--set", "plan.samples.takes=0.2", "--set", found]
+    assert run(["schedule", str(case), *takes]) == 0
+    capsys.readouterr()
+    page = Path("outputs/bulb/schedule/report.html").read_text()
+    said = "each takes 20 % of the contents. Times chosen as if they took nothing would give A of "
+    assert said + "decomposition to ±" in page
+    assert "errors count what each sample takes out" in page
+    assert run(["schedule", str(case), "--replace"]) == 0
+    page = Path("outputs/bulb/schedule/report.html").read_text()
+    assert "took nothing" not in page
+    assert "takes out" not in page
+
+
 def test_too_many_samples(capsys: Printed, case: Path) -> None:
     assert run(["schedule", str(case), "--samples", "100", "--json"]) == 2
     (problem,) = json.loads(capsys.readouterr().out)["errors"]

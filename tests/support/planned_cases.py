@@ -23,6 +23,7 @@ UNITS = {
     "concentration": "mol/m^3",
     "amount": "mol",
     "pressure": "Pa",
+    "time": "s",
 }
 
 

@@ -1,12 +1,13 @@
 """When to sample: designs that make the parameters as sharp as n samples can.
 
-Pure functions of a table of sensitivities at candidate times; nothing here knows a reaction.
+Pure functions of sensitivities at candidate times; nothing here knows a reaction.
 Source: A. C. Atkinson, A. N. Donev and R. D. Tobias, Optimum Experimental Designs, with SAS (2007),
 chapters 10 (criteria) and 12 (exchange).
 """
 
 from __future__ import annotations
 
+from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass
 from typing import Literal
 
@@ -74,23 +75,30 @@ def optimal(candidates: Candidates, count: int, criterion: Criterion, apart: flo
     """Places of the best ``count`` samples at least ``apart`` [s] from each other, in order.
 
     With one parameter the best is found for certain, by dynamic programming; with more, one
-    sample after the other is exchanged for the best other time, from several starts.
+    sample after the other is exchanged for the best other time, from several starts, and with
+    ``apart`` they are then moved together.
     With ``apart`` 0 a time may be used more than once. Raises ValueError where so many samples
     do not fit.
     """
     if candidates.slopes.shape[1] == 1:
         return _best_of_one(candidates, count, apart)
     random = np.random.default_rng(SEED)
-    best: tuple[float, Places] | None = None
     starts = [np.linspace(0, len(candidates.times) - 1, count + 1)[1:]]
     starts += [np.sort(random.uniform(0, len(candidates.times) - 1, count)) for _ in range(STARTS)]
+    found: dict[tuple[int, ...], float] = {}
     for start in starts:
         places = spaced(candidates.times, start.round().astype(np.intp), apart)
         value, places = _exchanged(candidates, places, criterion, apart)
-        if best is None or value > best[0] + 1e-12 * abs(best[0]):
-            best = (value, places)
-    assert best is not None
-    return best[1]
+        found.setdefault(tuple(int(place) for place in places), value)
+    ends = [np.array(places, np.intp) for places in found]
+    if apart == 0:
+        return ends[int(np.argmax(list(found.values())))]
+
+    # Samples that stand as close as they may block each other: they are moved together.
+    def worth(places: Places) -> float:
+        return float(merit(information(candidates.slopes[places])[None], criterion)[0])
+
+    return improved(candidates.times, ends, worth, apart)
 
 
 def spaced(times: Floats, places: Places, apart: float) -> Places:
@@ -113,6 +121,66 @@ def spaced(times: Floats, places: Places, apart: float) -> Places:
                 raise ValueError("so many samples do not fit so far apart")
             moved[i] = int(fitting[-1])
     return np.array(moved, np.intp)
+
+
+def improved(
+    times: Floats, starts: Sequence[Places], worth: Callable[[Places], float], apart: float
+) -> Places:
+    """The best design found from several, where what a sample tells depends on those before it.
+
+    ``worth`` judges a whole design. One sample, or one with all later ones, is moved by ever fewer
+    places, at last by one, for as long as that is better. Wide moves are tried from every start,
+    narrow ones from the best that they led to.
+    """
+    most = max(1, len(times) // 8)
+    wide, narrow = [most], [1]
+    while wide[-1] > max(1, len(times) // 100):
+        wide.append(wide[-1] // 2)
+    while narrow[-1] < wide[-1]:
+        narrow.append(narrow[-1] * 2)
+    found = [_moved(times, start, worth, apart, wide) for start in starts]
+    best = max(found, key=lambda pair: pair[0])[1]
+    return _moved(times, best, worth, apart, narrow[::-1])[1]
+
+
+def _moved(
+    times: Floats, places: Places, worth: Callable[[Places], float], apart: float, sizes: list[int]
+) -> tuple[float, Places]:
+    """(worth, places) after moves of these sizes, each for as long as one betters the design."""
+    value = worth(places)
+    for size in sizes:
+        better = True
+        while better:
+            better = False
+            for move in _moves(len(places), size):
+                tried = places + move
+                if not _fits(times, tried, apart):
+                    continue
+                now = worth(tried)
+                # while it helps, on in the same direction
+                while now > value + 1e-12 * abs(value):
+                    value, places, better = now, tried, True
+                    tried = places + move
+                    if not _fits(times, tried, apart):
+                        break
+                    now = worth(tried)
+    return value, places
+
+
+def _moves(count: int, size: int) -> Iterator[Places]:
+    """One sample, or one with all later ones, earlier or later."""
+    for i in range(count):
+        for stop in dict.fromkeys((i + 1, count)):
+            for sign in (-1, 1):
+                move = np.zeros(count, np.intp)
+                move[i:stop] = sign * size
+                yield move
+
+
+def _fits(times: Floats, places: Places, apart: float) -> bool:
+    if places[0] < 0 or places[-1] >= len(times) or np.any(np.diff(places) < 0):
+        return False
+    return bool(np.all(np.diff(times[places]) >= apart * (1 - 1e-9)))
 
 
 def _exchanged(

@@ -2,32 +2,35 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 from typing import Literal
 
 import numpy as np
+from numpy.typing import NDArray
 
-from meanfree import units
 from meanfree.constants import R
 from meanfree.equations.system import Floats
 from meanfree.errors import InputError
 from meanfree.experiment.experiment import Experiment
-from meanfree.experiment.inputs import Input, inputs, with_inputs
-from meanfree.experiment.plan import Solver
+from meanfree.experiment.inputs import inputs
 from meanfree.planning.designs import (
     Candidates,
     Criterion,
     Places,
+    improved,
+    information,
+    merit,
     optimal,
     spaced,
     standard_errors,
 )
-from meanfree.planning.drawing import drawn_signals
+from meanfree.planning.drawing import with_draws
 from meanfree.planning.factors import factor_addresses, factored
+from meanfree.planning.following import Following, is_relative
 from meanfree.planning.goal import Goal, carried_out
 from meanfree.planning.limits.vessel import least_concentration
-from meanfree.planning.readings import Kind, Reading, read_many
+from meanfree.planning.readings import Kind
 from meanfree.planning.request import PlanRequest, Sampling
 from meanfree.progress import Progress, silent
 
@@ -36,9 +39,6 @@ KINDS: tuple[Kinds, ...] = ("equal times", "equal conversion", "D", "A", "E")
 
 CANDIDATES = 400
 """Times that designs choose from, evenly spaced."""
-
-STEP = 0.01
-SHARP = Solver(rtol=1e-10, atol=1e-22)
 
 SD_SHARE = 0.01
 """Where no standard deviation is stated: this share of the largest signal."""
@@ -64,7 +64,9 @@ class Schedule:
     where the case states none. ``signal`` is that of the undisturbed run at the times of
     ``candidates``. ``parameters`` are addresses and ``values`` what they are, in the unit of the
     file; errors are relative to them.
-    ``late`` [s] is when the signal falls below its detection limit, None where it does not.
+    ``late`` [s] is when the undisturbed signal falls below its detection limit, None where it does
+    not. Where samples take something out, ``plans`` are chosen with it, and ``ignoring`` holds the
+    optimal designs as they would be without, with the errors that they would really give.
     """
 
     experiment: Experiment
@@ -81,7 +83,7 @@ class Schedule:
     candidates: Candidates
     signal: Floats
     plans: Mapping[Kinds, Plan]
-    takes_counted: bool
+    ignoring: Mapping[Kinds, Plan]
 
 
 def schedule(experiment: Experiment, request: PlanRequest, progress: Progress = silent) -> Schedule:
@@ -106,24 +108,30 @@ def schedule(experiment: Experiment, request: PlanRequest, progress: Progress = 
     if until / CANDIDATES <= dead < until:
         per = round(dead / (until / CANDIDATES))
         times = np.arange(dead / per, until * (1 + 1e-12), dead / per)
-    reading = Reading(reading_kind, read_gas, times=tuple(times))
-    signal, slopes = _slopes(experiment, reading, parameters, known, until, progress)
+    asked = (experiment, reading_kind, read_gas, parameters, known)
+    progress(0, 0, "how the signal follows the parameters")
+    signal, slopes = Following(*asked).at(times)
     sd, assumed = _sd(sampling, signal)
-    times, signal, slopes, late = _seen(experiment, request, reading, times, signal, slopes)
-    candidates = Candidates(times, slopes / sd)
-    run = carried_out(experiment, Goal("conversion", gas, 0.5), until, SHARP)
-    conversion = run.conversion(gas, times)
+    least = _least(experiment, request, reading_kind, read_gas)
+    seen, late = _seen(times, signal, least, read_gas)
+    times, signal, candidates = (
+        times[seen],
+        signal[seen],
+        Candidates(times[seen], slopes[seen] / sd),
+    )
+    conversion = _conversion(experiment, gas, times, until)
     places = _designs(candidates, conversion, sampling.count, dead)
-    counted = sampling.takes > 0 and experiment.constant_temperature is not None
-    plans: dict[Kinds, Plan] = {}
-    for number, (kind, chosen) in enumerate(places.items()):
-        progress(number, len(places), "samples drawn")
-        found, errors = signal[chosen], standard_errors(candidates.slopes[chosen])
-        if counted:
-            found, errors = _with_draws(
-                experiment, reading, times[chosen], sampling.takes, parameters, known, sd
-            )
-        plans[kind] = Plan(kind, times[chosen], found, conversion[chosen], errors)
+
+    def undisturbed(kind: Kinds, chosen: Places) -> Plan:
+        errors = standard_errors(candidates.slopes[chosen])
+        return Plan(kind, times[chosen], signal[chosen], conversion[chosen], errors)
+
+    ignoring: dict[Kinds, Plan] = {}
+    if sampling.takes == 0:
+        plans = {kind: undisturbed(kind, chosen) for kind, chosen in places.items()}
+    else:
+        drawn = Drawn(Following(*asked, takes=sampling.takes), candidates, sd, least)
+        plans, ignoring = _with_draws(drawn, experiment, gas, places, until, dead, progress)
     return Schedule(
         experiment=experiment,
         sampling=sampling,
@@ -135,12 +143,77 @@ def schedule(experiment: Experiment, request: PlanRequest, progress: Progress = 
         late=late,
         parameters=tuple(parameters),
         values=np.array([known[address].value for address in parameters]),
-        relative=tuple(_is_relative(known[address]) for address in parameters),
+        relative=tuple(is_relative(known[address]) for address in parameters),
         candidates=candidates,
         signal=signal,
         plans=plans,
-        takes_counted=counted,
+        ignoring=ignoring,
     )
+
+
+class Drawn:
+    """Designs judged with what each sample takes out of the vessel; each design once."""
+
+    def __init__(
+        self, following: Following, candidates: Candidates, sd: float, least: float
+    ) -> None:
+        self.following, self.candidates, self.sd, self.least = following, candidates, sd, least
+        self._known: dict[bytes, tuple[Floats, Floats]] = {}
+
+    def read(self, places: Places) -> tuple[Floats, Floats]:
+        """Signals, and slopes over the standard deviation: 0 for what is too little to be seen."""
+        key = places.tobytes()
+        if key not in self._known:
+            signal, slopes = self.following.at(self.candidates.times[places])
+            seen = signal >= self.least
+            self._known[key] = signal, np.where(seen[:, None], slopes, 0.0) / self.sd
+        return self._known[key]
+
+    def best(self, starts: Sequence[Places], criterion: Criterion, apart: float) -> Places:
+        """The best design found from several, at least ``apart`` [s] from sample to sample."""
+
+        def worth(places: Places) -> float:
+            return float(merit(information(self.read(places)[1])[None], criterion)[0])
+
+        return improved(self.candidates.times, starts, worth, apart)
+
+
+def _with_draws(
+    drawn: Drawn,
+    experiment: Experiment,
+    gas: str,
+    places: Mapping[Kinds, Places],
+    until: float,
+    dead: float,
+    progress: Progress,
+) -> tuple[dict[Kinds, Plan], dict[Kinds, Plan]]:
+    """Plans whose times are chosen with what samples take, and those chosen without, both judged
+    with it."""
+    times, starts = drawn.candidates.times, list(places.values())
+    alike = drawn.candidates.slopes.shape[1] == 1
+
+    def judged(kind: Kinds, chosen: Places) -> Plan:
+        signal, slopes = drawn.read(chosen)
+        sampled = with_draws(experiment, times[chosen], drawn.following.takes)
+        conversion = _conversion(sampled, gas, times[chosen], until)
+        return Plan(kind, times[chosen], signal, conversion, standard_errors(slopes))
+
+    plans: dict[Kinds, Plan] = {}
+    for number, (kind, chosen) in enumerate(places.items()):
+        progress(number, len(places), "times with what samples take out")
+        if kind == "equal times" or kind == "equal conversion":
+            plans[kind] = judged(kind, chosen)
+        elif alike and "D" in plans:  # one parameter: what is best for one is best for all
+            plans[kind] = replace(plans["D"], kind=kind)
+        else:
+            plans[kind] = judged(kind, drawn.best(starts, kind, dead))
+    chosen_by = [kind for kind in places if kind not in ("equal times", "equal conversion")]
+    return plans, {kind: judged(kind, places[kind]) for kind in chosen_by}
+
+
+def _conversion(experiment: Experiment, gas: str, times: Floats, until: float) -> Floats:
+    run = carried_out(experiment, Goal("conversion", gas, 0.5), until)
+    return run.conversion(gas, times)
 
 
 def _signal(text: str, watched: str) -> tuple[Kind, str]:
@@ -173,100 +246,30 @@ def default_parameters(experiment: Experiment, gas: str) -> tuple[str, ...]:
     )
 
 
-def _is_relative(known: Input) -> bool:
-    return known.value != 0
-
-
-def _scale(experiment: Experiment, known: Input) -> float:
-    """By what a parameter is shifted, over `STEP`: so much that rates change by about as much.
-
-    RT for an energy, a twentieth for a temperature, else the number itself.
-    """
-    dimension = known.quantity.dimension
-    if dimension == "molar energy":
-        return units.from_si(R * experiment.temperature.initial, known.unit, dimension)
-    if dimension == "temperature":
-        return (known.value - known.low) / 20.0
-    return known.value if _is_relative(known) else 1.0
-
-
-def _relatively(
-    experiment: Experiment, parameters: tuple[str, ...], known: Mapping[str, Input]
-) -> Floats:
-    """From derivatives by shifts to those by the relative parameter [shape (n_parameters,)]."""
-    found = []
-    for address in parameters:
-        at = known[address]
-        found.append((at.value if _is_relative(at) else 1.0) / _scale(experiment, at))
-    return np.array(found)
-
-
-def _slopes(
-    experiment: Experiment,
-    reading: Reading,
-    parameters: tuple[str, ...],
-    known: Mapping[str, Input],
-    until: float,
-    progress: Progress,
-) -> tuple[Floats, Floats]:
-    """Signal [shape (m,)] and its derivative by each relative parameter [shape (m, p)]."""
-    shifts = np.array([-2.0, -1.0, 1.0, 2.0]) * STEP
-    rows = 4 * len(parameters) + 1
-    conditions = {address: np.full(rows, known[address].value) for address in parameters}
-    for place, address in enumerate(parameters):
-        scale = _scale(experiment, known[address])
-        conditions[address][4 * place : 4 * place + 4] += scale * shifts
-    (read,) = read_many(
-        experiment,
-        conditions,
-        [reading],
-        until=until,
-        solver=SHARP,
-        progress=progress,
-        note="how the signal follows the parameters",
-    )
-    slopes = _derivative(read[:-1].reshape(len(parameters), 4, -1))
-    return read[-1], slopes * _relatively(experiment, parameters, known)
-
-
-def _derivative(read: Floats) -> Floats:
-    """Five-point derivative of readings at shifted parameters, shape (m, p)."""
-    a, b, c, d = (read[:, i] for i in range(4))
-    slopes = (a - 8 * b + 8 * c - d) / (12 * STEP)
-    if not np.isfinite(slopes).all():
-        raise InputError.at(
-            "plan.samples.parameters", "a parameter near its bound", "one that can change by 2 %"
-        )
-    return slopes.T
-
-
 def _sd(sampling: Sampling, signal: Floats) -> tuple[float, bool]:
     if sampling.sd is not None:
         return sampling.sd.value, False
     return SD_SHARE * float(np.max(np.abs(signal))), True
 
 
-def _seen(
-    experiment: Experiment,
-    request: PlanRequest,
-    reading: Reading,
-    times: Floats,
-    signal: Floats,
-    slopes: Floats,
-) -> tuple[Floats, Floats, Floats, float | None]:
-    """Candidates at which the gas that is read is above its detection limit."""
-    portion = request.detection.get(reading.gas)
+def _least(experiment: Experiment, request: PlanRequest, kind: Kind, gas: str) -> float:
+    """The least signal that is seen [SI]; no limit where none is stated."""
+    portion = request.detection.get(gas)
     if portion is None:
-        return times, signal, slopes, None
+        return -np.inf
     limit = least_concentration(portion, experiment)
-    if reading.kind == "partial pressure":
-        limit *= R * experiment.temperature.initial
-    seen = signal >= limit
+    return limit * R * experiment.temperature.initial if kind == "partial pressure" else limit
+
+
+def _seen(
+    times: Floats, signal: Floats, least: float, gas: str
+) -> tuple[NDArray[np.bool_], float | None]:
+    """Where the gas that is read is above its detection limit, and when it is last [s]."""
+    seen = signal >= least
     if not seen.any():
-        found = f"{reading.gas} below its detection limit throughout"
+        found = f"{gas} below its detection limit throughout"
         raise InputError.at("plan.detection", found, "a gas that can be seen")
-    late = float(times[seen][-1]) if not seen[-1] else None
-    return times[seen], signal[seen], slopes[seen], late
+    return seen, float(times[seen][-1]) if not seen[-1] else None
 
 
 def _designs(
@@ -297,26 +300,3 @@ def _designs(
 
 def _nearest(times: Floats, wanted: Floats) -> Places:
     return np.asarray(np.abs(times[:, None] - wanted).argmin(axis=0), np.intp)
-
-
-def _with_draws(
-    experiment: Experiment,
-    reading: Reading,
-    times: Floats,
-    takes: float,
-    parameters: tuple[str, ...],
-    known: Mapping[str, Input],
-    sd: float,
-) -> tuple[Floats, Floats]:
-    """Signals with what the samples before took out, and the standard errors with that."""
-    at = replace(reading, times=tuple(times))
-    shifts = np.array([-2.0, -1.0, 1.0, 2.0]) * STEP
-    rows = []
-    for address in parameters:
-        scale = _scale(experiment, known[address])
-        for shift in shifts:
-            changed = with_inputs(experiment, {address: known[address].value + scale * shift})
-            rows.append(drawn_signals(changed, at, takes, SHARP))
-    slopes = _derivative(np.array(rows).reshape(len(parameters), 4, -1))
-    slopes = slopes * _relatively(experiment, parameters, known)
-    return drawn_signals(experiment, at, takes, SHARP), standard_errors(slopes / sd)

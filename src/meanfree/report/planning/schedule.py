@@ -156,8 +156,24 @@ def answers(found: Schedule, chosen: Kinds) -> list[Answer]:
         result.append(Answer(f"{name} to", _error(error), note))
     if found.late is not None:
         gas = wording.chemical(found.experiment.gas_named[found.gas])
-        result.append(Answer(f"{gas} is seen until", wording.duration(found.late)))
+        note = "where no sample is drawn before" if found.ignoring else ""
+        result.append(Answer(f"{gas} is seen until", wording.duration(found.late), note))
     return result
+
+
+def _ignoring(found: Schedule, chosen: Kinds) -> str:
+    """What the times would be worth, had what samples take been left out of their choice."""
+    if chosen not in found.ignoring:
+        return ""
+    other, plan = found.ignoring[chosen], found.plans[chosen]
+    told = [
+        f"{in_words(address, found.experiment)} to {_error(float(was))}, not {_error(float(now))}"
+        for address, was, now in zip(found.parameters, other.errors, plan.errors, strict=True)
+        if _error(float(was)) != _error(float(now))
+    ]
+    if not told:
+        return " Times chosen as if they took nothing would be as good."
+    return f" Times chosen as if they took nothing would give {'; '.join(told)}."
 
 
 def _error(value: float) -> str:
@@ -172,7 +188,7 @@ def _sheet_text(found: Schedule, chosen: Kinds) -> str:
         text += f"; at least {wording.duration(sampling.dead_time.value)} from sample to sample"
     if sampling.takes > 0:
         text += f"; each takes {wording.percent(sampling.takes)} of the contents"
-    return text[:1].upper() + text[1:] + "."
+    return text[:1].upper() + text[1:] + "." + _ignoring(found, chosen)
 
 
 def run_sheet(found: Schedule, plan: Plan) -> Sheet:
@@ -234,13 +250,11 @@ def _notes(found: Schedule) -> list[str]:
         for a, v in zip(found.parameters, found.values, strict=True)
     )
     notes.append(f"Designed for {values}.")
-    if found.takes_counted:
+    if found.ignoring:
         notes.append(
-            "What each sample takes out is counted in the expected readings and errors; the times "
-            "were chosen without it. Conversions are those of the undisturbed run."
+            "Times, expected readings, conversions and errors count what each sample takes out; "
+            "the line of the figure is the run without."
         )
-    elif found.sampling.takes > 0:
-        notes.append("What samples take out is not counted, for the temperature varies.")
     return notes
 
 
