@@ -201,3 +201,9 @@ def test_an_overflowing_a_over_z_is_infinite_and_says_no_warning() -> None:
     both = line_of_centres.steric_factors(1.0, 1e8, 5e5, 20.0)
     assert both.a_over_z == math.inf
     assert both.steric == math.inf
+
+
+def test_an_activation_energy_of_exactly_half_rt_has_a_threshold_of_zero_and_no_flag() -> None:
+    # RT/2 halves exactly in binary, so E0 is 0 and not a rounding beside it.
+    threshold = line_of_centres.threshold_from_activation_energy(0.5 * constants.R * 300.0, 300.0)
+    assert threshold == line_of_centres.Threshold(0.0, below_half_rt=False)
