@@ -9,6 +9,9 @@ from meanfree.report.run_models import GasAnswer, RunSummary
 
 HALF_LIVES_SHOWN = 3
 
+NOTICEABLE = 1e-5
+"""Conversion that goes back by less than this is not told: more than the integrator's error."""
+
 
 def answers(run: Run, summary: RunSummary) -> tuple[Answer, ...]:
     """The answers of a run: times, half-lives, how far, pressure or volume, temperature."""
@@ -52,7 +55,14 @@ def _why_not(gas: GasAnswer, level: float) -> str:
     limit = gas.equilibrium_conversion
     if limit is not None and limit < level:
         return f"equilibrium stops it at {wording.percent(limit)}"
-    return f"the run ends at {wording.percent(gas.conversion_at_end)}"
+    return _furthest(gas) or f"the run ends at {wording.percent(gas.conversion_at_end)}"
+
+
+def _furthest(gas: GasAnswer) -> str:
+    """The highest conversion where it goes back from there; else nothing."""
+    if gas.highest_conversion <= gas.conversion_at_end + NOTICEABLE:
+        return ""
+    return f"at most {wording.percent(gas.highest_conversion)} on the way"
 
 
 def _half_lives(run: Run, gas: GasAnswer) -> Answer:
@@ -73,6 +83,8 @@ def _how_far(run: Run, summary: RunSummary, gas: GasAnswer) -> Answer:
         note = f"equilibrium at {wording.percent(gas.equilibrium_conversion)}"
     else:
         note = f"no equilibrium to state ({wording.clean(summary.equilibrium.why_none or '')})"
+    if furthest := _furthest(gas):
+        note = f"{furthest}; {note}"
     return Answer("How far it goes", reached, f"{note}; {wording.clean(summary.message)}")
 
 

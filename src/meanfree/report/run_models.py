@@ -22,7 +22,10 @@ class ReactionTime(_Record):
 
 
 class GasAnswer(_Record):
-    """What became of one filled gas that a step consumes."""
+    """What became of one filled gas that a step consumes.
+
+    Its highest conversion is above that at the end where conversion goes back.
+    """
 
     gas: str
     time_to_10_percent_s: float | None
@@ -32,6 +35,7 @@ class GasAnswer(_Record):
     half_lives_s: list[float | None]
     filled_mol: float
     conversion_at_end: float
+    highest_conversion: float
     equilibrium_conversion: float | None
     time_to_half_of_equilibrium_s: float | None
     time_to_90_percent_of_equilibrium_s: float | None

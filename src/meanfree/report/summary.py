@@ -8,6 +8,7 @@ from meanfree.experiment.experiment import Experiment
 from meanfree.integrate.gauge import first_shown, initial_slope
 from meanfree.integrate.run import Run
 from meanfree.integrate.verify import Verification
+from meanfree.planning.goal import Goal, reach
 from meanfree.report.cautions import cautions_about, cautions_of
 from meanfree.report.kinetics import RateConstant, rate_constants
 from meanfree.report.run_models import (
@@ -128,6 +129,7 @@ def _gas_answer(run: Run, gas: str, resting: Equilibrium | None) -> GasAnswer:
         half_lives_s=[half.duration for half in run.half_lives(gas)],
         filled_mol=filled,
         conversion_at_end=float(run.conversion(gas, run.end)[0]),
+        highest_conversion=reach(run, Goal("conversion", gas, 0.5)).most,
         equilibrium_conversion=settled,
         time_to_half_of_equilibrium_s=run.reaction_time(gas, 0.5 * settled)
         if consumed and settled is not None

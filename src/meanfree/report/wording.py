@@ -245,9 +245,9 @@ class UnitsInUse:
 
 
 def units_in_use(experiment: Experiment) -> UnitsInUse:
-    """The units that the case was written in; the fill decides before the vessel."""
+    """The units that the case was written in: those of the total, of the gases, of the vessel."""
     fill, vessel = experiment.fill, experiment.vessel
-    portions = [*fill.gases.values(), *([fill.total] if fill.total is not None else [])]
+    portions = [*([fill.total] if fill.total is not None else []), *fill.gases.values()]
     written = [portion.quantity for portion in portions]
     written += [q for q in (vessel.pressure, vessel.rated_pressure, vessel.volume) if q is not None]
     default = UnitsInUse()
