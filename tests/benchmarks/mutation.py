@@ -6,7 +6,8 @@ that run the wrong line, the quickest first, until one fails, and prints the sha
 were noticed. What was tried already with the same sources (and, where nothing was noticed, the
 same tests) is not tried again: a stopped run goes on where it was. Wrongs that change nothing that
 could be seen stand with the reason in tests/data/equivalent_mutants.toml and are not counted.
-The room kernel is run without its compiler.
+The quickest ``--seconds`` of tests are run against each. The room kernel is run without its
+compiler.
 """
 
 from __future__ import annotations
@@ -44,8 +45,6 @@ from mutation_trials import (  # noqa: E402
 ROOMS = ("collisions", "rates", "experiment", "equations", "integrate", "kernel")
 EQUIVALENT = ROOT / "tests" / "data" / "equivalent_mutants.toml"
 NOTICED = ("failed", "took too long")
-MOST_SECONDS = 30.0
-"""Tests beyond this time, measured unharmed, are not run against one wrong."""
 
 
 @dataclass(frozen=True)
@@ -67,6 +66,7 @@ def main() -> None:
     parser.add_argument("rooms", nargs="*", default=ROOMS)
     parser.add_argument("--sample", type=int, default=150, help="wrongs a room; 0: all")
     parser.add_argument("--seed", type=int, default=1)
+    parser.add_argument("--seconds", type=float, default=15.0, help="tests against one wrong")
     parser.add_argument("--only", default="", help="files whose path holds this text")
     parser.add_argument("--work", type=Path, default=Path(tempfile.gettempdir()) / "mutation")
     options = parser.parse_args()
@@ -110,7 +110,7 @@ def _room(room: str, copy: Path, options: Any) -> int:
     chosen = [place for place in places if options.only in place.file]
     if 0 < options.sample < len(chosen):
         chosen = random.Random(options.seed).sample(chosen, options.sample)
-    trials = Trials(copy, room_map, tests_hash)
+    trials = Trials(copy, room_map, f"{tests_hash}-{options.seconds:g}", options.seconds)
     outcomes = {place.key: "equivalent" for place in chosen if place.key in excused}
     open_places = [place for place in chosen if place.key not in excused]
     anew = [place for place in open_places if trials.must_be_anew(place)]
@@ -119,7 +119,7 @@ def _room(room: str, copy: Path, options: Any) -> int:
 
     def try_all(all_tests: Collected) -> None:
         if in_fork(
-            partial(all_tests.try_tests, room_map.within(room_map.ordered(), MOST_SECONDS)),
+            partial(all_tests.try_tests, room_map.within(room_map.ordered(), options.seconds)),
             600.0,
             copy / "trial.txt",
         ):
@@ -146,8 +146,8 @@ def _places(copy: Path, room: str) -> list[Place]:
 class Trials:
     """The trials of one room, with what is known of earlier ones."""
 
-    def __init__(self, copy: Path, room_map: Map, tests_hash: str) -> None:
-        self.copy, self.map, self.tests_hash = copy, room_map, tests_hash
+    def __init__(self, copy: Path, room_map: Map, tests_hash: str, seconds: float) -> None:
+        self.copy, self.map, self.tests_hash, self.seconds = copy, room_map, tests_hash, seconds
         self.results = copy / "results.jsonl"
         self.earlier = _read(self.results, tests_hash)
 
@@ -177,7 +177,7 @@ class Trials:
             tests = self.map.covering(place.file, mutant.line, mutant.end_line)
         if not tests:
             return "not run"
-        few = self.map.within(tests, MOST_SECONDS)
+        few = self.map.within(tests, self.seconds)
         name = place.file.removeprefix("src/").removesuffix(".py").removesuffix("/__init__")
         wrong = WrongModule(name.replace("/", "."), path, mutated(path.read_text(), mutant))
         limit = 30.0 + 5.0 * sum(self.map.seconds[test] for test in few)
