@@ -248,7 +248,7 @@ def test_a_full_disk_while_a_folder_is_written(tmp_path: Path) -> None:
     assert caught.value.exit_status == 1
     assert str(caught.value) == (
         f"There is no room left for {target} (File too large). Nothing was left there and "
-        "earlier results are untouched. Free some space, or name a folder on another disk "
+        "earlier results are untouched. Free some space, or name a place on another disk "
         "with --out."
     )
     assert number_in(target) == 1

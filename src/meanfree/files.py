@@ -36,7 +36,6 @@ _BAD_PLACE = {
     errno.EBUSY: "a folder that the system holds in place (a mount point)",
     errno.EXDEV: "a folder that lies on another file system than its parent",
 }
-_ELSEWHERE = "a folder that can be written and replaced; name one with --out"
 
 
 def owner_of(folder: Path) -> str | None:
@@ -54,7 +53,7 @@ def refuse_if_taken(target: Path, *, owner: str, replace: bool) -> None:
     or not; an empty one is free.
     """
     target = _real(target)
-    with _in_words(target):
+    with errors_in_words(target):
         here = Path.cwd()
         if target == here or target in here.parents:
             raise InputError.at(
@@ -68,8 +67,10 @@ def refuse_if_taken(target: Path, *, owner: str, replace: bool) -> None:
             raise InputError.at(
                 "--out", f"the file {target}", "a folder, or a name that is still free"
             )
-        elif not _is_empty(target):
-            _refuse_foreign(target, owner, replace)
+        else:
+            if not _is_empty(target):
+                _refuse_foreign(target, owner, replace)
+            _refuse_unwritable(target)
 
 
 @contextmanager
@@ -87,7 +88,7 @@ def fresh_folder(
     or when another process is still writing there after ``patience_s`` [s].
     """
     target = _real(target)
-    with _in_words(target):
+    with errors_in_words(target):
         if not aside_of(target).exists():
             # Before anything is made. Where a writer is at work, or died, the lock comes first.
             refuse_if_taken(target, owner=owner, replace=replace)
@@ -104,15 +105,18 @@ def fresh_folder(
                 _recover(target, aside)
 
 
-def write_text_atomically(path: Path, text: str, *, patience_s: float = 60.0) -> None:
+def write_text_atomically(
+    path: Path, text: str, *, patience_s: float = 60.0, key: str = "--out"
+) -> None:
     """Write ``text`` (UTF-8, line feeds as given) so that ``path`` is never half-written.
 
-    Makes missing parent folders. Raises as `fresh_folder` does.
+    Makes missing parent folders. Raises as `fresh_folder` does, naming ``key`` as where the
+    path was given.
     """
     path = _real(path)
-    with _in_words(path):
+    with errors_in_words(path, key):
         if path.is_dir():
-            raise InputError.at("--out", f"the folder {path}", "the name of a file")
+            raise InputError.at(key, f"the folder {path}", "the name of a file")
         with _parents_of(path), working_aside(path, patience_s) as aside:
             new = aside / "new"
             try:
@@ -147,9 +151,14 @@ def _refuse_unwritable(target: Path) -> None:
     if not nearest.is_dir():
         raise InputError.at("--out", f"the file {nearest}", "a folder to put the results in")
     if not os.access(nearest, os.W_OK | os.X_OK):
+        kind = errno.EROFS if _is_read_only(nearest) else errno.EACCES
         raise InputError.at(
-            "--out", f"{nearest}, {_BAD_PLACE[errno.EACCES]}", "a folder that can be written"
+            "--out", f"{nearest}, {_BAD_PLACE[kind]}", "a folder that can be written"
         )
+
+
+def _is_read_only(folder: Path) -> bool:
+    return hasattr(os, "statvfs") and bool(os.statvfs(folder).f_flag & os.ST_RDONLY)
 
 
 def _refuse_foreign(target: Path, owner: str, replace: bool) -> None:
@@ -279,20 +288,25 @@ def _parents_of(target: Path) -> Iterator[None]:
 
 
 @contextmanager
-def _in_words(target: Path) -> Iterator[None]:
-    """Turn what the operating system says about ``target`` into what the user can do."""
+def errors_in_words(target: Path, key: str = "--out") -> Iterator[None]:
+    """Turn what the operating system says about ``target`` into what the user can do.
+
+    ``key`` is where the user named it. Raises `InputError` for a place that cannot be used and
+    `ComputationError` for a full disk in place of the `OSError`; others pass through.
+    """
     try:
         yield
     except OSError as error:
         if error.errno in _FULL:
             raise ComputationError(
                 f"There is no room left for {target} ({error.strerror}). Nothing was left there "
-                "and earlier results are untouched. Free some space, or name a folder on "
-                "another disk with --out."
+                "and earlier results are untouched. Free some space, or name a place on "
+                f"another disk with {key}."
             ) from error
         if error.errno in _BAD_PLACE and _concerns(error, target):
             found = f"{target}: {_BAD_PLACE[error.errno]}"
-            raise InputError.at("--out", found, _ELSEWHERE) from error
+            expected = f"a place that can be written and replaced; name one with {key}"
+            raise InputError.at(key, found, expected) from error
         raise
 
 

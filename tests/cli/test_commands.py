@@ -345,3 +345,16 @@ CASES = sorted((ROOT / "cases").glob("*.toml"))
 def test_every_shipped_case_is_understood(file: Path, capsys: Printed) -> None:
     assert run(["check", str(file)]) == 0
     assert "is understood" in capsys.readouterr().out
+
+
+@pytest.mark.parametrize("columns", ["1", "20", "47"])
+def test_a_narrow_terminal_loses_no_number(
+    columns: str, capsys: Printed, case: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """Lines are left to the terminal to break where words cannot be: every word is there."""
+    monkeypatch.setenv("COLUMNS", "200")
+    assert run(["run", str(case)]) == 0
+    wide = capsys.readouterr().out.split()
+    monkeypatch.setenv("COLUMNS", columns)
+    assert run(["run", str(case)]) == 0
+    assert sorted(capsys.readouterr().out.split()) == sorted(wide)

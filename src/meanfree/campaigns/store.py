@@ -12,13 +12,14 @@ import json
 import os
 import shutil
 from collections.abc import Iterator, Mapping
-from contextlib import contextmanager
+from contextlib import ExitStack, contextmanager, suppress
 from dataclasses import dataclass, field
 from pathlib import Path
 
 from meanfree.campaigns.campaign import Campaign
 from meanfree.campaigns.part import Part
 from meanfree.errors import ComputationError, InputError
+from meanfree.files import errors_in_words
 from meanfree.locks import working_aside
 
 IDENTITY = "sweep.json"
@@ -149,16 +150,19 @@ def opened(target: Path, campaign: Campaign, *, replace: bool) -> Iterator[Store
     if not replace:
         refuse_other(target, campaign)
     made = [parent for parent in folder.parents if not parent.exists()]
-    folder.parent.mkdir(parents=True, exist_ok=True)
     try:
-        with working_aside(folder, PATIENCE_S):
-            if replace:
-                if not _is_ours(folder):
-                    raise _not_ours(folder)
-                shutil.rmtree(folder, ignore_errors=True)
-            else:
-                refuse_other(target, campaign)
-            yield _prepared(folder, target, campaign, replace)
+        with ExitStack() as held:
+            with errors_in_words(folder):
+                folder.parent.mkdir(parents=True, exist_ok=True)
+                held.enter_context(working_aside(folder, PATIENCE_S))
+                if replace:
+                    if not _is_ours(folder):
+                        raise _not_ours(folder)
+                    shutil.rmtree(folder, ignore_errors=True)
+                else:
+                    refuse_other(target, campaign)
+                store = _prepared(folder, target, campaign, replace)
+            yield store
     finally:
         for parent in made:
             if parent.is_dir() and not any(parent.iterdir()):
@@ -168,13 +172,8 @@ def opened(target: Path, campaign: Campaign, *, replace: bool) -> Iterator[Store
 def _prepared(folder: Path, target: Path, campaign: Campaign, replace: bool) -> Store:
     store = Store(folder, campaign)
     folder.mkdir(exist_ok=True)
-    identity = folder / IDENTITY
-    if not identity.exists():
-        draft = folder / f".{IDENTITY}"
-        draft.write_text(json.dumps(dict(campaign.identity), indent=2) + "\n", encoding="utf-8")
-        _flush(draft)
-        draft.replace(identity)
-        _flush(folder)
+    if not (folder / IDENTITY).exists():
+        _identify(folder, campaign)
     for draft in folder.glob(".part-*"):
         draft.unlink()
     if not replace:
@@ -186,6 +185,21 @@ def _prepared(folder: Path, target: Path, campaign: Campaign, replace: bool) -> 
             else:
                 store.path(number).unlink()
     return store
+
+
+def _identify(folder: Path, campaign: Campaign) -> None:
+    """Say in the folder what it belongs to; where that fails, an empty folder does not stay."""
+    draft = folder / f".{IDENTITY}"
+    try:
+        draft.write_text(json.dumps(dict(campaign.identity), indent=2) + "\n", encoding="utf-8")
+        _flush(draft)
+        draft.replace(folder / IDENTITY)
+        _flush(folder)
+    except BaseException:
+        with suppress(OSError):
+            draft.unlink(missing_ok=True)
+            folder.rmdir()
+        raise
 
 
 def _adopt(finished: Path, store: Store) -> None:

@@ -58,7 +58,7 @@ def write_fitted(case: LoadedCase, fit: Fit, target: Path) -> None:
         if name:
             text = _with_source(text, name, source)
     _check(text, written)
-    write_text_atomically(target, text)
+    write_text_atomically(target, text, key="--write")
 
 
 def _belongs(fit: Fit, one: Estimate) -> bool:

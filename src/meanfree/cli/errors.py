@@ -1,11 +1,12 @@
 """How every command ends: its exit status, and errors in one wording.
 
-0 done, 1 the computation failed, 2 the input is wrong, 130 interrupted. A traceback is never the
-answer.
+0 done, 1 the computation failed, 2 the input is wrong, 130 interrupted (143 and 129 where it was
+killed or its terminal closed). A traceback is never the answer.
 """
 
 from __future__ import annotations
 
+import errno
 import json
 import os
 import sys
@@ -16,6 +17,7 @@ from typing import Any
 
 import typer
 
+from meanfree.cli.process import interrupted_status, silence, told
 from meanfree.errors import InputError, MeanfreeError, Problem
 
 # typer carries its own copy of click or uses the installed one, by version: ask it.
@@ -41,8 +43,8 @@ def report_errors(call: Callable[[], Any], *, as_json: bool, commands: Sequence[
     except typer.Exit as stop:
         return stop.exit_code
     except (KeyboardInterrupt, typer.Abort):
-        print("Interrupted.", file=sys.stderr)  # noqa: T201
-        return INTERRUPTED
+        told("Interrupted.", sys.stderr)
+        return interrupted_status()
     except BrokenPipeError:
         return _reader_gone()
     except SystemExit as stop:  # typer's own answer to a broken pipe, among others
@@ -51,6 +53,8 @@ def report_errors(call: Callable[[], Any], *, as_json: bool, commands: Sequence[
         return stop.code if isinstance(stop.code, int) else 1
     except MemoryError:
         return _tell_failure("There is not enough memory for this.", 1, as_json)
+    except OSError as error:
+        return _tell_place(error, as_json)
     except Exception as error:  # noqa: BLE001 -- the last net: one line instead of a traceback
         return _tell_failure(_unexpected(error), 1, as_json)
     return status if isinstance(status, int) else 0
@@ -58,8 +62,35 @@ def report_errors(call: Callable[[], Any], *, as_json: bool, commands: Sequence[
 
 def _reader_gone() -> int:
     """The reader of our output (`| head`) has gone, which is no error of ours."""
-    os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+    silence(sys.stdout)
     return 0
+
+
+def _can_print() -> bool:
+    try:
+        sys.stdout.flush()  # what was refused before still waits, and is refused again
+    except OSError:
+        return False
+    return True
+
+
+def _tell_place(error: OSError, as_json: bool) -> int:
+    """What the system refuses that no room has put into words."""
+    if error.filename is None and not _can_print():
+        # What waits for that stream would be refused once more at the end.
+        silence(sys.stdout)
+        text = f"Not all could be printed: {error.strerror}. What was left in files is whole."
+        return _tell_failure(text, 1, as_json=False)
+    if error.errno in (errno.ENOSPC, errno.EDQUOT, errno.EFBIG):
+        where = error.filename or "a temporary file"
+        return _tell_failure(f"There is no room left for {where} ({error.strerror}).", 1, as_json)
+    try:
+        os.getcwd()
+    except OSError:
+        found = "a working folder that has been removed"
+        expected = "the command given again from a folder that exists"
+        return _tell_input([Problem("", found, expected)], as_json)
+    return _tell_failure(_unexpected(error), 1, as_json)
 
 
 def problems_as_text(problems: Sequence[Problem]) -> str:
@@ -87,21 +118,27 @@ def problems_as_json(problems: Sequence[Problem]) -> str:
     entries = [
         {"file": p.file, "key": p.key, "found": p.found, "expected": p.expected} for p in problems
     ]
-    return json.dumps({"errors": entries}, indent=2, ensure_ascii=False)
+    return _escaped({"errors": entries})
+
+
+def _escaped(content: object) -> str:
+    """JSON in which no character can act on a terminal, or lack a place in an encoding."""
+    text = json.dumps(content, indent=2, ensure_ascii=False)
+    return "".join(c if c.isprintable() or c == "\n" else json.dumps(c)[1:-1] for c in text)
 
 
 def _tell_input(problems: Sequence[Problem], as_json: bool) -> int:
     if as_json:
-        print(problems_as_json(problems))  # noqa: T201
+        told(problems_as_json(problems), sys.stdout)
     else:
-        print(problems_as_text(problems), file=sys.stderr)  # noqa: T201
+        told(problems_as_text(problems), sys.stderr)
     return InputError.exit_status
 
 
 def _tell_failure(text: str, status: int, as_json: bool) -> int:
     if as_json:
-        print(json.dumps({"failure": text}, ensure_ascii=False))  # noqa: T201
-    print(text, file=sys.stderr)  # noqa: T201
+        told(_escaped({"failure": text}), sys.stdout)
+    told("\n".join(_visible(line) for line in text.split("\n")), sys.stderr)
     return status
 
 

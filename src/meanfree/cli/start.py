@@ -24,7 +24,7 @@ def start(name: Name, quiet: Quiet = False) -> None:
     path = Path(name if name.endswith(".toml") else f"{name}.toml")
     if path.exists() or path.is_symlink():
         raise InputError.at("NAME", f"{path}, which exists already", "a name that is still free")
-    write_text_atomically(path, template_text(path.stem))
+    write_text_atomically(path, template_text(path.stem), key="NAME")
     if quiet:
         typer.echo(str(path))
         return
