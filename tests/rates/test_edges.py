@@ -385,3 +385,26 @@ def test_which_wall_form_suits_a_vessel() -> None:
     assert law(0.01, area=si(2e-2)).surface_to_volume(where) == pytest.approx(200.0)
     assert law(0.01).surface_to_volume(where) == 100.0
     assert law(0.01).surface_to_volume(replace(where, surroundings=None)) is None
+
+
+def test_small_cross_sections_are_judged_like_large_ones() -> None:
+    """What lies beyond the table is a share, whatever the size; of nothing there is no share."""
+    tiny = points((1e3, 1e-40), (2e3, 1e-40))
+    assert len(list(tiny.cautions(PAIR))) == 1
+    assert list(points((1e3, 0.0), (2e3, 0.0)).cautions(PAIR)) == []
+
+
+def test_labels_and_gases_without_a_size_have_no_strong_collisions() -> None:
+    label = Gas.label("A")
+
+    def found(where: StepContext, **options: Any) -> list[str]:
+        law = StrongCollisions(si(1e5), si(3.0), "H2", **options)
+        return [str(problem) for problem in law.problems("k0", where)]
+
+    where = StepContext((), 1.0, reactants=(label,), gases={"A": label, "H2": H2})
+    no_mass = "k0: found the label A, which has no mass; expected a k0 of its own, with A and Ea"
+    assert found(where) == [no_mass]
+    bare = replace(H2, diameter=None)
+    assert found(alone(bare), diameter=si(3e-10)) == []
+    assert len(found(alone(bare))) == 1
+    assert len(found(replace(alone(H2), gases=None))) == 1
