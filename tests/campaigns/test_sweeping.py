@@ -66,10 +66,11 @@ def test_what_stands_in_the_parts(tmp_path: Path, campaign: Campaign) -> None:
     for address, column in campaign.columns.conditions.items():
         np.testing.assert_array_equal(frame[column], rows[address])
     # against the integration of all conditions at once: what differs is the last bits of the
-    # numbers of each condition, 1e-12 of them, which steps of rtol 1e-8 may take up
+    # numbers of each condition; where that changes a step, results differ by the error of a step,
+    # which is held to rtol, 1e-8
     alone = many(campaign.experiment, rows, campaign.observables, workers=1)
     for column in campaign.columns.observables:
-        np.testing.assert_allclose(frame[column], alone[column], rtol=1e-9, atol=0)
+        np.testing.assert_allclose(frame[column], alone[column], rtol=1e-8, atol=0)
 
 
 def test_a_part_alone_has_the_same_bytes(tmp_path: Path, campaign: Campaign) -> None:

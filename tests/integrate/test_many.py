@@ -14,7 +14,8 @@ from meanfree.experiment.experiment import Experiment
 from meanfree.experiment.inputs import inputs, with_inputs
 from meanfree.experiment.plan import RunPlan
 from meanfree.integrate.conditions import as_table, blocks_of
-from meanfree.integrate.many import many
+from meanfree.integrate.many import Runs, many
+from meanfree.integrate.numbers import numbers_of
 from meanfree.integrate.observables import At, EndTime, HalfLife, Peak, ReactionTime
 from meanfree.integrate.single import integrate
 from meanfree.sourced import Sourced
@@ -137,26 +138,85 @@ def test_all_conditions_follow_at_once(tmp_path: Path, name: str) -> None:
     blocks = list(blocks_of(e, *as_table(conditions)))
     assert len(blocks) == 1
     for row in (3, 31):
-        from meanfree.integrate.conditions import numbers_of
-
         at = {address: float(column[row]) for address, column in conditions.items()}
-        _, numbers = numbers_of(with_inputs(e, at))
-        for name_of, value in numbers.items():
+        for name_of, value in numbers_of(with_inputs(e, at)).by_name.items():
             if name_of != ("end",):
                 got = blocks[0].variation.get(*name_of)
                 assert got[min(row, len(got) - 1)] == pytest.approx(value, rel=1e-11)
 
 
-def test_what_follows_no_form_is_built_one_by_one(tmp_path: Path) -> None:
-    """Points of a program change the breaks: each condition has a System of its own."""
+def test_points_of_a_program_go_into_lanes(tmp_path: Path) -> None:
+    """Breaks come at times of their own in each condition."""
     e = experiment(tmp_path, "program")
-    points = {"temperature.points.1.temperature": np.array([500.0, 540.0, 560.0])}
-    assert len(list(blocks_of(e, *as_table(points)))) == 3
-    frame = many(e, points, [At("conversion", "A")])
-    for row, value in enumerate(points["temperature.points.1.temperature"]):
-        at = {"temperature.points.1.temperature": float(value)}
+    points = {
+        "temperature.points.1.temperature": np.linspace(500.0, 560.0, 20),
+        "temperature.points.1.time": np.linspace(20.0, 90.0, 20),
+    }
+    assert len(list(blocks_of(e, *as_table(points)))) == 1
+    frame = many(e, points, [At("conversion", "A"), At("temperature", time=30.0)])
+    for row in (0, 13):
+        at = {address: float(column[row]) for address, column in points.items()}
         run = integrate(replace(with_inputs(e, at), plan=e.plan))
         assert frame["X_A"][row] == pytest.approx(run.conversion("A", 300.0)[0], rel=1e-6)
+        assert frame["T_at_30_s_K"][row] == pytest.approx(run.temperature(30.0)[0], rel=1e-12)
+
+
+def test_the_gas_that_runs_out_first_ends_each_run(tmp_path: Path) -> None:
+    """Which gas is watched depends on the filling: on both sides of equal amounts as singly."""
+    from laboratory import experiment as made
+    from laboratory import step
+
+    e = made([step("A + B -> C", 2e-3)], {"A": 1000.0, "B": 1000.0}, until=None)
+    filled = np.array([500.0, 1000.0, 1500.0])
+    frame = many(e, {"fill.gases.A": filled}, [EndTime(), At("conversion", "A")])
+    for row, value in enumerate(filled):
+        run = integrate(with_inputs(e, {"fill.gases.A": float(value)}))
+        # where rest was seen, to 1e-6 of the way
+        assert frame["end_s"][row] == pytest.approx(run.end, rel=1e-4)
+        assert frame["X_A"][row] == pytest.approx(run.conversion("A", run.end)[0], rel=1e-6)
+
+
+def test_times_close_together_keep_columns_of_their_own(tmp_path: Path) -> None:
+    """Names have as many digits as they need; a hundred columns and more come in one piece."""
+    e = experiment(tmp_path, "rigid")
+    times = [*np.linspace(10.0, 10.0001, 150), 0.1 + 0.2]
+    asked = [At("total pressure", time=float(t)) for t in times]
+    frame = many(e, {"steps.two.k": [1.0, 2.0]}, [*asked, At("total pressure", time=0.3)])
+    assert frame.shape == (2, 1 + 151 + 1)
+    assert {"p_total_at_10_s_Pa", "p_total_at_10.0001_s_Pa", "p_total_at_0.3_s_Pa"} < set(frame)
+    assert (np.diff(frame.iloc[0, 1:151].to_numpy(float)) > 0).all()
+
+
+def test_no_conditions_give_an_empty_table(tmp_path: Path) -> None:
+    e = experiment(tmp_path, "rigid")
+    frame = many(e, {"steps.two.k": []}, [EndTime()])
+    assert list(frame) == ["steps.two.k", "end_s", "ending"]
+    assert len(frame) == 0
+
+
+def test_the_next_table_builds_nothing(tmp_path: Path) -> None:
+    """Within the values seen before; what comes out is what a fresh start gives."""
+    e = experiment(tmp_path, "piston")
+    runs = Runs(e, OBSERVABLES)
+    first = table(e, 40, seed=1)
+    runs.frame(first)
+    built = runs.conditions.built
+    second = {a: np.clip(c, first[a].min(), first[a].max()) for a, c in table(e, 9, 2).items()}
+    again = runs.frame(second)
+    assert runs.conditions.built == built
+    fresh = many(e, second, OBSERVABLES)
+    for name in again:
+        if name != "ending":
+            # Rounding of the numbers, 1e-15, shifts steps; results follow within the case's rtol.
+            np.testing.assert_allclose(again[name], fresh[name], rtol=1e-7)
+
+
+def test_numbers_that_pass_zero_warn_of_nothing(tmp_path: Path) -> None:
+    """An activation energy from below zero to above, and one that is zero at an end."""
+    e = experiment(tmp_path, "rigid")
+    for low in (-1.0, 0.0):
+        energies = {"steps.one.Ea": np.linspace(low, 1.0, 33), "steps.one.A": [0.1] * 33}
+        assert len(list(blocks_of(e, *as_table(energies)))) == 1
 
 
 def test_runs_that_end_by_themselves(tmp_path: Path) -> None:

@@ -79,9 +79,9 @@ def _input(address: str, quantity: Sourced) -> Input:
     low, high = 0.0, float("inf")
     if quantity.dimension == "molar energy" or address.endswith(".n"):
         low = -high
-    if quantity.dimension == "fraction":
-        high = 1.0
     dimension = _dimension(address, quantity)
+    if quantity.dimension == "fraction":
+        high = units.from_si(1.0, quantity.unit, dimension)
     value = units.from_si(quantity.value * quantity.per, quantity.unit, dimension)
     if quantity.dimension == "temperature":
         low = units.from_si(0.0, quantity.unit, "temperature")

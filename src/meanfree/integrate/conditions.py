@@ -1,112 +1,51 @@
-"""Many conditions of one experiment, as arrays: what each address does to the equations.
+"""Many conditions of one experiment, as arrays: groups that are carried out together.
 
-No law and no way to fill a vessel is written a second time here. The System is built at a few
-values of each address; where its numbers follow a + b f(value) with f the value, its inverse or
-its logarithm, and several addresses add up or multiply, all conditions follow at once. Built
-Systems of some conditions are compared with that; where it does not hold, every condition is built
-by itself.
+No law and no way to fill a vessel is written a second time here. A few Systems are built to see how
+every number follows the addresses (`meanfree.integrate.template`); then all conditions follow at
+once. Conditions that do not, because something switches between them, are parted where it does, and
+what is left is built one by one: some 0.4 ms a condition. All that share a structure are carried
+out together in any case.
 """
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator, Mapping
-from dataclasses import dataclass, fields
+from collections.abc import Hashable, Iterator, Mapping
+from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
 
-from meanfree.equations.build import build_system
-from meanfree.equations.system import Floats, System
+from meanfree.equations.system import Floats
 from meanfree.errors import InputError, Problem
 from meanfree.experiment.experiment import Experiment
 from meanfree.experiment.inputs import with_inputs
+from meanfree.integrate.numbers import Numbers, numbers_of
+from meanfree.integrate.template import Misfit, Table, Template, template_for
 from meanfree.kernel.parameters import Variation
 from meanfree.kernel.slots import Name
 
-Table = Mapping[str, Floats]
-
-FORMS: tuple[Callable[[Any], Any], ...] = (lambda v: v, lambda v: 1 / v, np.log)
-"""How a number may follow a value; each with an offset and a factor."""
-
-AGREE = 1e-12
-"""Relative agreement of a number with what its form predicts: rounding of a few operations."""
+FEW = 16
+"""Conditions that are built one by one rather than looked through for what they share."""
 
 CHECKED = 3
-"""Conditions whose Systems are built to compare."""
-
-OWN_TIME = "run.until"
+"""Conditions besides the extremes whose Systems are built to compare."""
 
 
 @dataclass(frozen=True)
 class Block:
     """Conditions that share a structure: ``rows`` of the table, and how their numbers vary.
 
-    ``end`` [s, shape (count,) or (1,)], None where runs end by themselves.
+    ``experiment`` is one of them; ``end`` [s, shape (count,) or (1,)], None where runs end by
+    themselves: then ``watched`` is the gas whose conversion counts (None: none).
+    ``structure`` is equal for blocks that one kernel can serve.
     """
 
     experiment: Experiment
     rows: np.ndarray
     variation: Variation
     end: Floats | None
-
-
-def numbers_of(experiment: Experiment) -> tuple[System, dict[Name, float]]:
-    """The System and every number of it that may differ from condition to condition."""
-    system = build_system(experiment)
-    found: dict[Name, float] = {
-        ("number", b, slot, position): float(value)
-        for b, block in enumerate(system.blocks)
-        for (slot, position), value in np.ndenumerate(block.numbers)
-    }
-    for row in range(len(system.reverses.step)):
-        for kind in ("lnK_at", "at", "enthalpy"):
-            found[kind, row] = float(getattr(system.reverses, kind)[row])
-    found.update({("x", i): float(x) for i, x in enumerate(system.initial_x)})
-    found["T",], found["p",] = system.initial_temperature, system.held_pressure
-    found["V",], found["dead",], found["wall",] = system.initial_volume, system.dead, system.wall
-    found["exchange",], found["surroundings",] = system.exchange, system.surroundings
-    until = experiment.plan.until
-    found["end",] = 0.0 if until is None else until.value
-    return system, found
-
-
-STRUCTURE = tuple(
-    f.name
-    for f in fields(System)
-    if f.name not in {
-        "blocks", "reverses", "initial_x", "initial_temperature", "held_pressure", "initial_volume",
-        "dead", "wall", "exchange", "surroundings", "segments",
-    }
-)  # fmt: skip
-
-
-def same_structure(one: System, other: System) -> bool:
-    """True where two Systems differ in numbers only that a Variation can carry."""
-    kept = ("dead", "wall", "exchange")
-    return (
-        all(_same(getattr(one, name), getattr(other, name)) for name in STRUCTURE)
-        and all((getattr(one, k) == 0) == (getattr(other, k) == 0) for k in kept)
-        and len(one.blocks) == len(other.blocks)
-        and all(a.law == b.law for a, b in zip(one.blocks, other.blocks, strict=True))
-        and _same_segments(one, other)
-    )
-
-
-def _same_segments(one: System, other: System) -> bool:
-    if one.mode != "program" and len(one.segments) == len(other.segments) == 1:
-        return True
-    return _same(one.segments, other.segments)
-
-
-def _same(one: Any, other: Any) -> bool:
-    if isinstance(one, np.ndarray):
-        same_nan = one.dtype.kind == "f"
-        return bool(np.array_equal(one, other, equal_nan=same_nan))
-    if isinstance(one, tuple) and isinstance(other, tuple):
-        return len(one) == len(other) and all(map(_same, one, other))
-    if hasattr(one, "__dataclass_fields__") and not isinstance(one, type):
-        return all(_same(getattr(one, f.name), getattr(other, f.name)) for f in fields(one))
-    return bool(one == other)
+    structure: Hashable
+    watched: str | None
 
 
 def as_table(conditions: Mapping[str, Any]) -> tuple[dict[str, Floats], int]:
@@ -133,26 +72,160 @@ def as_table(conditions: Mapping[str, Any]) -> tuple[dict[str, Floats], int]:
     return {a: np.broadcast_to(column, count) for a, column in columns.items()}, count
 
 
-def blocks_of(experiment: Experiment, table: Table, count: int) -> Iterator[Block]:
-    """The conditions as few blocks as their structure allows: one, unless numbers defy a form."""
-    _refuse_impossible(experiment, table)
-    base = with_inputs(experiment, _row(table, 0))
-    variation = _together(base, table, count)
-    if variation is not None:
-        end = variation.values.get(("end",))
-        if end is None and base.plan.until is not None:
-            end = np.array([base.plan.until.value])
-        yield Block(base, np.arange(count), variation, end)
+class Conditions:
+    """Conditions of one experiment, table after table.
+
+    What was found about the addresses of one table serves the next: where its values lie within
+    those seen before, nothing is built. ``built`` counts Systems.
+    """
+
+    def __init__(self, experiment: Experiment) -> None:
+        self.experiment = experiment
+        self.built = 0
+        self._kept: Template | None = None
+        self._again = False
+
+    def blocks(self, table: Table, count: int) -> list[Block]:
+        """As few blocks as the structures of the conditions allow."""
+        if count == 0:
+            return []
+        if self._kept is not None and self._kept.covers(table):
+            pieces = [_Piece(self._kept.base, np.arange(count), self._kept.values(table))]
+        else:
+            _refuse_impossible(self.experiment, table)
+            pieces = self._pieces(table, np.arange(count))
+        return [block for merged in _merged(pieces) for block in _by_watched(merged)]
+
+    def _numbers(self, table: Table, row: int) -> Numbers:
+        self.built += 1
+        changed = {address: float(column[row]) for address, column in table.items()}
+        return numbers_of(with_inputs(self.experiment, changed))
+
+    def _pieces(self, table: Table, rows: np.ndarray) -> list[_Piece]:
+        """Rows parted until each part follows a template."""
+        if len(rows) <= FEW:
+            return [_Piece(self._numbers(table, int(row)), np.array([row]), {}) for row in rows]
+        part = {address: column[rows] for address, column in table.items()}
+        found = self._template(part)
+        if isinstance(found, Template):
+            if len(rows) == len(next(iter(table.values()))):
+                self._kept = found
+            return [_Piece(found.base, rows, found.values(part))]
+        column = part[_widest(part) if part.get(found.address) is None else found.address]
+        middle = np.median(column)
+        low = column <= middle if np.any(column > middle) else column < middle
+        if low.all() or not low.any():
+            return [_Piece(self._numbers(table, int(row)), np.array([row]), {}) for row in rows]
+        return [*self._pieces(table, rows[low]), *self._pieces(table, rows[~low])]
+
+    def _template(self, part: Table) -> Template | Misfit:
+        spans = {a: (float(column.min()), float(column.max())) for a, column in part.items()}
+        count = len(next(iter(part.values())))
+        looked = {int(i) for i in np.linspace(0, count - 1, CHECKED)}
+        for column in part.values():
+            looked |= {int(np.argmin(column)), int(np.argmax(column))}
+        rows = {address: column[sorted(looked)] for address, column in part.items()}
+        # Neither an end nor the middle, where something may vanish.
+        base = self._numbers(part, int(0.382 * (count - 1)))
+        found, builds = template_for(base, spans, rows)
+        self.built += builds
+        return found
+
+
+@dataclass(frozen=True)
+class _Piece:
+    """Rows that follow one System: ``values`` as a Variation's."""
+
+    base: Numbers
+    rows: np.ndarray
+    values: Mapping[Name, Floats]
+
+
+def _widest(part: Table) -> str:
+    """The address with most different values."""
+    return max(part, key=lambda address: len(np.unique(part[address])))
+
+
+def _merged(pieces: list[_Piece]) -> Iterator[_Piece]:
+    """Pieces of one structure as one."""
+    groups: dict[Hashable, list[_Piece]] = {}
+    for piece in pieces:
+        groups.setdefault(piece.base.structure, []).append(piece)
+    for group in groups.values():
+        if len(group) == 1:
+            yield group[0]
+            continue
+        first, names = group[0].base, group[0].base.names
+        rows = np.concatenate([piece.rows for piece in group])
+        order = np.argsort(rows, kind="stable")
+        bases = np.array([piece.base.values for piece in group])
+        moved = ~((bases == bases[0]) | (np.isnan(bases) & np.isnan(bases[0]))).all(axis=0)
+        varied = {name for piece in group for name in piece.values}
+        varied |= {names[i] for i in np.flatnonzero(moved)}
+        values = {}
+        for place, name in enumerate(names):
+            if name not in varied:
+                continue
+            parts = [
+                np.broadcast_to(
+                    piece.values.get(name, bases[k, place : place + 1]), len(piece.rows)
+                )
+                for k, piece in enumerate(group)
+            ]
+            values[name] = np.concatenate(parts)[order]
+        yield _Piece(first, rows[order], values)
+
+
+def _by_watched(piece: _Piece) -> Iterator[Block]:
+    """A piece as a block, or one for each gas that is the first to run out."""
+    base, count = piece.base, len(piece.rows)
+    values = {name: value for name, value in piece.values.items() if name != ("end",)}
+    variation = Variation(base.system, count, values)
+    plan = base.experiment.plan
+    if plan.until is not None:
+        end = piece.values.get(("end",), np.array([plan.until.value]))
+        yield Block(base.experiment, piece.rows, variation, end, base.structure, None)
         return
-    for row in range(count):
-        alone = with_inputs(experiment, _row(table, row))
-        until = alone.plan.until
-        end = None if until is None else np.array([until.value])
-        yield Block(alone, np.array([row]), Variation(build_system(alone), 1), end)
+    gases, which = _watched(base.experiment, variation)
+    for place in np.unique(which):
+        rows = np.flatnonzero(which == place)
+        part = variation
+        if len(rows) < count:
+            picked = {n: v if len(v) == 1 else v[rows] for n, v in values.items()}
+            part = Variation(base.system, len(rows), picked)
+        gas = gases[place] if place >= 0 else None
+        yield Block(base.experiment, piece.rows[rows], part, None, base.structure, gas)
 
 
-def _row(table: Table, row: int) -> dict[str, float]:
-    return {address: float(column[row]) for address, column in table.items()}
+NEAR = 1e-12
+"""Gases that run out together to this share: the first one is watched, as with equal numbers."""
+
+
+def _watched(experiment: Experiment, variation: Variation) -> tuple[list[str], np.ndarray]:
+    """Gases, and which of them is watched in each condition (-1: none); see `Experiment.watched`"""
+    count = variation.count
+    if experiment.plan.watch is not None:
+        return [experiment.plan.watch], np.zeros(count, int)
+    needs = {
+        gas: coefficient
+        for step in experiment.steps
+        for gas, coefficient in step.reactants
+        if step.net.get(gas, 0.0) < 0
+    }
+    if not needs:
+        return [], np.full(count, -1)
+    lasts = np.full((len(needs), count), np.inf)
+    for place, (gas, coefficient) in enumerate(needs.items()):
+        start = variation.get("x", variation.system.gases.index(gas))
+        lasts[place] = np.where(start > 0, start / coefficient, np.inf)
+    least = lasts.min(axis=0)
+    first = np.argmax(lasts <= least * (1 + NEAR), axis=0)
+    return list(needs), np.where(np.isfinite(least), first, -1)
+
+
+def blocks_of(experiment: Experiment, table: Table, count: int) -> Iterator[Block]:
+    """The conditions as few blocks as their structure allows."""
+    yield from Conditions(experiment).blocks(table, count)
 
 
 def _refuse_impossible(experiment: Experiment, table: Table) -> None:
@@ -165,93 +238,3 @@ def _refuse_impossible(experiment: Experiment, table: Table) -> None:
             problems.update({p.key: p for p in error.problems})
     if problems:
         raise InputError(problems.values())
-
-
-def _together(base: Experiment, table: Table, count: int) -> Variation | None:
-    """All conditions at once, None where that does not reproduce Systems built one by one."""
-    moving = {a: column for a, column in table.items() if np.any(column != column[0])}
-    system, start = numbers_of(base)
-    effects: dict[Name, list[Floats]] = {}
-    for address, column in moving.items():
-        effect = _effect(base, system, start, address, column)
-        if effect is None:
-            return None
-        for name, values in effect.items():
-            effects.setdefault(name, []).append(values)
-    rows = np.unique(np.linspace(0, count - 1, CHECKED + 1).astype(int)[1:])
-    truth = []
-    for row in rows:
-        built, numbers = numbers_of(with_inputs(base, _row(table, int(row))))
-        if not same_structure(system, built):
-            return None
-        truth.append(numbers)
-    joint: dict[Name, Floats] = {}
-    for name, parts in effects.items():
-        joined = _joined(start[name], parts, rows, np.array([numbers[name] for numbers in truth]))
-        if joined is None:
-            return None
-        joint[name] = joined
-    still = [name for name in start if name not in joint]
-    if any(not _close(numbers[name], start[name]) for numbers in truth for name in still):
-        return None
-    return Variation(system, count, joint)
-
-
-def _joined(start: float, parts: list[Floats], rows: np.ndarray, truth: Floats) -> Floats | None:
-    """Effects of several addresses on one number: as a product, or as a sum."""
-    if start != 0:
-        product = np.full(len(parts[0]), start)
-        for part in parts:
-            product = product * (part / start)
-        if len(parts) == 1:
-            product = parts[0]
-        if np.all(_close(product[rows], truth)):
-            return product
-    total = np.full(len(parts[0]), start)
-    for part in parts:
-        total = total + (part - start)
-    return total if np.all(_close(total[rows], truth)) else None
-
-
-def _close(one: Any, other: Any) -> Any:
-    return (np.abs(np.subtract(one, other)) <= AGREE * np.abs(other)) | (one == other)
-
-
-def _effect(
-    base: Experiment, system: System, start: Mapping[Name, float], address: str, column: Floats
-) -> dict[Name, Floats] | None:
-    """The numbers that an address changes, for every condition; None where no form fits."""
-    low, high = float(np.min(column)), float(np.max(column))
-    probes = np.array([low, 0.75 * low + 0.25 * high, 0.4 * low + 0.6 * high, high])
-    seen = []
-    for probe in probes:
-        built, numbers = numbers_of(with_inputs(base, {address: float(probe)}))
-        if not same_structure(system, built):
-            return None
-        seen.append(numbers)
-    found = {}
-    for name in start:
-        values = np.array([numbers[name] for numbers in seen])
-        if np.all(values == values[0]) and values[0] == start[name]:
-            continue
-        predicted = _by_form(probes, values, column)
-        if predicted is None:
-            return None
-        found[name] = predicted
-    return found
-
-
-def _by_form(probes: Floats, values: Floats, column: Floats) -> Floats | None:
-    """a + b f(value) through the outer probes, if the inner ones agree."""
-    for form in FORMS:
-        if form is not FORMS[0] and probes[0] <= 0:
-            continue
-        f = form(probes)
-        slope = (values[-1] - values[0]) / (f[-1] - f[0])
-        offset = values[0] - slope * f[0]
-        # Without an offset nothing is lost by cancellation.
-        if np.all(_close(values / f * f[0], values[0])) and f[0] != 0:
-            slope, offset = values[0] / f[0], 0.0
-        if np.all(_close(offset + slope * f, values)):
-            return np.asarray(offset + slope * form(column), float)
-    return None

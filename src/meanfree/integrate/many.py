@@ -10,7 +10,6 @@ from __future__ import annotations
 import os
 from collections.abc import Iterator, Mapping, Sequence
 from concurrent.futures import ThreadPoolExecutor
-from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
@@ -18,24 +17,16 @@ import numpy as np
 from meanfree.equations.system import Floats
 from meanfree.errors import InputError, Problem
 from meanfree.experiment.experiment import Experiment
-from meanfree.integrate.checks import DRIFT, composition
-from meanfree.integrate.conditions import Block, as_table, blocks_of
+from meanfree.integrate.chunks import Chunk, Runner
+from meanfree.integrate.conditions import Block, Conditions, as_table
 from meanfree.integrate.observables import (
     QUANTITIES,
     At,
     EndTime,
-    Found,
-    HalfLife,
     Observable,
-    Peak,
     ReactionTime,
-    levels_of,
 )
-from meanfree.kernel.engine import Kernel, Task
-from meanfree.kernel.parameters import Variation
-from meanfree.kernel.records import Kept
 from meanfree.kernel.status import Ending
-from meanfree.kernel.watching import Functional
 from meanfree.progress import Progress, silent
 
 if TYPE_CHECKING:
@@ -43,8 +34,13 @@ if TYPE_CHECKING:
 
     from meanfree.integrate.slopes_of_observables import SlopingRunner
 
+__all__ = ["ENDING", "Chunk", "Runner", "Runs", "many"]
+
 CHUNK = 20_000
 """Conditions that one thread takes at a time."""
+
+SHARE = 64
+"""Fewer conditions than this are not worth another thread."""
 
 ENDING = "ending"
 """The column that says how each run ended."""
@@ -71,34 +67,133 @@ def many(
     the address in the unit of the case; events and ends that move are followed.
 
     ``rtol`` and ``atol`` (over the initial concentration) are those of the experiment's solver
-    unless given; ``workers`` threads share the work, by default one for each core.
+    unless given; ``workers`` threads share the work, by default one for each core. Whoever calls
+    again and again keeps a `Runs`.
 
     Raises
     ------
     InputError
         An address, a value or an observable is impossible.
     """
-    import pandas as pd
+    runs = Runs(
+        experiment,
+        observables,
+        sensitivities=sensitivities,
+        rtol=rtol,
+        atol=atol,
+        workers=workers,
+    )
+    return runs.frame(conditions, progress)
 
-    _refuse(experiment, observables)
-    table, count = as_table(conditions)
-    solver = experiment.plan.solver
-    precision = (solver.rtol if rtol is None else rtol, solver.atol if atol is None else atol)
-    names = [name for o in observables for name in o.columns]
-    names += [f"d_{name}_by_{address}" for name in names for address in sensitivities]
-    results = np.full((len(names), count), np.nan)
-    endings = np.zeros(count, np.int64)
-    done = 0
-    for rows, values, marks in _carried_out(
-        experiment, table, count, observables, precision, workers, tuple(sensitivities)
-    ):
-        results[:, rows] = values
-        endings[rows] = marks
-        done += len(marks)
-        progress(done, count, "runs")
-    words = pd.Index([ending.sentence for ending in Ending])
-    said = {ENDING: pd.Categorical.from_codes(endings, words)}
-    return pd.DataFrame({**table, **dict(zip(names, results, strict=True)), **said}, copy=False)
+
+class Runs:
+    """The same experiment and the same questions under conditions that come table after table.
+
+    What the first table takes (Systems to see how numbers follow addresses, the kernel) serves the
+    next. Any address may vary. A condition costs microseconds, except where something switches
+    between conditions (the form of a wall law, samples in another order): those few are built one
+    by one, at some 0.4 ms each. Arguments and errors are those of `many`.
+    """
+
+    def __init__(
+        self,
+        experiment: Experiment,
+        observables: Sequence[Observable],
+        *,
+        sensitivities: Sequence[str] = (),
+        rtol: float | None = None,
+        atol: float | None = None,
+        workers: int | None = None,
+    ) -> None:
+        _refuse(experiment, observables)
+        solver = experiment.plan.solver
+        self.observables = tuple(observables)
+        self.sensitivities = tuple(sensitivities)
+        self.precision = (
+            solver.rtol if rtol is None else rtol,
+            solver.atol if atol is None else atol,
+        )
+        self.workers = workers or os.cpu_count() or 1
+        self.conditions = Conditions(experiment)
+
+    @property
+    def columns(self) -> tuple[str, ...]:
+        """Names of the columns of the observables, then of their derivatives."""
+        plain = [name for o in self.observables for name in o.columns]
+        slopes = [f"d_{name}_by_{address}" for name in plain for address in self.sensitivities]
+        return (*plain, *slopes)
+
+    def arrays(
+        self, conditions: Mapping[str, Any], progress: Progress = silent
+    ) -> tuple[Floats, np.ndarray]:
+        """Observables [shape (n_columns, n_conditions)] and `Ending`s as numbers [(n_conditions,)].
+
+        NaN is what was not reached.
+        """
+        return self._arrays(*as_table(conditions), progress)
+
+    def frame(self, conditions: Mapping[str, Any], progress: Progress = silent) -> pd.DataFrame:
+        """Conditions, observables and endings as a table; see `many`."""
+        import pandas as pd
+
+        table, count = as_table(conditions)
+        results, endings = self._arrays(table, count, progress)
+        words = pd.Index([ending.sentence for ending in Ending])
+        # A column that is asked for twice, by times that are the same, is there once.
+        first = {name: place for place, name in reversed(list(enumerate(self.columns)))}
+        names = list(dict.fromkeys(self.columns))
+        if len(names) < len(results):
+            results = results[[first[name] for name in names]]
+        parts = [
+            pd.DataFrame(np.array(list(table.values())).T, columns=list(table), copy=False),
+            pd.DataFrame(results.T, columns=names, copy=False),
+            pd.DataFrame({ENDING: pd.Categorical.from_codes(endings, words)}),
+        ]
+        return pd.concat(parts, axis=1)
+
+    def _arrays(
+        self, table: Mapping[str, Floats], count: int, progress: Progress
+    ) -> tuple[Floats, np.ndarray]:
+        results = np.full((len(self.columns), count), np.nan)
+        endings = np.zeros(count, np.int64)
+        done = 0
+        for block in self.conditions.blocks(table, count):
+            for rows, values, marks in self._carried_out(block, table):
+                results[:, rows] = values
+                endings[rows] = marks
+                done += len(marks)
+                progress(done, count, "runs")
+        return results, endings
+
+    def _carried_out(self, block: Block, table: Mapping[str, Floats]) -> Iterator[Chunk]:
+        """(rows, values, endings) of chunk after chunk."""
+        count = len(block.rows)
+        threads = max(1, min(self.workers, -(-count // SHARE)))
+        size = min(CHUNK, max(SHARE, -(-count // threads)))
+        runner = self._runner(block, table)
+        runner.prepare(size)
+        if threads == 1:
+            for start in range(0, count, size):
+                yield runner.run(start, start + size)
+            return
+        # What is still to be compiled is compiled before threads start.
+        runner.run(0, 1)
+        with ThreadPoolExecutor(threads) as pool:
+            # A few chunks ahead of what is taken, so that results do not pile up.
+            pending: list[Any] = []
+            for start in range(0, count, size):
+                pending.append(pool.submit(runner.run, start, start + size))
+                if len(pending) > 2 * threads:
+                    yield pending.pop(0).result()
+            for future in pending:
+                yield future.result()
+
+    def _runner(self, block: Block, table: Mapping[str, Floats]) -> Runner | SlopingRunner:
+        if not self.sensitivities:
+            return Runner(block, self.observables, self.precision)
+        from meanfree.integrate.slopes_of_observables import SlopingRunner
+
+        return SlopingRunner(block, table, self.observables, self.precision, self.sensitivities)
 
 
 def _refuse(experiment: Experiment, observables: Sequence[Observable]) -> None:
@@ -122,173 +217,3 @@ def _refuse(experiment: Experiment, observables: Sequence[Observable]) -> None:
             )
     if problems:
         raise InputError(problems)
-
-
-Chunk = tuple[np.ndarray, Floats, np.ndarray]
-
-
-def _carried_out(
-    experiment: Experiment,
-    table: Mapping[str, Floats],
-    count: int,
-    observables: Sequence[Observable],
-    precision: tuple[float, float],
-    workers: int | None,
-    sensitivities: tuple[str, ...],
-) -> Iterator[Chunk]:
-    """(rows, values, endings) of chunk after chunk."""
-    threads = max(1, min(workers or os.cpu_count() or 1, -(-count // 64)))
-    with ThreadPoolExecutor(threads) as pool:
-        for block in blocks_of(experiment, table, count):
-            size = min(CHUNK, max(64, -(-len(block.rows) // threads)))
-            runner: Runner | SlopingRunner = Runner(block, observables, precision)
-            if sensitivities:
-                from meanfree.integrate.slopes_of_observables import SlopingRunner
-
-                runner = SlopingRunner(block, table, observables, precision, sensitivities)
-            runner.prepare(size)
-            starts = range(0, len(block.rows), size)
-            # A few chunks ahead of what is taken, so that results do not pile up.
-            pending: list[Any] = []
-            for start in starts:
-                pending.append(pool.submit(runner.run, start, start + size))
-                if len(pending) > 2 * threads:
-                    yield pending.pop(0).result()
-            for future in pending:
-                yield future.result()
-
-
-@dataclass
-class Runner:
-    """Carries out chunks of one block."""
-
-    block: Block
-    observables: Sequence[Observable]
-    precision: tuple[float, float]
-
-    def __post_init__(self) -> None:
-        system = self.system = self.block.variation.system
-        self.kernel = Kernel(system, varied=frozenset(self.block.variation.values))
-        watched = self.block.experiment.watched
-        self.watched = -1 if watched is None else system.gases.index(watched)
-        self.times = sorted(
-            {o.time for o in self.observables if isinstance(o, At) and o.time is not None}
-        )
-        self.names, self.table = composition(self.block.experiment)
-
-    def prepare(self, size: int) -> None:
-        """Compile, where that pays for all chunks together, before threads start."""
-        self.kernel.settle(len(self.block.rows), min(size, len(self.block.rows)))
-        self.kernel.run(
-            self.block.variation.part(0, 1), self._task(self.block.variation.part(0, 1), 0, 1)
-        )
-
-    def run(self, start: int, stop: int) -> Chunk:
-        """Integrate some conditions and work out what was asked of them."""
-        stop = min(stop, len(self.block.rows))
-        part = self.block.variation.part(start, stop)
-        task = self._task(part, start, stop)
-        kept = self.kernel.run(part, task)
-        endings = self._checked(part, kept)
-        values = (
-            np.vstack(list(self._columns(part, task, kept)))
-            if self.observables
-            else np.zeros((0, stop - start))
-        )
-        failed = ~np.isin(endings, [int(e) for e in Ending if e.is_good])
-        values[:, failed] = np.nan
-        return self.block.rows[start:stop], values, endings
-
-    def _task(self, part: Variation, start: int, stop: int) -> Task:
-        end = self.block.end
-        if end is not None and len(end) > 1:
-            end = end[start:stop]
-        return Task(
-            end,
-            rtol=self.precision[0],
-            atol=self.precision[1],
-            watched=self.watched,
-            functionals=tuple(self._functionals(part)),
-            grid=np.array([self.times]) if self.times else None,
-        )
-
-    def _functionals(self, part: Variation) -> Iterator[Functional]:
-        """Levels, maxima, then every state of a moment, in a fixed order."""
-        for gas, fractions in self._fractions().items():
-            yield levels_of(self.system.gases.index(gas), fractions, part)
-        for o in self._peaks():
-            yield Functional(((self.system.gases.index(o.gas), 1.0),), peak=True)
-        if self.times:
-            size = self.kernel.program.layout.size
-            yield from (Functional(((i, 1.0),)) for i in range(size))
-
-    def _fractions(self) -> dict[str, list[float]]:
-        """For each gas the fractions of its start whose times are asked."""
-        found: dict[str, set[float]] = {}
-        for o in self.observables:
-            if isinstance(o, ReactionTime):
-                found.setdefault(o.gas, set()).add(1.0 - o.conversion)
-            elif isinstance(o, HalfLife):
-                levels = {0.5**k for k in range(1, o.ordinal + 1)}
-                found.setdefault(o.gas, set()).update(levels)
-        return {gas: sorted(levels, reverse=True) for gas, levels in found.items()}
-
-    def _peaks(self) -> list[Peak]:
-        return [o for o in self.observables if isinstance(o, Peak)]
-
-    def _columns(self, part: Variation, task: Task, kept: Kept) -> Iterator[Floats]:
-        fractions, peaks = self._fractions(), self._peaks()
-        for o in self.observables:
-            if isinstance(o, ReactionTime | HalfLife):
-                place, levels = list(fractions).index(o.gas), fractions[o.gas]
-                times = kept.events[:, place]
-                if isinstance(o, ReactionTime):
-                    yield times[:, levels.index(1.0 - o.conversion)]
-                else:
-                    end = times[:, levels.index(0.5**o.ordinal)]
-                    begin = times[:, levels.index(0.5 ** (o.ordinal - 1))] if o.ordinal > 1 else 0.0
-                    yield end - begin
-            elif isinstance(o, Peak):
-                place = len(fractions) + peaks.index(o)
-                yield kept.peaks[:, place, 0]
-                yield kept.peaks[:, place, 1] * part.get("V")
-            elif isinstance(o, At):
-                yield np.broadcast_to(
-                    o.value(self.system, part, self._at(o, part, kept)), part.count
-                )
-            else:
-                yield kept.ends[:, -1]
-
-    def _at(self, o: At, part: Variation, kept: Kept) -> Found:
-        """The states at a moment, taken apart."""
-        system, size = self.system, self.kernel.program.layout.size
-        if o.time is None:
-            states, times = kept.ends[:, :size], kept.ends[:, size]
-        else:
-            states = kept.values[:, self.times.index(o.time), -size:]
-            times = np.full(part.count, o.time)
-        ones = np.ones(part.count)
-        T = states[:, -1] if self.kernel.program.layout.has_T else part.get("T") * ones
-        v = states[:, system.volume_index] if system.volume_varies else ones
-        retained = ones.copy()
-        for segment in system.segments:
-            retained = np.where(times > segment.start, retained * segment.retained, retained)
-        return Found(states[:, : system.n_gases], v, T, retained)
-
-    def _checked(self, part: Variation, kept: Kept) -> np.ndarray:
-        """Endings, with runs that lost or made atoms marked."""
-        endings, system = kept.marks[:, 0].copy(), self.system
-        if not self.names or any(s.retained != 1 for s in system.segments):
-            return endings
-        n = system.n_gases
-        start = np.stack([np.broadcast_to(part.get("x", i), part.count) for i in range(n)], axis=1)
-        brought = np.zeros((part.count, len(self.names)))
-        for column, j in enumerate(system.open_steps):
-            for gas, number in system.net.row(int(j)):
-                brought += np.outer(kept.ends[:, n + column] * number, self.table[:, gas])
-        drift = np.abs(kept.ends[:, :n] @ self.table.T - start @ self.table.T - brought)
-        scale = start @ np.abs(self.table).T + np.abs(brought)
-        lost = np.any(drift > DRIFT * scale, axis=1)
-        good = np.isin(endings, [int(e) for e in Ending if e.is_good])
-        endings[good & lost] = int(Ending.DRIFTED)
-        return endings

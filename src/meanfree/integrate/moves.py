@@ -17,7 +17,8 @@ from meanfree.equations.system import Floats, System
 from meanfree.errors import InputError, Problem
 from meanfree.experiment.experiment import Experiment
 from meanfree.experiment.inputs import Input, inputs, with_inputs
-from meanfree.integrate.conditions import Block, blocks_of, numbers_of, same_structure
+from meanfree.integrate.conditions import Block, blocks_of
+from meanfree.integrate.numbers import numbers_of, same_structure
 from meanfree.kernel.moving import BREAK, MovingVariation
 from meanfree.kernel.slots import Name
 
@@ -118,9 +119,9 @@ def _one_by_one(
             seen = []
             for value in stencil.values:
                 there = with_inputs(block.experiment, {**inputs_here, address: float(value)})
-                system, numbers = numbers_of(there)
-                _refuse_other_form(block.variation.system, system, address)
-                seen.append({**numbers, **_of_form(system)})
+                built = numbers_of(there)
+                _refuse_other_form(block.variation.system, built.system, address)
+                seen.append({**built.by_name, **_of_form(built.system)})
             rows.append(_differenced(seen, stencil.weights))
         names = {name for row in rows for name in row}
         moves.append({name: np.array([row.get(name, 0.0) for row in rows]) for name in names})

@@ -31,6 +31,23 @@ class Found:
     retained: Floats
 
 
+SAME = 4 * float(np.finfo(float).eps)
+"""Numbers that differ by less, relatively, are the same number gone through other arithmetic."""
+
+
+def named(number: float) -> str:
+    """A number as part of a name: in six digits, or in as many more as tell it from others.
+
+    >>> named(600.0), named(1e-7), named(0.1 + 0.2), named(1234567.0), named(100.0000001)
+    ('600', '1e-07', '0.3', '1234567', '100.0000001')
+    """
+    for digits in range(6, 17):
+        text = f"{number:.{digits}g}"
+        if abs(float(text) - number) <= SAME * abs(number):
+            return text
+    return repr(float(number))
+
+
 class Observable(Protocol):
     """Something that every run gives one number of."""
 
@@ -50,7 +67,7 @@ class ReactionTime:
     @property
     def columns(self) -> tuple[str, ...]:
         """``reaction_time_A_0.9_s``"""
-        return (f"reaction_time_{self.gas}_{self.conversion:g}_s",)
+        return (f"reaction_time_{self.gas}_{named(self.conversion)}_s",)
 
 
 @dataclass(frozen=True)
@@ -116,7 +133,7 @@ class At:
     def columns(self) -> tuple[str, ...]:
         """``c_A_mol_per_m3`` at the end, ``c_A_at_10_s_mol_per_m3`` at 10 s."""
         name, unit = QUANTITIES[self.quantity]
-        when = "" if self.time is None else f"_at_{self.time:g}_s"
+        when = "" if self.time is None else f"_at_{named(self.time)}_s"
         return (name.format(self.gas) + when + (f"_{unit}" if unit else ""),)
 
     def value(self, system: System, variation: Variation, found: Found) -> Floats:

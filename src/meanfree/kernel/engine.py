@@ -93,7 +93,7 @@ class Kernel:
     ) -> None:  # fmt: skip
         self.system, self.tableau, self.say = system, tableau, say
         self.program: Program = build_program(system, tableau, varied)
-        self._compiled, self._lanes = compiled, lanes
+        self._compiled, self._lanes = self._told = compiled, lanes
         self._addresses: dict[int, list[int]] = {}
         self._kept: bool | None = None
         self._codes: dict[Any, tuple[Lowering, list[Longs]]] = {}
@@ -146,8 +146,9 @@ class Kernel:
 
     def settle(self, total: int, chunk: int) -> None:
         """Choose for ``total`` conditions in all, of which ``chunk`` come at a time."""
+        self._compiled, self._lanes = self._told
         self._compiled, self._lanes = self.choice(total)
-        if chunk <= 8:
+        if chunk <= 8 and not self._addresses:
             self._lanes = 8
         if self._compiled:
             self._compiled_addresses(self._lanes)
@@ -241,26 +242,41 @@ class Kernel:
 
     def _conditions(self, variation: Variation, numbers: list[Floats]) -> Conditions:
         count = variation.count
-        layout, later = self.program.layout, self.system.segments[1:]
+        layout = self.program.layout
         varied = [i for i, column in enumerate(numbers) if len(column) > 1]
         own = np.empty((len(varied), count))
         for place, i in enumerate(varied):
             own[place] = numbers[i]
         names = [(n, c) for n, c in layout.parameters.items() if n[0] in ("slope", "switch")]
-        breaks = []
-        for s in later:
-            switches = np.ones(self.system.n_steps) if s.switches is None else s.switches
-            values = [s.slope if n[0] == "slope" else float(switches[int(n[1])]) for n, _ in names]
-            moved = s.temperature if self.system.mode == "program" else 0.0
-            breaks.append([s.start, s.retained, moved, *values])
+        breaks = _breaks(variation, [n for n, _ in names])
         return Conditions(
             np.array([column[0] for column in numbers], float),
             np.array(varied, np.int64),
             own,
-            np.array(breaks, float).reshape(1, len(later), 3 + len(names)),
+            breaks,
             np.array([column for _, column in names], np.int64),
-            np.zeros((1, len(later), 0, 3)),
+            np.zeros((1, breaks.shape[1], 0, 3)),
         )
+
+
+def _breaks(variation: Variation, changed: list[Name]) -> Floats:
+    """See `Conditions`; one row, or one for each condition where some break differs."""
+    system = variation.system
+    differ = any(name[0] == "break" and int(name[1]) > 0 for name in variation.values)
+    found = np.zeros((variation.count if differ else 1, len(system.segments) - 1, 3 + len(changed)))
+    for place, segment in enumerate(system.segments[1:]):
+        here, number = found[:, place], ("break", place + 1)
+        here[:, 0] = variation.get(*number, "start")
+        here[:, 1] = variation.get(*number, "retained")
+        if system.mode == "program":
+            here[:, 2] = variation.get(*number, "temperature")
+        for column, name in enumerate(changed, start=3):
+            if name[0] == "slope":
+                here[:, column] = variation.get(*number, "slope")
+            else:
+                on = 1.0 if segment.switches is None else segment.switches[int(name[1])]
+                here[:, column] = on
+    return found
 
 
 def aligned(length: int) -> Floats:

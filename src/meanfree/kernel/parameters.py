@@ -24,6 +24,8 @@ from meanfree.rates.law import NUMBERS
 class Variation:
     """``count`` conditions of a System.
 
+    A segment is ("break", segment, "start" | "retained" | "temperature" | "slope"); of the first
+    one the slope only.
     ``values`` maps names to arrays of shape (count,): ("number", block, slot, position),
     ("lnK_at", row), ("at", row), ("enthalpy", row), ("x", gas), ("T",) the temperature at time
     zero, ("p",) the held pressure, ("dead",), ("wall",), ("exchange",), ("surroundings",), ("V",)
@@ -51,6 +53,8 @@ class Variation:
         if kind in ("heat", "photon"):
             stated = system.heat_given if kind == "heat" else system.photon
             return float(stated[int(name[1])])
+        if kind == "break":
+            return float(getattr(system.segments[int(name[1])], str(name[2])))
         return {
             "T": system.initial_temperature,
             "p": system.held_pressure,
@@ -140,7 +144,7 @@ def parameter(layout: Layout, variation: Variation, name: Name) -> Floats:
     if name[0] == "scale":
         return variation.total
     if name[0] == "slope":
-        return np.array([first.slope])
+        return variation.get("break", 0, "slope")
     if name[0] == "switch":
         switches = first.switches
         return np.array([1.0 if switches is None else switches[int(name[1])]])

@@ -42,7 +42,7 @@ class TangentKernel(Kernel):
             for k in range(n_directions)
             if tangent(k, ("slope",)) in parameters
         ]
-        count = variation.count if _differ(variation) else 1
+        count = variation.count if _differ(variation) else len(plain.breaks)
         moving = np.zeros((count, len(later), n_directions, 3))
         slopes = np.zeros((count, len(later), len(changed)))
         for place in range(len(later)):

@@ -79,7 +79,10 @@ class Drawing:
         self.alone = not experiment.vessel.is_rigid and any(
             sample.volume is not None for sample in experiment.samples
         )
-        blocks = () if self.alone else blocks_of(experiment, conditions, self.count)
+        blocks = [] if self.alone else list(blocks_of(experiment, conditions, self.count))
+        if takes > 0 and any(n[0] == "break" for b in blocks for n in b.variation.values):
+            # Breaks of the case that differ from condition to condition: samples come between.
+            self.alone, blocks = True, []
         self.blocks = [
             (block, Kernel(block.variation.system, varied=frozenset(block.variation.values)))
             for block in blocks
