@@ -92,7 +92,7 @@ def test_many_wrong_cells_are_counted():
     text = "t,p\n" + "".join(f"{i},x\n" for i in range(100))
     found = read(text, ("t", "p"))
     assert len(found) == 21
-    assert str(found[-1]) == "column p: found 80 more cells of that kind; expected numbers"
+    assert str(found[-1]) == "column p: found 80 more of that kind; expected numbers"
 
 
 def test_columns_that_are_not_there():
@@ -123,7 +123,7 @@ def test_bytes():
     )
     assert str(decoded(b"t\n\0\n")) == "line 2: found a zero byte; expected a text file"
     assert str(decoded(b" " * (LARGEST + 1))) == (
-        "found a file larger than 64 MiB; expected a file of at most 64 MiB"
+        "found a file larger than 16 MiB; expected one of at most 16 MiB: fewer readings, thinned out"
     )
 
 

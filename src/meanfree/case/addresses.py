@@ -7,6 +7,7 @@ from meanfree.errors import InputError
 from meanfree.experiment.experiment import Experiment
 from meanfree.experiment.inputs import Input, inputs
 from meanfree.units import QuantityError
+from meanfree.units.gate import quoted
 
 
 def dimension_at(known: Input) -> str:
@@ -28,7 +29,7 @@ def input_at(experiment: Experiment, address: str, option: str) -> Input:
     if address not in known:
         from meanfree.case.meaning.plan import one_of_addresses
 
-        raise InputError.at(option, f'"{address}"', one_of_addresses(address, known))
+        raise InputError.at(option, quoted(address), one_of_addresses(address, known))
     return known[address]
 
 

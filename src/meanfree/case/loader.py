@@ -11,6 +11,7 @@ from meanfree.case import settings as changes
 from meanfree.case.findings import Findings
 from meanfree.case.loaded import LoadedCase
 from meanfree.case.meaning import together
+from meanfree.case.meaning.beside import look_at_files
 from meanfree.case.meaning.fill import check_sum, read_fill
 from meanfree.case.meaning.flows import check_flows, gases_in, read_flows
 from meanfree.case.meaning.gases import (
@@ -45,11 +46,14 @@ from meanfree.planning.request import PlanRequest
 from meanfree.units.reading import described
 
 
-def load_case(path: str | Path, settings: Mapping[str, str] | None = None) -> LoadedCase:
+def load_case(
+    path: str | Path, settings: Mapping[str, str] | None = None, *, files: bool = False
+) -> LoadedCase:
     """Read a case file.
 
     ``settings`` maps addresses (``steps.decomposition.Ea``) to the text of another value; they are
-    put into the parsed file before anything is checked.
+    put into the parsed file before anything is checked. ``files``: what ``[[data]]``, ``[fit]`` and
+    ``[sweep]`` ask for, and the files that they name, are read as well, and left again.
 
     Raises
     ------
@@ -71,11 +75,36 @@ def load_case(path: str | Path, settings: Mapping[str, str] | None = None) -> Lo
             shape(SweepTable, tables["sweep"], "sweep", findings)
         plan = read_plan(tables.get("plan"), findings)
         planning = PlanRequest() if experiment is None else plan_request(plan, experiment, findings)
-        if findings.problems or experiment is None:
+        case = None
+        if experiment is not None:
+            case = LoadedCase(file, text, tables, experiment, settings, data, planning)
+        if files:
+            _look_further(case, tables, file, findings)
+        if findings.problems or case is None:
             raise InputError(_with_settings(findings.problems, settings))
     except InputError as error:
         raise InputError(problem.inside(str(path)) for problem in error.problems) from None
-    return LoadedCase(file, text, tables, experiment, settings, data, planning)
+    return case
+
+
+def _look_further(
+    case: LoadedCase | None, tables: dict[str, Any], file: Path, findings: Findings
+) -> None:
+    """What `fit` and `sweep` would find wrong; of a wrong case only whether its files are there."""
+    if case is None or findings.problems:
+        look_at_files(tables, file, findings)
+        return
+    if tables.get("data") or tables.get("fit") is not None:
+        from meanfree.case.readings import asked_of
+
+        asked_of(case, findings, needed=tables.get("fit") is not None)
+    if tables.get("sweep") is not None:
+        from meanfree.case.meaning.sweep import design_of, read_sweep_table
+
+        # What is to be observed is left to `sweep`: it needs the integrator's libraries.
+        table = read_sweep_table(tables["sweep"], findings)
+        if table is not None:
+            design_of(table, case.experiment, file, findings)
 
 
 @dataclass
@@ -132,8 +161,6 @@ def read_experiment(tables: dict[str, Any], findings: Findings) -> Experiment | 
     _check_fill_and_watch(parts, findings)
     samples = read_samples(tables.get("samples"), parts.vessel, findings)
     flows = read_flows(tables.get("flows"), parts.gases, findings)
-    if findings.problems:
-        return None
     found = [step for step in steps if step is not None]
     return _joined(top, parts, found, Exchanged(samples, flows), findings)
 
@@ -175,23 +202,32 @@ def _joined(
     exchanged: Exchanged,
     findings: Findings,
 ) -> Experiment | None:
-    """The experiment, and the checks that need all of it."""
-    assert parts.vessel is not None and parts.temperature is not None
-    assert parts.fill is not None and parts.plan is not None
+    """The experiment, and the checks that need all of it.
+
+    Where something is wrong already, what the laws say is found all the same, as far as they do not
+    depend on it: all problems in one go.
+    """
     gases = tuple(gas for gas in parts.gases.values() if gas is not None)
+    if parts.temperature is None or len(gases) < len(parts.gases):
+        return None
     experiment = Experiment(
         title=top.title,
         gases=gases,
         steps=tuple(steps),
-        vessel=parts.vessel,
+        vessel=parts.vessel or together.ANY_VESSEL,
         temperature=parts.temperature,
-        fill=parts.fill,
-        plan=parts.plan,
+        fill=parts.fill or Fill({}),
+        plan=parts.plan or RunPlan(),
         purpose=top.purpose,
         samples=exchanged.samples,
         flows=exchanged.flows,
     )
+    if findings.problems:
+        known = parts.vessel is not None and parts.fill is not None
+        together.check_laws(experiment, findings, surroundings_known=known)
+        return None
     together.check_piston(experiment, findings)
+    together.check_pressure(experiment, findings)
     together.check_laws(experiment, findings)
     check_flows(experiment, findings)
     if findings.problems:

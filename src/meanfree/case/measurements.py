@@ -6,23 +6,13 @@ that a case may say can differ from run to run.
 
 from __future__ import annotations
 
-from collections.abc import Mapping
 from dataclasses import dataclass
-from pathlib import Path
-from typing import Any
 
-from meanfree.case import settings as changes
 from meanfree.case.findings import Findings
 from meanfree.case.loaded import LoadedCase
-from meanfree.case.loader import read_experiment
 from meanfree.case.meaning.analyses import order_of, wanted_of
-from meanfree.case.meaning.data import readings_of
-from meanfree.case.meaning.fit import asked_for, flattened
-from meanfree.case.schema.base import shape
-from meanfree.case.schema.data import DataTable
-from meanfree.case.schema.fit import FitTable
-from meanfree.errors import InputError, Problem
-from meanfree.experiment.experiment import Experiment
+from meanfree.case.readings import asked_of
+from meanfree.errors import InputError
 from meanfree.measured.analyses import Plan
 from meanfree.measured.fits import FitRequest
 from meanfree.measured.runs import MeasuredRun
@@ -52,11 +42,7 @@ def measurements_of(case: LoadedCase, *, needed: bool = True) -> Measurements:
         Anything is wrong with the tables or with the files they name: all problems in one go.
     """
     findings = Findings()
-    if needed and not case.tables.get("data"):
-        findings.wrong("data", "nothing", "tables headed [[data]], each with a file of readings")
-    runs = _runs(case, findings)
-    table = _fit_table(case.tables.get("fit"), findings)
-    asked = asked_for(table, runs, findings)
+    runs, table, asked = asked_of(case, findings, needed=needed)
     wanted = wanted_of(table, case.experiment, findings)
     order = order_of(table, case.experiment, findings)
     if findings.problems:
@@ -64,47 +50,3 @@ def measurements_of(case: LoadedCase, *, needed: bool = True) -> Measurements:
     request = FitRequest(runs, asked, table.loss, int(table.starts.value))
     lines = table.weighting == "integrated-law line"
     return Measurements(runs, Plan(request, lines, order, wanted))
-
-
-def _fit_table(raw: Any, findings: Findings) -> FitTable:
-    found = None if raw is None else shape(FitTable, raw, "fit", findings)
-    return FitTable.model_validate({}) if found is None else found
-
-
-def _runs(case: LoadedCase, findings: Findings) -> tuple[MeasuredRun, ...]:
-    runs: list[MeasuredRun] = []
-    names: dict[str, int] = {}
-    for place, raw in enumerate(case.tables.get("data") or ()):
-        key = f"data.{place}"
-        table = shape(DataTable, raw, key, findings)
-        if table is None:
-            continue
-        name = table.name or (Path(table.file).stem if table.file else key)
-        if name in names:
-            expected = f'another name than data.{names[name]}: name = "…"'
-            findings.wrong(f"{key}.name", f'"{name}" a second time', expected)
-        names[name] = place
-        conditions = flattened(table.conditions or {}, f"{key}.conditions", findings)
-        experiment = _with_conditions(case, conditions, f"{key}.conditions", findings)
-        if experiment is None:
-            continue
-        readings = readings_of(table, key, case.path, experiment, findings)
-        if readings is not None:
-            runs.append(MeasuredRun(name, experiment, readings, conditions))
-    return tuple(runs)
-
-
-def _with_conditions(
-    case: LoadedCase, conditions: Mapping[str, str], key: str, findings: Findings
-) -> Experiment | None:
-    """The experiment of one run, read like a case of its own."""
-    if not conditions:
-        return case.experiment
-    own = Findings()
-    tables = changes.apply(dict(case.tables), conditions, own)
-    experiment = None if own.problems else read_experiment(tables, own)
-    for problem in own.problems:
-        where = problem.key if problem.key != "--set" else ""
-        address = f"{key}.{where}" if where else key
-        findings.problems.append(Problem(address, problem.found, problem.expected, problem.file))
-    return None if own.problems else experiment

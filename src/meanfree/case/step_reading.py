@@ -6,6 +6,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass, replace
 
 from meanfree.case.findings import Findings
+from meanfree.case.in_pressures import IN_CONCENTRATIONS, in_pressures
 from meanfree.case.meaning.reaction import Reaction
 from meanfree.case.schema.base import AS_GIVEN
 from meanfree.case.schema.steps import StepTable
@@ -13,6 +14,7 @@ from meanfree.experiment.temperature import Temperature, is_constant
 from meanfree.gases.gas import Gas
 from meanfree.sourced import Sourced
 from meanfree.units import QuantityError, phrase, rate_constant, read
+from meanfree.units.gate import quoted
 from meanfree.units.reading import described
 
 
@@ -66,23 +68,38 @@ class StepReading:
         return None if raw is None else self.rate_constant_of(raw, field, bath=bath)
 
     def rate_constant_of(
-        self, raw: object, field: str, *, bath: bool | None = None
+        self, raw: object, field: str, *, bath: bool | None = None, at: float | None = None
     ) -> Sourced | None:
-        """The same of a value that stands deeper in the table; ``field`` is its key there."""
+        """The same of a value that stands deeper in the table; ``field`` is its key there.
+
+        ``at`` [K] is the temperature at which it holds, where the table says so.
+        """
         if self.reaction is None or self.orders is None:
             if not isinstance(raw, str):
                 self.wrong(field, f"{described(raw)}, a bare number", _ANY_RATE)
             return None
         with_bath = self.reaction.bath if bath is None else bath
-        dimension = rate_constant(sum(self.orders.values()) + (1.0 if with_bath else 0.0))
+        order = sum(self.orders.values()) + (1.0 if with_bath else 0.0)
         try:
-            k = read(raw, dimension, self.source)
+            k = read(raw, rate_constant(order), self.source)
         except QuantityError as error:
-            self.wrong(field, error.found, error.expected)
-            return None
+            pressures = in_pressures(raw, order)
+            if pressures is None:
+                self.wrong(field, error.found, error.expected)
+                return None
+            held = self.temperature.initial if self._is_held(field) and self.temperature else at
+            if held is None:
+                self.wrong(field, f"{quoted(raw)}, in pressures", IN_CONCENTRATIONS)
+                return None
+            k = pressures.at(held, self.source)
+            self.findings.note(f"{self.address}.{field}: {pressures.words(raw, held)}")
         if self.per is None:
             return None
         return replace(k, value=k.value / self.per, per=self.per)
+
+    def _is_held(self, field: str) -> bool:
+        """True for a plain number in a run at one temperature, which is then where it holds."""
+        return field in ("k", "rate") and not self.temperature_varies
 
     def counts_events(self) -> None:
         """Refuse k_counts where the rate constant is computed."""

@@ -11,11 +11,14 @@ from typing import Any
 from meanfree.errors import InputError
 
 LARGEST = 1 << 20  # bytes; the largest honest mechanism is far below
+DEEPEST = 20  # tables inside tables; no case needs more than six
 _TOML = "a case file in TOML 1.0 (texts stand in quotes)"
+_DEEP = "tables or lists nested too deeply to read"
 
 
 def read_text(path: Path) -> str:
     """The text of a case file. Raises `InputError` where it cannot be read as one."""
+    _refuse_name(path)
     try:
         if path.is_dir():
             raise _at("a folder", "the name of a case file, such as bulb.toml")
@@ -40,14 +43,41 @@ def read_text(path: Path) -> str:
 def parse(text: str) -> dict[str, Any]:
     """The tables of a case file. Raises `InputError` for anything that is not TOML."""
     try:
-        return tomllib.loads(text.replace("\r\n", "\n"))
+        tables = tomllib.loads(text.replace("\r\n", "\n"))
     except tomllib.TOMLDecodeError as error:
         found = f"what is not TOML: {_short(str(error))}{_look_alike(text, str(error))}"
         raise _at(found, _TOML) from None
     except RecursionError:
-        raise _at("tables or lists nested too deeply to read", _TOML) from None
+        raise _at(_DEEP, _TOML) from None
     except ValueError:  # an integer beyond the interpreter's limit of digits
         raise _at("a number with thousands of digits", "numbers that a person could read") from None
+    if _is_deep(tables):
+        raise _at(_DEEP, _TOML)
+    return tables
+
+
+def _is_deep(tables: dict[str, Any]) -> bool:
+    """True where tables lie in tables beyond `DEEPEST`: whoever walks them would not come back."""
+    level: list[Any] = [tables]
+    for _ in range(DEEPEST):
+        level = [
+            inner
+            for node in level
+            for inner in (node.values() if isinstance(node, dict) else node)
+            if isinstance(inner, dict | list)
+        ]
+        if not level:
+            return False
+    return True
+
+
+def _refuse_name(path: Path) -> None:
+    """Results are kept under the name of the case, which must be one, and be writable as text."""
+    stem, text = path.stem, str(path)
+    if stem and not stem.strip("."):
+        raise _at("a name of dots alone", "a name for the case, such as bulb.toml")
+    if not path.name.isprintable() or text != text.encode("utf-8", "replace").decode():
+        raise _at("a name that cannot be printed", "a name in plain letters, such as bulb.toml")
 
 
 def _look_alike(text: str, message: str) -> str:

@@ -35,16 +35,19 @@ Settings = Annotated[
 ]
 
 
-def open_case(path: Path, settings: list[str] | None) -> LoadedCase:
-    """Load a case with its ``--set`` values. Raises `InputError` with every problem."""
+def open_case(path: Path, settings: list[str] | None, *, files: bool = False) -> LoadedCase:
+    """Load a case with its ``--set`` values; with ``files`` look into those it names too.
+
+    Raises `InputError` with every problem.
+    """
     from meanfree.case import load_case
     from meanfree.case.settings import split_settings
 
     wanted, findings = split_settings(settings or [])
     if not findings.problems:
-        return load_case(path, wanted)
+        return load_case(path, wanted, files=files)
     try:
-        load_case(path, wanted)
+        load_case(path, wanted, files=files)
     except InputError as error:
         raise InputError([*findings.problems, *error.problems]) from None
     raise InputError(findings.problems)

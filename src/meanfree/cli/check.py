@@ -10,8 +10,8 @@ from meanfree.cli._common import AsJson, CasePath, Quiet, Settings, open_case
 def check(
     case: CasePath, settings: Settings = None, as_json: AsJson = False, quiet: Quiet = False
 ) -> None:
-    """Read a case and say what was understood."""
-    loaded = open_case(case, settings)
+    """Read a case, and the files that it names, and say what was understood."""
+    loaded = open_case(case, settings, files=True)
     if quiet:
         typer.echo(str(case))
         return

@@ -10,17 +10,23 @@ import csv
 import io
 import math
 import re
-from collections.abc import Sequence
+from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import dataclass
+from itertools import islice
+from pathlib import Path
 
 from meanfree.errors import Problem
 from meanfree.units.gate import quoted
 
-LARGEST = 1 << 26  # bytes; a logger at 10 Hz fills this in a month
+LARGEST = 1 << 24  # bytes: a million readings, which a logger at 1 Hz takes in twelve days
+MOST_LINES = 1_000_000
+MOST_CELLS = 4_000_000  # held in memory as text, some 300 MB
+LONGEST_NUMBER = 100  # characters
 MOST_PROBLEMS = 20
 _NUMBER = re.compile(r"[+-]?(?:[0-9]+(?:\.[0-9]*)?|\.[0-9]+)(?:[eE][+-]?[0-9]+)?")
 _DELIMITERS = ("\t", ";", ",", "|")
 _COMMENTS = ("#", "%")
+_FEWER = "fewer readings, thinned out"
 NAMES = {"\t": "tab", ";": "semicolon", ",": "comma", "|": "bar", " ": "blanks"}
 
 
@@ -47,10 +53,27 @@ class Cells:
     delimiter: str
 
 
+def content_of(path: Path) -> bytes | Problem:
+    """The bytes of a file, or why there are none: never of a pipe or a device, never too many."""
+    try:
+        if path.is_dir():
+            return Problem("", "a folder", "a file of readings")
+        if not path.exists():
+            return Problem("", "no such file", "a file beside the case file")
+        if not path.is_file():
+            return Problem("", "something that is no file", "a file of readings")
+        with path.open("rb") as file:
+            return file.read(LARGEST + 1)
+    except (OSError, ValueError) as error:
+        reason = getattr(error, "strerror", None) or "a name that no file can have"
+        return Problem("", f"what cannot be read ({reason})", "a file that can be read")
+
+
 def decoded(content: bytes) -> str | Problem:
     """Text of a file's bytes, or what is wrong with them."""
     if len(content) > LARGEST:
-        return Problem("", "a file larger than 64 MiB", "a file of at most 64 MiB")
+        size = f"{LARGEST >> 20} MiB"
+        return Problem("", f"a file larger than {size}", f"one of at most {size}: {_FEWER}")
     encoding = "utf-16" if content.startswith((b"\xff\xfe", b"\xfe\xff")) else "utf-8-sig"
     try:
         text = content.decode(encoding)
@@ -65,15 +88,26 @@ def decoded(content: bytes) -> str | Problem:
 
 def cells_of(text: str, layout: Layout, wanted: Sequence[str | int]) -> Cells | Problem:
     """The table in a text. ``wanted`` are the columns that will be asked for."""
+    every = text.splitlines()
+    if len(every) > MOST_LINES:
+        return Problem("", f"{len(every)} lines", f"at most {MOST_LINES}: {_FEWER}")
     lines = [
         (place, line)
-        for place, line in enumerate(text.splitlines(), start=1)
+        for place, line in enumerate(every, start=1)
         if place > layout.skip and line.strip() and not line.lstrip().startswith(_COMMENTS)
     ]
     if not lines:
         return Problem("", "no line that is not blank or a comment", "a table of readings")
     delimiter = layout.delimiter or _delimiter([line for _, line in lines], layout.decimal)
-    table = [(place, _split(line, delimiter)) for place, line in lines]
+    table: list[tuple[int, list[str]]] = []
+    cells = 0
+    for place, line in lines:
+        row = _split(line, delimiter)
+        table.append((place, row))
+        cells += len(row)
+        if cells > MOST_CELLS:
+            found = f"more than {MOST_CELLS} cells up to here"
+            return Problem(f"line {place}", found, "fewer columns, or fewer lines")
     count = layout.heading
     if count is None:
         count = 0 if _is_data(table[0][1], layout, wanted) else 1
@@ -108,7 +142,10 @@ def _delimiter(lines: Sequence[str], decimal: str) -> str:
 def _split(line: str, delimiter: str) -> list[str]:
     if delimiter == " ":
         return line.split()
-    row = next(csv.reader(io.StringIO(line), delimiter=delimiter), [])
+    try:
+        row = next(csv.reader(io.StringIO(line), delimiter=delimiter), [])
+    except csv.Error:  # a cell longer than the reader's limit: no number in any case
+        row = line.split(delimiter)
     return [cell.strip() for cell in row]
 
 
@@ -118,6 +155,8 @@ def number(text: str, decimal: str = ".") -> float | None:
     >>> number("1.5e3"), number("1,5", decimal=","), number("1,5"), number("nan")
     (1500.0, 1.5, None, None)
     """
+    if len(text) > LONGEST_NUMBER:
+        return None
     plain = text.strip().replace("\N{MINUS SIGN}", "-")
     if decimal == ",":
         if "." in plain:
@@ -146,22 +185,29 @@ def column(
     if isinstance(place, Problem):
         return None, [place]
     name = cells.heading[place] if place < len(cells.heading) else f"{place + 1}"
-    problems: list[Problem] = []
-    values, lines = [], []
-    for line, row in cells.rows:
-        where = f"line {line}, column {name}"
-        text = row[place] if place < len(row) else ""
-        value = number(text, layout.decimal)
-        if value is None:
-            problems.append(_no_number(where, text, row, place, layout))
-            continue
-        values.append(value)
-        lines.append(line)
-    if len(problems) > MOST_PROBLEMS:
-        more = len(problems) - MOST_PROBLEMS
-        problems = problems[:MOST_PROBLEMS]
-        problems.append(Problem(f"column {name}", f"{more} more cells of that kind", "numbers"))
+    values: list[float] = []
+    lines: list[int] = []
+
+    def unreadable() -> Iterator[Problem]:
+        for line, row in cells.rows:
+            text = row[place] if place < len(row) else ""
+            value = number(text, layout.decimal)
+            if value is None:
+                yield _no_number(f"line {line}, column {name}", text, row, place, layout)
+            else:
+                values.append(value)
+                lines.append(line)
+
+    problems = first_few(unreadable(), f"column {name}", "numbers")
     return Column(name, tuple(values), tuple(lines)), problems
+
+
+def first_few(problems: Iterable[Problem], key: str, expected: str) -> list[Problem]:
+    """The first of many problems of one kind, and how many more there are."""
+    pending = iter(problems)
+    few = list(islice(pending, MOST_PROBLEMS))
+    more = sum(1 for _ in pending)
+    return [*few, Problem(key, f"{more} more of that kind", expected)] if more else few
 
 
 def _no_number(where: str, text: str, row: Sequence[str], place: int, layout: Layout) -> Problem:

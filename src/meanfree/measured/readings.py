@@ -6,7 +6,7 @@ nothing is dropped.
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, field
 from pathlib import Path
 
@@ -15,7 +15,16 @@ import numpy as np
 from meanfree import units
 from meanfree.equations.system import Floats
 from meanfree.errors import InputError, Problem
-from meanfree.measured.delimited import Cells, Column, Layout, cells_of, column, decoded
+from meanfree.measured.delimited import (
+    Cells,
+    Column,
+    Layout,
+    cells_of,
+    column,
+    content_of,
+    decoded,
+    first_few,
+)
 from meanfree.measured.signals import DIMENSIONS, LEAST, Signal
 
 HUGE = 1e60
@@ -143,17 +152,8 @@ def read_file(request: FileRequest) -> Readings:
 
 
 def _open(request: FileRequest) -> Cells:
-    try:
-        content = request.path.read_bytes()
-    except IsADirectoryError:
-        raise _one(request, Problem("", "a folder", "a file of readings")) from None
-    except FileNotFoundError:
-        raise _one(request, Problem("", "no such file", "a file beside the case file")) from None
-    except (OSError, ValueError) as error:
-        reason = getattr(error, "strerror", None) or "a name that no file can have"
-        found = f"what cannot be read ({reason})"
-        raise _one(request, Problem("", found, "a file that can be read")) from None
-    text = decoded(content)
+    content = content_of(request.path)
+    text = content if isinstance(content, Problem) else decoded(content)
     if isinstance(text, Problem):
         raise _one(request, text)
     wanted = [request.axis.column, request.signal_column.column]
@@ -179,44 +179,55 @@ def _column(
 
 def _nonsense(request: FileRequest, axis: Column, signal: Column) -> list[Problem]:
     """What cannot be: time that goes back or is before the start, negative pressures, no change."""
-    problems: list[Problem] = []
     if len(axis.values) < 2:
         return [Problem("", f"{len(axis.values)} reading", "at least two")]
-    rates = request.signal.is_rate_constant
-    scale = 1.0 if rates else units.to_si(1.0, request.axis.unit, "time")
-    before = None
-    for place, value in enumerate(axis.values):
-        where = f"line {axis.lines[place]}, column {axis.name}"
-        if rates:
-            continue
-        if before is not None and value < before:
-            expected = f"times that do not go back (at least {before:g})"
-            problems.append(Problem(where, f"{value:g} after {before:g}", expected))
-        if value * scale < request.zero:
-            found = f"{value:g} {request.axis.unit}, before time zero"
-            expected = "times from the start of the run; zero = … says where the clock stood then"
-            problems.append(Problem(where, found, expected))
-        before = value
-    for place, value in enumerate(signal.values):
-        where = f"line {signal.lines[place]}, column {signal.name}"
-        if LEAST.get(request.signal.kind, False) and value < 0:
-            problems.append(Problem(where, f"{value:g}, a negative pressure", "at least 0"))
-        if rates and value <= 0:
-            problems.append(Problem(where, f"{value:g}", "a rate constant above 0"))
+    problems: list[Problem] = []
+    if not request.signal.is_rate_constant:
+        backward = _odd_times(request, axis)
+        problems += first_few(backward, f"column {axis.name}", "times that do not go back")
+    impossible = _impossible(request, signal)
+    problems += first_few(impossible, f"column {signal.name}", "numbers that can be")
     if len(set(signal.values)) == 1:
         found = f"{len(signal.values)} readings that are all {signal.values[0]:g}"
         problems.append(Problem(f"column {signal.name}", found, "a signal that changes"))
     return problems
 
 
+def _odd_times(request: FileRequest, axis: Column) -> Iterator[Problem]:
+    scale = units.to_si(1.0, request.axis.unit, "time")
+    before = None
+    for line, value in zip(axis.lines, axis.values, strict=True):
+        where = f"line {line}, column {axis.name}"
+        if before is not None and value < before:
+            expected = f"times that do not go back (at least {before:g})"
+            yield Problem(where, f"{value:g} after {before:g}", expected)
+        if value * scale < request.zero:
+            found = f"{value:g} {request.axis.unit}, before time zero"
+            expected = "times from the start of the run; zero = … says where the clock stood then"
+            yield Problem(where, found, expected)
+        before = value
+
+
+def _impossible(request: FileRequest, signal: Column) -> Iterator[Problem]:
+    pressure, rates = LEAST.get(request.signal.kind, False), request.signal.is_rate_constant
+    for line, value in zip(signal.lines, signal.values, strict=True):
+        where = f"line {line}, column {signal.name}"
+        if pressure and value < 0:
+            yield Problem(where, f"{value:g}, a negative pressure", "at least 0")
+        if rates and value <= 0:
+            yield Problem(where, f"{value:g}", "a rate constant above 0")
+
+
 def _bad_deviations(sd: Column | None) -> list[Problem]:
     if sd is None:
         return []
-    return [
-        Problem(f"line {line}, column {sd.name}", f"{value:g}", "a standard deviation above 0")
+    expected = "a standard deviation above 0"
+    bad = (
+        Problem(f"line {line}, column {sd.name}", f"{value:g}", expected)
         for line, value in zip(sd.lines, sd.values, strict=True)
         if value <= 0
-    ]
+    )
+    return first_few(bad, f"column {sd.name}", expected)
 
 
 def _in_si(request: FileRequest, columns: dict[str, Column]) -> Readings:

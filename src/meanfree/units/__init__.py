@@ -11,6 +11,7 @@ from meanfree.units.dimensions import (
     equilibrium_constant,
     phrase,
     rate_constant,
+    rate_constant_in_pressures,
     si_unit,
 )
 from meanfree.units.gate import QuantityError
@@ -23,6 +24,7 @@ __all__ = [
     "from_si",
     "phrase",
     "rate_constant",
+    "rate_constant_in_pressures",
     "read",
     "read_any",
     "read_number",

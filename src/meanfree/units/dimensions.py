@@ -161,6 +161,7 @@ def _plain_dimensions() -> list[Dimension]:
 
 _PLAIN = {dimension.word: dimension for dimension in _plain_dimensions()}
 _RATE = "rate constant of order "
+_RATE_P = "rate constant in pressures, of order "
 _KP = "equilibrium constant Kp for a change of "
 _KC = "equilibrium constant Kc for a change of "
 
@@ -168,6 +169,11 @@ _KC = "equilibrium constant Kc for a change of "
 def rate_constant(order: float) -> str:
     """Dimension word of a rate constant of that overall order: (m^3/mol)^(order-1)/s."""
     return f"{_RATE}{order:g}"
+
+
+def rate_constant_in_pressures(order: float) -> str:
+    """Dimension word of the same where pressures stand for concentrations: Pa^(1-order)/s."""
+    return f"{_RATE_P}{order:g}"
 
 
 def equilibrium_constant(kind: str, change: float) -> str:
@@ -186,6 +192,11 @@ def named(word: str) -> Dimension:
         return Dimension(word, {}, "", "0.12", article="an", above=True)
     if word.startswith(_RATE):
         return _rate_constant(word, float(word.removeprefix(_RATE)))
+    if word.startswith(_RATE_P):
+        n = float(word.removeprefix(_RATE_P)) - 1
+        powers = {"mass": -n, "length": n, "time": 2 * n - 1}
+        si = f"Pa^{-n:g}/s"
+        return Dimension(word, {key: p for key, p in powers.items() if p}, si, f"1e-6 {si}")
     if word.startswith(_KP):
         power = float(word.removeprefix(_KP))
         powers = {"mass": power, "length": -power, "time": -2 * power}

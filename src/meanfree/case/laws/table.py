@@ -34,7 +34,7 @@ class TableStep(StepTable):
             return None
         points = []
         for place, (T, raw) in enumerate(self.points):
-            k = reading.rate_constant_of(raw, f"points.{place}")
+            k = reading.rate_constant_of(raw, f"points.{place}", at=T.value)
             if k is not None:
                 points.append(TablePoint(reading.sourced(T), k))
         return Table(tuple(points), self.extrapolate) if len(points) == len(self.points) else None

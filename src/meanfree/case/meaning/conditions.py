@@ -13,30 +13,27 @@ from meanfree import units
 from meanfree.campaigns.designs import Floats, Listed
 from meanfree.case.addresses import dimension_at
 from meanfree.case.findings import Findings
+from meanfree.case.meaning.beside import file_beside
 from meanfree.case.meaning.plan import one_of_addresses
 from meanfree.errors import Problem
 from meanfree.experiment.inputs import Input
-from meanfree.measured.delimited import Layout, cells_of, column, decoded
+from meanfree.measured.delimited import Layout, cells_of, column, content_of, decoded
 from meanfree.units import QuantityError
 from meanfree.units.gate import quoted
 
 _HEADING = re.compile(r"(.+?)\s*(?:\[(.+)\]|\((.+)\))")
 _LAYOUT = Layout(delimiter=",", heading=1)
-_INSIDE = "a file inside the case file's folder, such as conditions.csv"
 
 
 def read_conditions(
     name: str, case_file: Path, known: Mapping[str, Input], key: str, findings: Findings
 ) -> Listed | None:
     """The conditions in a file; what is wrong goes to ``findings``, with line and column."""
-    path = _path(name, case_file, key, findings)
+    path = file_beside(name, key, case_file, findings, "conditions.csv")
     if path is None:
         return None
-    try:
-        text = decoded(path.read_bytes())
-    except OSError as error:
-        findings.wrong(key, f"{quoted(name)}: {error.strerror}", _INSIDE)
-        return None
+    content = content_of(path)
+    text = content if isinstance(content, Problem) else decoded(content)
     cells = text if not isinstance(text, str) else cells_of(text, _LAYOUT, [])
     if isinstance(cells, Problem):
         findings.wrong(f"{key}: {name}", cells.found, cells.expected)
@@ -86,17 +83,3 @@ def _headed(
         )
 
     return address, scaled
-
-
-def _path(name: str, case_file: Path, key: str, findings: Findings) -> Path | None:
-    """A file inside the case file's folder, links followed."""
-    folder = case_file.parent.resolve()
-    try:
-        path = (folder / name).resolve()
-    except (OSError, ValueError, RuntimeError):
-        path = folder
-    wrong = Path(name).is_absolute() or "\\" in name or path == folder
-    if wrong or not path.is_relative_to(folder):
-        findings.wrong(key, quoted(name), _INSIDE)
-        return None
-    return path

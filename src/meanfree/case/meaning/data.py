@@ -7,6 +7,7 @@ from typing import Any
 
 from meanfree import units
 from meanfree.case.findings import Findings
+from meanfree.case.meaning.beside import file_beside
 from meanfree.case.meaning.signals import read_signal
 from meanfree.case.schema.data import BlankTable, ColumnTable, DataTable, LayoutTable
 from meanfree.errors import InputError
@@ -36,7 +37,7 @@ def readings_of(
     """The readings of one table; what is wrong goes to ``findings``. None where something is."""
     before = len(findings.problems)
     signal = read_signal(table, f"{key}.signal", experiment, findings)
-    path = _path(table.file, f"{key}.file", case_file, findings)
+    path = file_beside(table.file, f"{key}.file", case_file, findings)
     axis = _axis(table, key, signal, findings)
     if signal is None or path is None or axis is None:
         return None
@@ -54,29 +55,9 @@ def readings_of(
             if blank is not None:
                 readings = without_blank(readings, blank, table.blank.subtract)
     except InputError as error:
-        findings.problems += [p for p in error.problems if p not in findings.problems]
+        findings.add(*error.problems)
         return None
     return None if len(findings.problems) > before else readings
-
-
-def _path(text: str | None, key: str, case_file: Path, findings: Findings) -> Path | None:
-    """A file inside the case file's folder, links followed."""
-    if text is None:
-        return None
-    inside = "a file inside the case file's folder, such as run1.csv"
-    folder = case_file.parent.resolve()
-    if not text.isprintable() or Path(text).is_absolute() or "\\" in text:
-        findings.wrong(key, quoted(text), inside)
-        return None
-    try:
-        path = (folder / text).resolve()
-    except (OSError, ValueError, RuntimeError):
-        findings.wrong(key, quoted(text), inside)
-        return None
-    if not path.is_relative_to(folder) or path == folder:
-        findings.wrong(key, f"{quoted(text)}, which is outside the case file's folder", inside)
-        return None
-    return path
 
 
 def _layout(table: LayoutTable, key: str, findings: Findings) -> Layout:
@@ -175,7 +156,7 @@ def _positive(
 def _blank(
     table: BlankTable, key: str, run: FileRequest, case_file: Path, findings: Findings
 ) -> Readings | None:
-    path = _path(table.file, f"{key}.file", case_file, findings)
+    path = file_beside(table.file, f"{key}.file", case_file, findings)
     if run.signal.is_rate_constant:
         findings.wrong(key, "a blank of rate constants", "a blank of readings against time")
         return None

@@ -37,7 +37,7 @@ def with_energies(
         if table is not None:
             found = _own(gas, table, found, findings)
     except InputError as error:
-        findings.problems.extend(error.problems)
+        findings.add(*error.problems)
         return gas
     if found is None:
         key, expected = f"gases.{gas.name}", "enthalpy, entropy and heat_capacity under it"

@@ -45,7 +45,7 @@ def asked_for(
         try:
             parameters_of(runs, asked)
         except InputError as error:
-            findings.problems += [p for p in error.problems if p not in findings.problems]
+            findings.add(*error.problems)
     return tuple(asked)
 
 
@@ -111,7 +111,7 @@ def _number(known: Input, text: Any, key: str, findings: Findings) -> float | No
     try:
         return number_at(known, text, key)
     except InputError as error:
-        findings.problems += list(error.problems)
+        findings.add(*error.problems)
         return None
 
 

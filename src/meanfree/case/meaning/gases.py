@@ -97,7 +97,7 @@ def _known(name: str, table: GasTable | None, findings: Findings) -> Gas | None:
     try:
         gas = find_gas(name, formula=formula, cas=cas)
     except InputError as error:
-        findings.problems.extend(error.problems)
+        findings.add(*error.problems)
         return None
     if table is None:
         return gas

@@ -73,9 +73,13 @@ def parse_reaction(text: str, *, from_nothing: bool = False, to_nothing: bool = 
         problems.append(
             (f"{quoted(text)}, nothing on the {side}", f"gases on both sides, such as {_EXAMPLE}")
         )
+    reaction = Reaction(reactants, products, bath_left > 0)
+    if not problems and all(abs(n) < TOLERANCE for n in reaction.net.values()):
+        found = f"{quoted(text)}, which changes nothing"
+        problems.append((found, "a step that uses up or forms a gas"))
     if problems:
         raise ReactionError(problems)
-    return Reaction(reactants, products, bath_left > 0)
+    return reaction
 
 
 def _side(text: str, problems: list[tuple[str, str]]) -> tuple[Amounts, int]:

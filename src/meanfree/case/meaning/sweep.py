@@ -204,7 +204,7 @@ def _number(raw: Any, at: Input, key: str, findings: Findings) -> float | None:
     try:
         return number_at(at, raw, key)
     except InputError as error:
-        findings.problems += error.problems
+        findings.add(*error.problems)
         return None
 
 

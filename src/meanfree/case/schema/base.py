@@ -89,7 +89,9 @@ def shape(model: type[T], raw: object, address: str, findings: Findings) -> T | 
 def _tell(model: type[Table], item: dict[str, Any], address: str, findings: Findings) -> None:
     """One of pydantic's errors in our words."""
     loc, kind, context = item["loc"], item["type"], item.get("ctx", {})
-    words = [str(part) for part in loc if not str(part).startswith(("function-", "tagged-"))]
+    words = [
+        str(part) or '""' for part in loc if not str(part).startswith(("function-", "tagged-"))
+    ]
     owner, field = _owner(model, words)
     key = ".".join([address, *words]) if address else ".".join(words)
     if kind == "extra_forbidden":
