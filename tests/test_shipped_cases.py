@@ -9,12 +9,16 @@ from pathlib import Path
 import numpy as np
 import pytest
 
+import meanfree
 from meanfree.case import load_case
+from meanfree.cli.app import run as command
 from meanfree.constants import N_A, R, k_B
 from meanfree.experiment.equilibrium import equilibrium
 from meanfree.experiment.plan import Solver
 from meanfree.experiment.temperature import Isothermal
 from meanfree.integrate.single import integrate
+from meanfree.planning.limits import survey
+from meanfree.planning.schedule import schedule
 
 CASES = Path(__file__).parents[1] / "cases"
 
@@ -216,6 +220,59 @@ def test_samples_of_azomethane():
     # one becomes two, and 10 mtorr come in each minute
     first = 180 + 60 * -np.expm1(-k * 600) + 0.1
     assert ours.pressure(600.0)[0] / TORR == pytest.approx(first, rel=1e-7)
+
+
+def test_planned_nitrogen_dioxide():
+    """Second order until the reverse matters; the plan of the case is what is answered."""
+    loaded, ours = load_case(CASES / "no2-samples.toml"), run("no2-samples")
+    k = 2e9 * 1e-3 * np.exp(-111e3 / (R * 650.0))  # per event, m^3/mol/s
+    c0 = 30 * TORR / (R * 650.0)
+    # 1/(1 - X) - 1 = 2 k c0 t; at 1 % the reverse has taken 1e-5 of the rate
+    assert ours.reaction_time("NO2", 0.01) == pytest.approx(1 / 99 / (2 * k * c0), rel=1e-4)
+    found = schedule(loaded.experiment, loaded.planning)
+    for plan in found.plans.values():
+        assert len(plan.times) == 6
+        assert plan.times[0] >= 20.0
+        assert np.diff(plan.times).min() >= 120.0 - 1e-6
+        assert plan.signal[-1] > 0.5 * TORR
+    best, naive = found.plans["D"].errors, found.plans["equal times"].errors
+    assert all(best < naive)
+    # Half a dozen readings of 1 to 4 % each, two of the numbers found from them.
+    assert 0.01 < best[0] < 0.1
+    limits = {limit.key: limit for limit in survey(ours, loaded.planning).limits}
+    half = ours.reaction_time("NO2", 0.5)
+    assert limits["warm_up"].value == pytest.approx(20.0 / half, rel=1e-9)
+    assert limits["detection.NO2"].value == pytest.approx(60.0, rel=1e-9)
+
+
+def test_swept_hydrogen_iodide(tmp_path):
+    """Where it settles X = 2/(2 + sqrt K): K(H2 + I2 = 2 HI) = 54.4 at 698.6 K.
+
+    Source: A. H. Taylor and R. H. Crist, J. Am. Chem. Soc. 63, 1377 (1941) (from memory). Cold,
+    the time to 10 % is 1/(9 * 2 k c0).
+    """
+    folder = tmp_path / "sweep"
+    assert command(["sweep", str(CASES / "iodide-sweep.toml"), "--out", str(folder)]) == 0
+    frame = meanfree.read_sweep(folder)
+    assert len(frame) == 180
+    assert frame["ending"].str.startswith("reached").all()
+    T, torr = frame["temperature.value_K"], frame["fill.gases.HI_torr"]
+    settled = frame[(T == 700.0) & (torr > 599.0)]["X_HI"].item()
+    # Taylor and Crist are good to 1 % in K, and the tables to 1 kJ/mol; 1.4 K is 0.2 % of K
+    assert settled == pytest.approx(2 / (2 + np.sqrt(54.4)), rel=0.01)
+    cold = frame[(T == 680.0) & (torr > 599.0)]
+    k = 8e10 * 1e-3 * np.exp(-185e3 / (R * 680.0))
+    c0 = 600 * TORR / (R * 296.0)
+    # 10 % is half of the way to where it settles: the reverse takes a sixth off the rate then,
+    # 6 % on the mean
+    ideal = 1 / 9 / (2 * k * c0)
+    assert ideal < cold["reaction_time_HI_0.1_s"].item() < 1.12 * ideal
+    page = (folder / "report.html").read_text(encoding="utf-8")
+    # the cells of a map are a picture inside the page, which the page must let through
+    assert '<image xlink:href="data:image/png' in page
+    assert "img-src data:" in page
+    assert "Time of HI to 10 % (s)" in page
+    assert "Partial pressure of I₂ at the end (Pa)" in page
 
 
 def test_every_shipped_case_says_that_it_is_invented():

@@ -26,7 +26,7 @@ def test_it_says_the_gravest_first_and_leaves_a_folder(capsys: Printed, case: Pa
     assert run(["limits", str(case)]) == 0
     said = capsys.readouterr().out
     assert said.startswith("Is the model honest here? Nitrosyl chloride\n\nBeyond a guideline")
-    assert "Caution: Air that dilutes Cl2 to its limit: " in said
+    assert "Caution: Air that dilutes Cl₂ to its limit: " in said
     assert "licensed practice decide" in said.replace("\n", " ")
     folder = Path("outputs/bulb/limits")
     assert sorted(path.name for path in folder.iterdir()) == [

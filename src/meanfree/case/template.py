@@ -15,6 +15,7 @@ title = "@TITLE@"
 holds = "volume"                       # "volume": rigid; "pressure": a piston or a bag
 volume = "1.8 L"                       # of a piston: at filling
 # rated_pressure = "2 bar"
+# gauge_resolution = "0.2 torr"        # smallest change of pressure that its gauge shows
 # shape = { form = "sphere" }          # or "cylinder" with diameter and length
 # dead_space = { volume = "25 mL", temperature = "296 K" }   # gauge and lines
 
@@ -49,6 +50,23 @@ reverse = "thermochemistry"            # or { Kp = "0.12 bar", at = "480 K" }, w
 # k_counts = "loss of NOCl"            # what a quoted k counts, where it is not events
 # uncertainty = { factor = 1.5 }
 # source = "where the numbers come from"
+
+# [plan]                               # for limits, size, window and schedule
+# warm_up = "3 min"
+# patience = "8 h"
+# detection = { NOCl = "0.5 torr" }
+# tolerances = { "temperature.value" = "2 K", "fill.gases.NOCl" = "1 %" }
+# [plan.samples]
+# count = 6
+# signal = "total pressure"            # or "concentration of NO", "partial pressure of NO"
+# sd = "0.5 torr"
+# dead_time = "3 min"
+# takes = 0.01                         # share of the contents that a sample takes out
+
+# [sweep]                              # for sweep: a grid; with samples = 1024 quasi-random
+# observables = ["reaction time of NOCl to 10 %", "conversion of NOCl"]
+# [sweep.vary]
+# "temperature.value" = { between = ["440 K", "520 K"], points = 9 }
 """
 
 

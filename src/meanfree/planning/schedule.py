@@ -64,6 +64,7 @@ class Schedule:
     where the case states none. ``signal`` is that of the undisturbed run at the times of
     ``candidates``. ``parameters`` are addresses and ``values`` what they are, in the unit of the
     file; errors are relative to them.
+    Samples are drawn between ``begin`` (the end of the warm-up) and ``until`` [s];
     ``late`` [s] is when the undisturbed signal falls below its detection limit, None where it does
     not. Where samples take something out, ``plans`` are chosen with it, and ``ignoring`` holds the
     optimal designs as they would be without, with the errors that they would really give.
@@ -75,6 +76,7 @@ class Schedule:
     gas: str
     sd: float
     assumed: bool
+    begin: float
     until: float
     late: float | None
     parameters: tuple[str, ...]
@@ -103,11 +105,7 @@ def schedule(experiment: Experiment, request: PlanRequest, progress: Progress = 
     parameters = sampling.parameters or default_parameters(experiment, gas)
     known = inputs(experiment)
     dead = 0.0 if sampling.dead_time is None else sampling.dead_time.value
-    # A grid that holds multiples of the dead time, so that samples can be that close.
-    times = np.linspace(0, until, CANDIDATES + 1)[1:]
-    if until / CANDIDATES <= dead < until:
-        per = round(dead / (until / CANDIDATES))
-        times = np.arange(dead / per, until * (1 + 1e-12), dead / per)
+    times = _times(until, dead, request)
     asked = (experiment, reading_kind, read_gas, parameters, known)
     progress(0, 0, "how the signal follows the parameters")
     signal, slopes = Following(*asked).at(times)
@@ -139,6 +137,7 @@ def schedule(experiment: Experiment, request: PlanRequest, progress: Progress = 
         gas=read_gas,
         sd=sd,
         assumed=assumed,
+        begin=0.0 if request.warm_up is None else request.warm_up.value,
         until=until,
         late=late,
         parameters=tuple(parameters),
@@ -232,6 +231,22 @@ def _end(experiment: Experiment, request: PlanRequest, gas: str) -> float:
             return stated.value
     end = carried_out(experiment, Goal("conversion", gas, 0.5), None).end
     return end if request.patience is None else min(end, request.patience.value)
+
+
+def _times(until: float, dead: float, request: PlanRequest) -> Floats:
+    """Times that designs choose from [s], none before the vessel is warm.
+
+    The grid holds multiples of the dead time, so that samples can be that close.
+    """
+    times = np.linspace(0, until, CANDIDATES + 1)[1:]
+    if until / CANDIDATES <= dead < until:
+        per = round(dead / (until / CANDIDATES))
+        times = np.arange(dead / per, until * (1 + 1e-12), dead / per)
+    warm = 0.0 if request.warm_up is None else request.warm_up.value
+    if warm > times[-1]:
+        found = f"{warm:g} s, longer than the working time of {until:g} s"
+        raise InputError.at("plan.warm_up", found, "a shorter warm-up, or plan.samples.until later")
+    return times[times >= warm]
 
 
 def default_parameters(experiment: Experiment, gas: str) -> tuple[str, ...]:

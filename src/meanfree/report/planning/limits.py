@@ -2,17 +2,20 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import Literal
 
 from pydantic import BaseModel, ConfigDict, Field
 
 from meanfree import units
+from meanfree.experiment.experiment import Experiment
 from meanfree.planning.limits import Limit, Survey, Verdict
 from meanfree.planning.limits.motion import WallShare
 from meanfree.report import wording
 from meanfree.report.figures import limits as figure
 from meanfree.report.figures import style
 from meanfree.report.planning.document import Document, Drawing, Section
+from meanfree.report.planning.naming import with_formulas
 from meanfree.report.planning.showing import length, shown
 from meanfree.report.record import CaseRecord
 from meanfree.report.rows import NONE, Answer, Row, Sheet
@@ -88,7 +91,7 @@ class LimitsSummary(_Record):
 def limits_document(survey: Survey, record: CaseRecord) -> Document:
     """The document of `limits`."""
     experiment = survey.run.experiment
-    summary = summarise(survey, record)
+    summary, survey = summarise(survey, record), _printed(survey)
     with style.drawing():
         svg, png = style.rendered(figure.figure(survey))
     drawing = Drawing("limits", svg, png, figure.CAPTION)
@@ -135,7 +138,7 @@ def answers(survey: Survey) -> list[Answer]:
         limits = survey.having(verdict)
         if not limits and verdict is not Verdict.BEYOND:
             continue
-        names = "; ".join(_brief(limit) for limit in limits)
+        names = "; ".join(_brief(limit, survey.run.experiment) for limit in limits)
         count = "nothing" if not limits else f"{len(limits)}"
         found.append(Answer(question, count, names))
     own = survey.own
@@ -146,10 +149,30 @@ def answers(survey: Survey) -> list[Answer]:
     return found
 
 
-def _brief(limit: Limit) -> str:
-    if limit.name.startswith(("Frank", "Semenov", "Knudsen")):
+def _brief(limit: Limit, experiment: Experiment) -> str:
+    first = limit.name.partition(" ")[0]
+    gases = (wording.chemical(gas) for gas in experiment.gases)
+    if first in ("Frank-Kamenetskii", "Semenov", "Knudsen", *gases):
         return wording.clean(limit.name)
     return wording.clean(limit.name[:1].lower() + limit.name[1:])
+
+
+def _printed(survey: Survey) -> Survey:
+    """The same with gases printed as formulas."""
+
+    def told(text: str) -> str:
+        return with_formulas(text, survey.run.experiment)
+
+    limits = tuple(
+        replace(
+            limit,
+            name=told(limit.name),
+            meaning=told(limit.meaning),
+            facts=tuple(replace(fact, name=told(fact.name)) for fact in limit.facts),
+        )
+        for limit in survey.limits
+    )
+    return replace(survey, limits=limits)
 
 
 def _said(survey: Survey, limit: Limit) -> str:

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import re
+
 from meanfree.experiment.experiment import Experiment
 from meanfree.experiment.inputs import inputs
 from meanfree.report import wording
@@ -39,6 +41,16 @@ def in_words(address: str, experiment: Experiment) -> str:
 def _gas(name: str, experiment: Experiment) -> str:
     known = experiment.gas_named.get(name)
     return wording.clean(name) if known is None else wording.chemical(known)
+
+
+def with_formulas(text: str, experiment: Experiment) -> str:
+    """A sentence in which gases are printed as formulas: NO2 as NO₂."""
+
+    def printed(word: re.Match[str]) -> str:
+        known = experiment.gas_named.get(word[0])
+        return word[0] if known is None else wording.chemical(known)
+
+    return re.sub(r"[^\s,;:.]+", printed, text)
 
 
 def at_address(value: float, address: str, experiment: Experiment, digits: int = 5) -> str:

@@ -186,6 +186,8 @@ def _sheet_text(found: Schedule, chosen: Kinds) -> str:
     text += " (assumed: 1 % of the largest signal)" if found.assumed else ""
     if sampling.dead_time is not None:
         text += f"; at least {wording.duration(sampling.dead_time.value)} from sample to sample"
+    if found.begin > 0:
+        text += f"; none in the warm-up of {wording.duration(found.begin)}"
     if sampling.takes > 0:
         text += f"; each takes {wording.percent(sampling.takes)} of the contents"
     return text[:1].upper() + text[1:] + "." + _ignoring(found, chosen)

@@ -22,6 +22,7 @@ from meanfree.report.planning.document import Document, Drawing, Section, page
 from meanfree.report.planning.naming import in_words
 from meanfree.report.record import CaseRecord, versions
 from meanfree.report.rows import NONE, Answer, Sheet
+from meanfree.report.sweep import naming
 from meanfree.report.sweep.models import (
     ConditionAnswer,
     EndingAnswer,
@@ -59,7 +60,9 @@ def sweep_document(result: SweepResult, record: CaseRecord, arguments: Sequence[
         tables["failures.csv"] = to_csv(names, [list(f.values()) for f in digest.failures])
     sections = [
         *([Section("What it shows", drawings=tuple(_drawings(result)))] if digest.curves else []),
-        Section("Observables", sheets=((observables_sheet(digest), "Over all conditions"),)),
+        Section(
+            "Observables", sheets=((observables_sheet(result, words=True), "Over all conditions"),)
+        ),
         Section("Conditions", sheets=((_varied_sheet(summary, experiment), "What was varied"),)),
         Section("How the runs ended", sheets=((_endings_sheet(summary), "By reason"),)),
     ]
@@ -82,7 +85,7 @@ def sweep_document(result: SweepResult, record: CaseRecord, arguments: Sequence[
             "order and on however many processes the parts are made.",
         ),
         arguments=tuple(arguments),
-        screen=_narrow(observables_sheet(digest)),
+        screen=_narrow(observables_sheet(result, words=False)),
         tables=tables,
         work={
             "conditions": digest.conditions,
@@ -183,14 +186,18 @@ def answers(result: SweepResult) -> list[Answer]:
     return found
 
 
-def observables_sheet(digest: Digest) -> Sheet:
-    """Every observable with its distribution."""
-    rows = []
+def observables_sheet(result: SweepResult, words: bool) -> Sheet:
+    """Every observable with its distribution; with ``words`` also what it is."""
+    digest, rows = result.digest, []
+    told = naming.in_words(result.campaign.observables, result.experiment)
     for spread in digest.spreads:
         numbers = [spread.least, spread.low, spread.median, spread.high, spread.most]
         shown = [NONE if v is None else wording.number(v, DIGITS) for v in numbers]
-        rows.append([wording.clean(spread.column), _count(spread.reached), *shown])
+        name = [told[spread.column]] if words else []
+        rows.append([*name, wording.clean(spread.column), _count(spread.reached), *shown])
     heading = ["Observable", "reached", "lowest", "16 %", "median", "84 %", "highest"]
+    if words:
+        return Sheet(["Observable", "column", *heading[1:]], rows, words=(0, 1))
     return Sheet(heading, rows, words=(0,))
 
 
@@ -232,20 +239,21 @@ def _grave(digest: Digest) -> list[str]:
 
 def _drawings(result: SweepResult) -> list[Drawing]:
     digest, experiment = result.digest, result.experiment
+    words = naming.in_words(result.campaign.observables, experiment)
     found = []
     with style.drawing():
         for place, entry in enumerate(digest.maps):
-            drawn = style.rendered(figures.mapped(entry, experiment, entry.column))
-            caption = f"{entry.column}: its median in every cell. White: reached by no run."
+            drawn = style.rendered(figures.mapped(entry, experiment, words[entry.column]))
+            caption = f"{words[entry.column]}: its median in every cell. White: reached by no run."
             found.append(Drawing(_numbered("map", place), *drawn, caption))
         if not digest.maps:
             names = list(dict.fromkeys(curve.column for curve in digest.curves))
             for place, name in enumerate(names):
                 own = [curve for curve in digest.curves if curve.column == name]
-                drawn = style.rendered(figures.marginal(own, experiment, name))
+                drawn = style.rendered(figures.marginal(own, experiment, words[name]))
                 caption = (
-                    f"{name} against each number, the others as the design has them: median of the "
-                    "runs that reached it, and the band that holds two in three of those."
+                    f"{words[name]} against each number, the others as the design has them: median "
+                    "of the runs that reached it, and the band that holds two in three of those."
                 )
                 found.append(Drawing(_numbered("marginal", place), *drawn, caption))
     return found
