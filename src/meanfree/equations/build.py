@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
+from functools import lru_cache
 
 import numpy as np
 from numpy.polynomial.chebyshev import chebder
@@ -21,6 +22,7 @@ from meanfree.equations.system import (
 from meanfree.experiment.experiment import Experiment
 from meanfree.experiment.mechanism import GivenEquilibrium, Step
 from meanfree.experiment.temperature import Exchange, Program, has_energy_balance
+from meanfree.gases.thermochemistry import Thermochemistry
 from meanfree.rates.law import StepContext, Template
 
 REVERSE_SUFFIX = " (reverse)"
@@ -32,6 +34,7 @@ def build_system(experiment: Experiment) -> System:
     place = {name: i for i, name in enumerate(gases)}
     ways = one_way_steps([*experiment.steps, *experiment.flow_steps])
     bath, baths, others = _baths(ways, place)
+    series = tuple(gas.thermochemistry for gas in experiment.gases)
     energy = has_energy_balance(experiment.temperature)
     volume = experiment.initial_volume
     mode = experiment.temperature
@@ -52,7 +55,7 @@ def build_system(experiment: Experiment) -> System:
         heat_given=_heats(ways),
         photon=np.array([0.0 if s.photon is None else s.photon.value for _, s, _ in ways]),
         open_steps=np.array([j for j, (_, s, _) in enumerate(ways) if is_open(s)], np.intp),
-        thermal=_thermal(experiment) if energy or _needs_gibbs(experiment) else None,
+        thermal=_thermal(series) if energy or _needs_gibbs(experiment) else None,
         holds=experiment.vessel.holds,
         mode="energy" if energy else "program" if isinstance(mode, Program) else "isothermal",
         initial_volume=volume,
@@ -186,9 +189,12 @@ def _needs_gibbs(experiment: Experiment) -> bool:
     return any(step.reverse == "thermochemistry" for step in experiment.steps)
 
 
-def _thermal(experiment: Experiment) -> Thermal:
-    """Series of every gas; gases without thermochemistry get zeros, which nothing reads."""
-    series = [gas.thermochemistry for gas in experiment.gases]
+@lru_cache(maxsize=64)
+def _thermal(series: tuple[Thermochemistry | None, ...]) -> Thermal:
+    """Series of every gas; gases without thermochemistry get zeros, which nothing reads.
+
+    The Systems of many conditions share one table.
+    """
     domains = [(200.0, 3000.0) if s is None else s.domain for s in series]
 
     def table(name: str) -> Floats:

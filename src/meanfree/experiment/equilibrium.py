@@ -10,6 +10,7 @@ from __future__ import annotations
 import math
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
+from functools import lru_cache
 
 import numpy as np
 from numpy.typing import NDArray
@@ -20,6 +21,7 @@ from meanfree.experiment.experiment import Experiment
 from meanfree.experiment.mechanism import GivenEquilibrium, Step
 from meanfree.experiment.temperature import Adiabatic, Exchange, Program
 from meanfree.gases.gas import Gas
+from meanfree.gases.thermochemistry import Thermochemistry
 
 Floats = NDArray[np.float64]
 
@@ -40,6 +42,12 @@ class Equilibrium:
     pressure: float
 
 
+@lru_cache(maxsize=4096)
+def _gibbs(thermochemistry: Thermochemistry, T: float) -> float:
+    """G at 1 bar [J/mol]; steps share gases, and the points of a map temperatures."""
+    return float(thermochemistry.gibbs(T))
+
+
 def ln_K(step: Step, gas_named: Mapping[str, Gas], T: float) -> float:
     """ln K of a reversible step at T [K], standard state 1 bar.
 
@@ -57,7 +65,7 @@ def ln_K(step: Step, gas_named: Mapping[str, Gas], T: float) -> float:
         thermochemistry = gas_named[name].thermochemistry
         if thermochemistry is None:
             raise ValueError(f"{name} has no thermochemistry")
-        gibbs += number * float(thermochemistry.gibbs(T))
+        gibbs += number * _gibbs(thermochemistry, T)
     return -gibbs / (R * T)
 
 

@@ -15,6 +15,7 @@ from meanfree.integrate.observables import (
     At,
     Found,
     HalfLife,
+    HighestPressure,
     Observable,
     Peak,
     ReactionTime,
@@ -88,7 +89,12 @@ class Runner:
         for gas, fractions in self._fractions().items():
             yield levels_of(self.system.gases.index(gas), fractions, part)
         for o in self._peaks():
-            yield Functional(((self.system.gases.index(o.gas), 1.0),), peak=True)
+            which = (
+                range(self.system.n_gases)
+                if isinstance(o, HighestPressure)
+                else (self.system.gases.index(o.gas),)
+            )
+            yield Functional(tuple((i, 1.0) for i in which), peak=True)
         if self.times:
             size = self.kernel.program.layout.size
             yield from (Functional(((i, 1.0),)) for i in range(size))
@@ -104,8 +110,8 @@ class Runner:
                 found.setdefault(o.gas, set()).update(levels)
         return {gas: sorted(levels, reverse=True) for gas, levels in found.items()}
 
-    def _peaks(self) -> list[Peak]:
-        return [o for o in self.observables if isinstance(o, Peak)]
+    def _peaks(self) -> list[Peak | HighestPressure]:
+        return [o for o in self.observables if isinstance(o, Peak | HighestPressure)]
 
     def _columns(self, part: Variation, task: Task, kept: Kept) -> Iterator[Floats]:
         fractions, peaks = self._fractions(), self._peaks()
@@ -123,6 +129,8 @@ class Runner:
                 place = len(fractions) + peaks.index(o)
                 yield kept.peaks[:, place, 0]
                 yield kept.peaks[:, place, 1] * part.get("V")
+            elif isinstance(o, HighestPressure):
+                yield o.value(part, kept.peaks[:, len(fractions) + peaks.index(o), 1])
             elif isinstance(o, At):
                 yield np.broadcast_to(
                     o.value(self.system, part, self._at(o, part, kept)), part.count

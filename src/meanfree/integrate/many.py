@@ -23,6 +23,7 @@ from meanfree.integrate.observables import (
     QUANTITIES,
     At,
     EndTime,
+    HighestPressure,
     Observable,
     ReactionTime,
 )
@@ -105,7 +106,7 @@ class Runs:
         atol: float | None = None,
         workers: int | None = None,
     ) -> None:
-        _refuse(experiment, observables)
+        _refuse(experiment, observables, bool(sensitivities))
         solver = experiment.plan.solver
         self.observables = tuple(observables)
         self.sensitivities = tuple(sensitivities)
@@ -196,13 +197,19 @@ class Runs:
         return SlopingRunner(block, table, self.observables, self.precision, self.sensitivities)
 
 
-def _refuse(experiment: Experiment, observables: Sequence[Observable]) -> None:
+def _refuse(experiment: Experiment, observables: Sequence[Observable], sloping: bool) -> None:
     gases = set(experiment.gas_named)
     problems = []
     if not experiment.vessel.is_rigid and any(s.volume is not None for s in experiment.samples):
         expected = "samples as fractions: what a volume takes of a piston differs from run to run"
         problems.append(Problem("samples", "a volume drawn from a piston", expected))
     for o in observables:
+        if isinstance(o, HighestPressure):
+            moves = experiment.vessel.is_rigid and experiment.constant_temperature is None
+            if moves or sloping:
+                found = "the highest pressure " + ("as T changes" if moves else "with derivatives")
+                problems.append(Problem("observables", found, "total pressures at times"))
+            continue
         gas = getattr(o, "gas", "")
         needs = not isinstance(o, At) or "{}" in QUANTITIES.get(o.quantity, ("{}",))[0]
         if isinstance(o, At) and o.quantity not in QUANTITIES:

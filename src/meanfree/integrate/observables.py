@@ -96,6 +96,24 @@ class Peak:
 
 
 @dataclass(frozen=True)
+class HighestPressure:
+    """The highest total pressure of a run [Pa], where the temperature stays or the piston holds
+    it."""
+
+    @property
+    def columns(self) -> tuple[str, ...]:
+        """``p_highest_Pa``"""
+        return ("p_highest_Pa",)
+
+    def value(self, variation: Variation, most: Floats) -> Floats:
+        """From the most there is of all gases over V0 [mol/m^3, shape (count,)]."""
+        if variation.system.volume_varies:
+            return np.broadcast_to(variation.get("p"), variation.count)
+        T = variation.get("T")
+        return np.asarray(R * T * most / (1 + variation.get("dead") * T), float)
+
+
+@dataclass(frozen=True)
 class EndTime:
     """Length of the run."""
 

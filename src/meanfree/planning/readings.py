@@ -17,7 +17,13 @@ from meanfree.experiment.experiment import Experiment
 from meanfree.experiment.inputs import with_inputs
 from meanfree.experiment.plan import Solver
 from meanfree.integrate.events import first_crossing
-from meanfree.integrate.observables import At, HalfLife, Observable, ReactionTime
+from meanfree.integrate.observables import (
+    At,
+    HalfLife,
+    HighestPressure,
+    Observable,
+    ReactionTime,
+)
 from meanfree.integrate.run import Run
 from meanfree.integrate.single import integrate
 from meanfree.planning.goal import Goal
@@ -110,11 +116,11 @@ def read_many(
     What the kernel can be asked for is asked of all conditions at once; the rest, and with
     ``singly`` everything, is read off single runs.
     """
-    if until is not None:
-        plan = replace(experiment.plan, until=Sourced(until, "s", dimension="time"), report_at=())
-        experiment = replace(experiment, plan=plan)
+    experiment = _ended(experiment, until)
     found: dict[int, Floats] = {}
-    together = {i: r for i, r in enumerate(readings) if not singly and observables(r, until)}
+    together = {
+        i: r for i, r in enumerate(readings) if not singly and observables(r, experiment, until)
+    }
     if together:
         try:
             answers = _together(experiment, conditions, list(together.values()), until, solver)
@@ -138,14 +144,13 @@ AT = {
 }
 """Readings at times, and what the kernel calls them."""
 
-TOGETHER = 80
-"""Observables asked of one frame; more are asked in several goes."""
-
 MOMENTS = 48
 """Times at which the pressure is looked at for its highest, evenly on a logarithmic scale."""
 
 
-def observables(reading: Reading, until: float | None) -> tuple[Observable, ...]:
+def observables(
+    reading: Reading, experiment: Experiment, until: float | None
+) -> tuple[Observable, ...]:
     """What to ask of the kernel for a reading; () where it cannot be asked."""
     if reading.kind == "reaction time":
         return (ReactionTime(reading.gas, reading.level),)
@@ -153,10 +158,38 @@ def observables(reading: Reading, until: float | None) -> tuple[Observable, ...]
         return (HalfLife(reading.gas),)
     if reading.kind in AT:
         return tuple(At(AT[reading.kind], reading.gas, time) for time in reading.times)
+    steady = experiment.constant_temperature is not None
+    if reading.kind == "highest pressure" and (steady or not experiment.vessel.is_rigid):
+        return (HighestPressure(),)
     if reading.kind == "highest pressure" and until is not None:
         moments = np.geomspace(1e-6, 1.0, MOMENTS) * until
         return tuple(At("total pressure", "", float(time)) for time in moments)
     return ()
+
+
+def can_be_read_together(
+    experiment: Experiment,
+    conditions: Mapping[str, Floats],
+    readings: Sequence[Reading],
+    until: float | None,
+    solver: Solver,
+) -> bool:
+    """True where the kernel can answer all readings of such conditions."""
+    if not all(observables(reading, experiment, until) for reading in readings):
+        return False
+    try:
+        _together(_ended(experiment, until), conditions, readings, until, solver)
+    except InputError:
+        return False
+    return True
+
+
+def _ended(experiment: Experiment, until: float | None) -> Experiment:
+    """The experiment with another end [s]; None leaves it."""
+    if until is None:
+        return experiment
+    plan = replace(experiment.plan, until=Sourced(until, "s", dimension="time"), report_at=())
+    return replace(experiment, plan=plan)
 
 
 def _together(
@@ -167,17 +200,14 @@ def _together(
     solver: Solver | None,
 ) -> list[Floats]:
     """All readings by the kernel."""
-    from meanfree.integrate.many import many
+    from meanfree.integrate.many import Runs
 
-    wanted = [observables(reading, until) for reading in readings]
+    wanted = [observables(reading, experiment, until) for reading in readings]
     asked = list(dict.fromkeys(one for group in wanted for one in group))
     tolerance = experiment.plan.solver if solver is None else solver
-    known: dict[str, Floats] = {}
-    for first in range(0, len(asked), TOGETHER):
-        part = asked[first : first + TOGETHER]
-        with np.errstate(invalid="ignore", divide="ignore"):
-            frame = many(experiment, conditions, part, rtol=tolerance.rtol, atol=tolerance.atol)
-        known |= {name: frame[name].to_numpy(float) for one in part for name in one.columns}
+    runs = Runs(experiment, asked, rtol=tolerance.rtol, atol=tolerance.atol)
+    found, _ = runs.arrays(conditions)
+    known = dict(zip(runs.columns, found, strict=True))
     answers = []
     for reading, group in zip(readings, wanted, strict=True):
         columns = np.stack([known[name] for one in group for name in one.columns], axis=1)

@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass, replace
-from time import perf_counter
 
 import numpy as np
 from numpy.typing import NDArray
@@ -15,7 +14,7 @@ from meanfree.experiment.experiment import Experiment
 from meanfree.experiment.inputs import Input, inputs, with_inputs
 from meanfree.integrate.single import integrate
 from meanfree.planning.own_time import own_time
-from meanfree.planning.readings import Reading, read_many
+from meanfree.planning.readings import Reading, can_be_read_together, read_many
 from meanfree.planning.request import PlanRequest
 from meanfree.planning.sizing import ROUGH, grid
 from meanfree.planning.window_reasons import Axis, Map, margins_of
@@ -132,12 +131,8 @@ def window(
     return replace(found, middle=_middle(found.usable))
 
 
-BUDGET = 25.0
-"""Seconds that the runs of a map may take; a map that would take longer gets fewer points."""
-
-
-SLOW = 0.6
-"""Seconds for two runs after which it is plain that they are not carried out together."""
+SINGLY = 20
+"""Points each way where every run has to be made by itself, at some tenths of a second."""
 
 
 def _affordable(
@@ -145,29 +140,14 @@ def _affordable(
 ) -> tuple[Axis, Axis, bool]:
     """The axes, with fewer values where conditions cannot be carried out together, and whether
     they are carried out singly then.
-
-    What a run adds is measured on a few of them.
     """
-
-    def seconds(columns: int, singly: bool = False) -> float:
-        share = np.linspace(0.1, 0.9, columns)
-        conditions = {
-            a.address: a.values[(share * (len(a.values) - 1)).astype(int)] for a in (across, up)
-        }
-        began = perf_counter()
-        read_many(experiment, conditions, readings, until=until, solver=ROUGH, singly=singly)
-        return perf_counter() - began
-
-    seconds(2)  # not counted: it may compile
-    two = seconds(2)
-    each = two / 2 if two > SLOW else max(seconds(6) - two, 0.0) / 4
-    if each * len(across.values) * len(up.values) <= BUDGET:
+    ends = {a.address: a.values[[0, -1]] for a in (across, up)}
+    if can_be_read_together(experiment, ends, readings, until, ROUGH):
         return across, up, False
-    alone = seconds(3, singly=True) / 3
-    count = max(FEWEST, int((BUDGET / alone) ** 0.5))
-    count = min(count, len(across.values), len(up.values))
     fewer = [
-        Axis(a.address, grid(float(a.values[0]), float(a.values[-1]), count), a.unit)
+        Axis(a.address, grid(float(a.values[0]), float(a.values[-1]), SINGLY), a.unit)
+        if len(a.values) > SINGLY
+        else a
         for a in (across, up)
     ]
     return fewer[0], fewer[1], True
@@ -176,10 +156,23 @@ def _affordable(
 def _until(experiment: Experiment, request: PlanRequest) -> float:
     if request.patience is not None:
         return PATIENT * request.patience.value
+    half = _half_life(experiment)
+    if half is not None:
+        return LONG * half
     own = own_time(integrate(experiment))
     if own is None:
         raise InputError.at("steps", "a case in which nothing moves", "a case that reacts")
     return LONG * own.seconds
+
+
+def _half_life(experiment: Experiment) -> float | None:
+    """The first half-life of the watched gas [s] as the case stands, by the quick integrator."""
+    gas = experiment.watched
+    if gas is None or "temperature.value" not in inputs(experiment):
+        return None
+    here = {"temperature.value": np.array([inputs(experiment)["temperature.value"].value])}
+    (found,) = read_many(experiment, here, [Reading("half-life", gas)], solver=ROUGH)
+    return float(found[0, 0]) if np.isfinite(found[0, 0]) else None
 
 
 def axis(known: Input, low: float, high: float, count: int = POINTS) -> Axis:
