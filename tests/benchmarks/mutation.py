@@ -92,7 +92,7 @@ def _copy_sources(copy: Path) -> None:
 def _room(room: str, copy: Path, options: Any) -> int:
     """Try the wrongs of one room and print what came of them."""
     os.chdir(copy)
-    os.environ["XDG_CACHE_HOME"] = str(copy / ".cache")
+    os.environ["MEANFREE_CACHE"] = str(copy / ".cache")
     sys.path.insert(0, str(copy / "src"))
     import_what_is_slow(without_compiler=room == "kernel")
     tests_hash = _hash(copy / "src" / "meanfree" / room, copy / "tests" / room)

@@ -16,6 +16,7 @@ import inspect
 import json
 import os
 import resource
+import shutil
 import signal
 import sys
 import time
@@ -36,6 +37,8 @@ SLOW_TO_IMPORT = (
     "pandas", "pydantic", "pint", "chemicals", "numba", "hypothesis", "matplotlib.figure",
 )  # fmt: skip
 MEMORY = 6 * 2**30
+MAKE_MACHINE_CODE = ("meanfree.kernel.vector", "meanfree.kernel.interpreter")
+"""Modules whose work is kept on disk: a wrong in them shows only where nothing is kept."""
 
 Trial = Callable[[], int]
 
@@ -89,6 +92,31 @@ def import_what_is_slow(without_compiler: bool) -> None:
     phases = (Phase.explicit, Phase.generate)
     settings.register_profile("trial", derandomize=True, database=None, phases=phases)
     settings.load_profile("trial")
+
+
+def stand_in_for_intrinsics() -> None:
+    """Without the compiler: what the kernel says in machine terms, said in Python.
+
+    The interpreter of phases stays machine code; the driver around it is Python then.
+    """
+    if os.environ.get("NUMBA_DISABLE_JIT") != "1":
+        return
+    import ctypes
+
+    import numpy as np
+    from meanfree.kernel import vector
+
+    def call_address(address: int, base: int, code: int) -> None:
+        ctypes.CFUNCTYPE(None, ctypes.c_int64, ctypes.c_int64)(int(address))(int(base), int(code))
+
+    def positive_lanes(base: int, slot: int, lanes: int) -> int:
+        row = (ctypes.c_double * lanes).from_address(int(base) + 8 * int(slot) * lanes)
+        return sum(1 << lane for lane, value in enumerate(row) if value > 0)
+
+    np.seterr(all="ignore")  # as machine code does
+    stand_ins = {"call_address": call_address, "positive_lanes": positive_lanes}
+    for name, function in {**stand_ins, "unowned": lambda array: array}.items():
+        setattr(vector, name, function)
 
 
 class _WrongLoader(SourceFileLoader):
@@ -171,6 +199,7 @@ def map_tests(room: str, result: Path) -> int:
     coverage = Coverage(data_file=None, source_pkgs=[f"meanfree.{room}"], config_file=False)
     mapper = _Mapper(coverage)
     coverage.start()
+    stand_in_for_intrinsics()
     _pytest(places_of(room), mapper)
     coverage.stop()
     for test in mapper.failed:
@@ -194,6 +223,10 @@ def map_tests(room: str, result: Path) -> int:
 def try_anew(tests: Sequence[str], wrong: WrongModule) -> int:
     """Run tests until one fails (in a fork); pytest's exit status."""
     sys.meta_path.insert(0, wrong)
+    if wrong.name in MAKE_MACHINE_CODE:
+        shutil.rmtree(".fresh", ignore_errors=True)
+        os.environ["MEANFREE_CACHE"] = str(Path(".fresh").resolve())
+    stand_in_for_intrinsics()
     files: dict[str, None] = {}
     for test in tests:
         file = test.split("::")[0]
@@ -260,6 +293,7 @@ def _outermost(code: CodeType) -> Iterator[CodeType]:
 
 def in_session(room: str, instead: Callable[[Collected], None]) -> None:
     """Collect the fast tests of a room and hand them over."""
+    stand_in_for_intrinsics()
     _pytest(["-s", *places_of(room)], _Session(instead))
 
 
