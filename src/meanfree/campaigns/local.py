@@ -10,8 +10,9 @@ import multiprocessing
 import os
 import signal
 from collections.abc import Iterator, Sequence
-from contextlib import suppress
+from contextlib import contextmanager, suppress
 from dataclasses import dataclass
+from multiprocessing import resource_tracker
 from multiprocessing.connection import Connection, wait
 from multiprocessing.context import SpawnProcess
 from typing import Any
@@ -99,7 +100,8 @@ class _Worker:
         self.process: SpawnProcess = context.Process(
             target=_work, args=(theirs,), daemon=True, name="meanfree sweep"
         )
-        self.process.start()
+        with _ctrl_c_later():
+            self.process.start()
         # Closed here, so that this end sees when the worker is gone.
         theirs.close()
         self.at: int | None = None
@@ -124,6 +126,24 @@ class _Worker:
             self.process.terminate()
         self.process.join()
         self.process.close()
+
+
+@contextmanager
+def _ctrl_c_later() -> Iterator[None]:
+    """Ctrl-C waits for the end of the block; what is begun there never sees it.
+
+    Else a process that is still importing would answer with a traceback of its own.
+    """
+    if not hasattr(signal, "pthread_sigmask"):
+        yield
+        return
+    # It is started with the first worker, and lets Ctrl-C through again when that is done.
+    resource_tracker.ensure_running()
+    before = signal.pthread_sigmask(signal.SIG_BLOCK, {signal.SIGINT})
+    try:
+        yield
+    finally:
+        signal.pthread_sigmask(signal.SIG_SETMASK, before)
 
 
 @dataclass(frozen=True)

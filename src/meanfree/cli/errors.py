@@ -66,17 +66,15 @@ def _reader_gone() -> int:
     return 0
 
 
-def _can_print() -> bool:
-    try:
-        sys.stdout.flush()  # what was refused before still waits, and is refused again
-    except OSError:
-        return False
-    return True
+def _while_printing(error: OSError) -> bool:
+    # The call that prints, or the last flush here; what is refused of files comes from deeper.
+    frames = traceback.extract_tb(error.__traceback__)
+    return bool(frames) and frames[-1].name in ("echo", report_errors.__name__)
 
 
 def _tell_place(error: OSError, as_json: bool) -> int:
     """What the system refuses that no room has put into words."""
-    if error.filename is None and not _can_print():
+    if _while_printing(error):
         # What waits for that stream would be refused once more at the end.
         silence(sys.stdout)
         text = f"Not all could be printed: {error.strerror}. What was left in files is whole."

@@ -17,6 +17,7 @@ PLAIN = {
     "→": "->", "⇌": "<=>", "≥": ">=", "≤": "<=", "−": "-", "–": "-", "—": "-", "…": "...",
     "×": "x", "·": ".", "±": "+/-", "Å": "angstrom", "°": "deg ", "µ": "u", "μ": "u",
     "’": "'", "‘": "'", "“": '"', "”": '"', "∞": "infinity", "√": "sqrt", "÷": "/",
+    "∑": "sum", "•": "*", "⊖": "o",
 }  # fmt: skip
 """What stands for a letter where the terminal has no such letter."""
 
@@ -80,9 +81,14 @@ def _fill_gaps() -> None:
         sys.stderr = open(2, "w", encoding="utf-8", closefd=False)  # noqa: SIM115
 
 
-def _take_every_letter(as_json: bool) -> None:
+def prepare_letters() -> None:
+    """Make known what stands for letters that an encoding lacks."""
     codecs.register_error(_FOR_READERS, _plainly)
     codecs.register_error(_FOR_PROGRAMS, _escaped)
+
+
+def _take_every_letter(as_json: bool) -> None:
+    prepare_letters()
     for stream, handler in (
         (sys.stdout, _FOR_PROGRAMS if as_json else _FOR_READERS),
         (sys.stderr, _FOR_READERS),
@@ -105,11 +111,23 @@ def _plainly(error: UnicodeError) -> tuple[str | bytes, int]:
     if plain is None:
         parts = unicodedata.normalize("NFKD", letter)
         plain = "".join(PLAIN.get(c, c) for c in parts)
-        plain = plain.encode("ascii", "ignore").decode() or "?"
+        plain = plain.encode("ascii", "ignore").decode() or _greek(letter)
         before = error.object[error.start - 1 : error.start]
         if _is_raised(letter) and not _is_raised(before):
             plain = f"^{plain}"
     return plain, error.start + 1
+
+
+def _greek(letter: str) -> str:
+    """The name of a Greek letter, a question mark for any other.
+
+    >>> _greek("Δ"), _greek("σ"), _greek("龍")
+    ('Delta', 'sigma', '?')
+    """
+    kind, _, name = unicodedata.name(letter, "").rpartition(" LETTER ")
+    if not kind.startswith("GREEK") or not name.isalpha():
+        return "?"
+    return name.capitalize() if kind.endswith("CAPITAL") else name.lower()
 
 
 def _is_raised(letter: str) -> bool:
