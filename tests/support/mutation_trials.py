@@ -104,6 +104,7 @@ def stand_in_for_intrinsics() -> None:
     import ctypes
 
     import numpy as np
+
     from meanfree.kernel import vector
 
     def call_address(address: int, base: int, code: int) -> None:
