@@ -67,7 +67,7 @@ def main() -> None:
     parser.add_argument("--sample", type=int, default=150, help="wrongs a room; 0: all")
     parser.add_argument("--seed", type=int, default=1)
     parser.add_argument("--seconds", type=float, default=15.0, help="tests against one wrong")
-    parser.add_argument("--only", default="", help="files whose path holds this text")
+    parser.add_argument("--only", default="", help="modules, such as checks,events; default: all")
     parser.add_argument("--work", type=Path, default=Path(tempfile.gettempdir()) / "mutation")
     options = parser.parse_args()
     options.work = options.work.resolve()
@@ -107,7 +107,8 @@ def _room(room: str, copy: Path, options: Any) -> int:
     room_map = Map(**json.loads(known.read_text()))
     places = _places(copy, room)
     excused = _excused()
-    chosen = [place for place in places if options.only in place.file]
+    wanted = set(filter(None, options.only.split(",")))
+    chosen = [place for place in places if not wanted or Path(place.file).stem in wanted]
     if 0 < options.sample < len(chosen):
         chosen = random.Random(options.seed).sample(chosen, options.sample)
     trials = Trials(copy, room_map, f"{tests_hash}-{options.seconds:g}", options.seconds)

@@ -145,6 +145,7 @@ def test_who_meets_forwards_and_backwards():
         return tuple(gas.name for gas in encounter(case, step(reaction, 1.0), back))
 
     assert names("A + B -> 2 C", False) == ("A", "B")
+    assert [gas.name for gas in encounter(case, case.steps[0])] == ["A", "B"]
     assert names("A + B -> 2 C", True) == ("C", "C")
     assert names("A -> B + C", False) == ()
     assert names("A -> B + C", True) == ("B", "C")
