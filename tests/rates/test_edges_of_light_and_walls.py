@@ -15,7 +15,9 @@ from laboratory import si
 
 from meanfree.gases.gas import Gas
 from meanfree.rates.capture import Capture
+from meanfree.rates.falloff import Falloff
 from meanfree.rates.law import Interior, Law, Numbers, StepContext
+from meanfree.rates.limits import PowerLaw
 from meanfree.rates.long_range import FORMULAS
 from meanfree.rates.photolysis import Photolysis
 from meanfree.rates.wall import Wall
@@ -168,3 +170,14 @@ def test_the_fit_of_the_dipole_is_written_over_the_namespace_it_is_given() -> No
     formula = FORMULAS["ion and permanent dipole"]
     formula.coefficient(Asked(), 300.0, 0.0, 0.0, (1.0, 1e-26, 1e-57, 1e-20))
     assert asked == [2.0]
+
+
+def test_a_rate_constant_asked_without_pressure_or_bath_is_that_in_an_empty_vessel() -> None:
+    """No M: a falloff step does not run. No pressure: diffusion is no hindrance, h S/V is left."""
+    falloff = Falloff(PowerLaw(si(2.0)), PowerLaw(si(3.0)))
+    assert falloff.rate_constant(alone(H2, has_bath=True), 300.0) == 0.0
+    where = alone(H2, surroundings=Flask(), pressure=100.0, temperatures=(300.0, 300.0))
+    wall = Wall(si(0.1), "exact", si(1e-2), si(300.0), si(100.0))
+    v = math.sqrt(8 * R * 300.0 / (math.pi * 2.016e-3))
+    free = 0.1 * v / (2 * (2 - 0.1)) * 3 / 0.03
+    assert wall.rate_constant(where, 300.0) == pytest.approx(free, rel=1e-9)
