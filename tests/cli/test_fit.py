@@ -40,7 +40,7 @@ def failures(capsys, arguments):
 def test_what_fit_says_and_leaves(case, capsys):
     assert run(["fit", case()]) == 0
     said = " ".join(capsys.readouterr().out.split())
-    assert "steps.d.k 0.8800 ± 0.0037 L/mol/min 95 %: 0.8720 to 0.8880; for loss of A" in said
+    assert "k of d 0.8800 ± 0.0037 L/mol/min 95 %: 0.8720 to 0.8880; for loss of A" in said
     assert "0.4400 ± 0.0018 L/mol/min per event" in said
     folder = Path("outputs/case/fit")
     names = {path.name for path in folder.iterdir()}

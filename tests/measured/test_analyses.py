@@ -193,6 +193,29 @@ def test_initial_rates(tmp_path):
     assert found.order.low < 2 < found.order.high
     # loss counts: -dc/dt = 1e-3 c^2; a parabola leaves the third order out, 1 % here
     assert math.exp(found.ln_k.value) == pytest.approx(1e-3, rel=0.03)
+    assert len(found.words) == 1
+
+
+def test_initial_rates_from_too_long_a_stretch(tmp_path):
+    """Second order to three quarters of conversion is no parabola: the order is off and told so."""
+    runs = []
+    for n, c0 in enumerate((1.0, 2.0, 4.0)):
+        (tmp_path / str(n)).mkdir()
+        law = 'law = "fixed"\nk = "1e-3 m^3/mol/s"'
+        case = loaded(tmp_path / str(n), case_text(law=law, fill=f"{c0} mol/m^3", T=300), {})
+        t = np.linspace(0, 750, 21)
+        c = c0 / (1 + 1e-3 * c0 * t) + random(n).normal(0, 1e-3, len(t))
+        runs.append(made_up(case, t, c, signal=A, sd=1e-3, name=f"fill {n}", **MOL))
+    found = initial_rates(runs, "A", until=750.0)
+    assert found.order.value < 1.8
+    assert [one.off > 0 for one in found.rates] == [True, True, True]
+    # a cubic takes back the larger part of what the parabola lacks
+    one = found.rates[2]
+    assert one.rate < one.rate * (1 + one.off) < 1e-3 * 16
+    assert found.words[1].startswith(
+        "Up to there the readings of fill 0, fill 1, fill 2 bend more than a parabola can: "
+        "initial rates are off by as much as "
+    )
 
 
 def test_arrhenius_beside_curve_fit():

@@ -19,13 +19,17 @@ from meanfree.measured.straight_lines import Interval, Line, straight_line, wide
 LEAST = 4
 """Readings that a parabola with an error needs."""
 
+SURE = 3.0
+"""A cubic term of so many standard errors says that a parabola does not do."""
+
 
 @dataclass(frozen=True)
 class InitialRate:
     """How fast a gas is lost at the start of one run.
 
     ``rate`` [mol/m^3/s] with its standard error, at ``concentration`` [mol/m^3]; from ``count``
-    readings.
+    readings. ``off`` [1] is by what share of itself the rate of a cubic is above it, 0 where the
+    readings do not ask for a cubic.
     """
 
     run: str
@@ -33,6 +37,7 @@ class InitialRate:
     rate: float
     error: float
     count: int
+    off: float = 0.0
 
 
 @dataclass(frozen=True)
@@ -75,6 +80,15 @@ def initial_rates(
         f"Initial rates of loss of {gas} rise with order {order.value:.2f} in it "
         f"(95 %: {order.low:.2f} to {order.high:.2f}), around {math.exp(middle):.3g} mol/m³."
     ]
+    bent = [one for one in found if one.off != 0]
+    if bent:
+        names = ", ".join(one.run for one in bent)
+        most = max(abs(one.off) for one in bent)
+        words.append(
+            f"Up to there the readings of {names} bend more than a parabola can: initial rates are "
+            f"off by as much as {most:.2g} of themselves, and so is the order. Let fewer readings "
+            "count, by an earlier until."
+        )
     return InitialRates(gas, tuple(found), line, order, ln_k, tuple(words))
 
 
@@ -94,17 +108,30 @@ def initial_rate(run: MeasuredRun, gas: str, until: float | None) -> InitialRate
         found = f"{count} readings of {run.name} up to {last:g} s"
         raise InputError.at("fit.analyses", found, f"at least {LEAST}")
     t, y = readings.times[:count], readings.values[:count]
-    width = float(t[-1]) or 1.0
-    A = np.stack([np.ones(count), t / width, (t / width) ** 2], axis=1)
     w = np.ones(count) if readings.sd is None else 1 / readings.sd[:count]
+    known = readings.sd is not None
+    coefficients, cov = _polynomial(t, y, w, 2, known)
+    slope, error = float(coefficients[1]), math.sqrt(float(cov[1, 1]))
+    off = 0.0
+    if count > LEAST + 1:
+        cubic, its = _polynomial(t, y, w, 3, known)
+        if abs(float(cubic[3])) > SURE * math.sqrt(float(its[3, 3])) and slope != 0:
+            off = float(cubic[1]) / slope - 1
+    factor = _loss_per_signal(run, gas, T, start)
+    return InitialRate(run.name, start, slope * factor, abs(error * factor), count, off)
+
+
+def _polynomial(t: Floats, y: Floats, w: Floats, degree: int, known: bool) -> tuple[Floats, Floats]:
+    """Coefficients, the lowest power first, and their covariance; weights are 1/sd where known."""
+    width = float(t[-1]) or 1.0
+    A = (t[:, None] / width) ** np.arange(degree + 1)
     coefficients, *_ = np.linalg.lstsq(A * w[:, None], y * w, rcond=None)
     cov = np.linalg.inv((A * w[:, None]).T @ (A * w[:, None]))
-    if readings.sd is None:
+    if not known:
         r = y - A @ coefficients
-        cov = cov * max(float(r @ r) / (count - 3), 1e-300)
-    slope, error = float(coefficients[1]) / width, math.sqrt(float(cov[1, 1])) / width
-    factor = _loss_per_signal(run, gas, T, start)
-    return InitialRate(run.name, start, slope * factor, abs(error * factor), count)
+        cov = cov * max(float(r @ r) / (len(t) - degree - 1), 1e-300)
+    scale = width ** -np.arange(degree + 1.0)
+    return np.asarray(coefficients * scale), np.asarray(cov * np.outer(scale, scale))
 
 
 def _loss_per_signal(run: MeasuredRun, gas: str, T: float, start: float) -> float:

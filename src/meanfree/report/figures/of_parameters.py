@@ -121,10 +121,27 @@ def _shades() -> Any:
     return LinearSegmentedColormap.from_list("signs", ["#cc7700", "#ffffff", "#002299"])
 
 
+def _coefficient(value: float) -> str:
+    """Two decimals, and more for what is nearly 1: all but 1 says that two go together.
+
+    >>> _coefficient(0.314), _coefficient(-0.99863), _coefficient(1.0), _coefficient(float("nan"))
+    ('0.31', '−0.9986', '1', '–')
+    """
+    if not np.isfinite(value):
+        return "–"
+    if abs(value) > 1 - 1e-12:
+        return "1" if value > 0 else "−1"
+    digits = 2
+    while digits < 6 and abs(round(value, digits)) == 1:
+        digits += 1
+    digits += digits > 2
+    return f"{value:.{digits}f}".replace("-", "−")
+
+
 def _numbers(ax: Axes, matrix: np.ndarray) -> None:
     for i, row in enumerate(matrix):
         for j, value in enumerate(row):
-            text = "–" if not np.isfinite(value) else f"{value:.2f}".replace("-", "−")
+            text = _coefficient(float(value))
             dark = np.isfinite(value) and value > 0.6
             color = "white" if dark else style.INK
             ax.text(j, i, text, ha="center", va="center", fontsize=8, color=color)

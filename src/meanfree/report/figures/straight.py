@@ -62,6 +62,8 @@ def line_figure(
     )
     bottom, top = ax.get_ylim()
     style.set_linear(ax, min(0.0, bottom) if from_zero and low >= 0 else bottom, top / 1.06)
+    if top <= 0:  # logarithms, say: there is nothing to see up to zero
+        ax.set_ylim(bottom, top)
     ax.set_xlim(start / x_scale, (high + room) / x_scale)
     style.label(ax, x=x_label, y=y_label)
     return drawn

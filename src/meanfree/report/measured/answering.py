@@ -16,6 +16,8 @@ from meanfree.report.measured.summarising import (
     order_of_step,
     rate_constants,
 )
+from meanfree.report.planning.naming import in_words as address_words
+from meanfree.report.planning.naming import with_formulas
 from meanfree.report.rows import Answer
 
 SHOWN = 12
@@ -29,7 +31,8 @@ def answers(found: Findings, ranking: Sequence[Candidate]) -> tuple[Answer, ...]
         said += [] if found.series else _collisions(found.fit)
         said.append(_quality(found.fit))
     if found.order is not None:
-        said.append(Answer("Which order", in_words(found.order)))
+        experiment = found.plan.request.runs[0].experiment
+        said.append(Answer("Which order", with_formulas(in_words(found.order), experiment)))
     if ranking:
         said.append(Answer("Which description", wording.clean(evidence(ranking))))
     said += _series(found)
@@ -68,7 +71,8 @@ def _parameters(fit: Fit) -> list[Answer]:
                 what = "per event" if other.counts == "events" else f"for {other.counts}"
                 value = numbers.with_error(other.value, other.stderr or float("nan"), other.unit)
                 note += f"; {value} {wording.clean(what)}"
-        said.append(Answer(wording.clean(name), numbers.estimate(one), note))
+        words = address_words(name, fit.request.runs[0].experiment)
+        said.append(Answer(words, numbers.estimate(one), note))
     if len(fit.estimates) > SHOWN:
         said.append(Answer("More", f"{len(fit.estimates) - SHOWN} more in the table"))
     return said

@@ -10,6 +10,7 @@ from meanfree.measured.evidence import Candidate, evidence
 from meanfree.measured.fits import Fit
 from meanfree.measured.orders import in_words
 from meanfree.report import wording
+from meanfree.report.document import Document, Drawing, Section
 from meanfree.report.figures import fitted, of_parameters, straight, style
 from meanfree.report.figures.fitted import rate_unit
 from meanfree.report.measured import sheets
@@ -17,7 +18,7 @@ from meanfree.report.measured.answering import SHOWN, answers
 from meanfree.report.measured.plots import plots
 from meanfree.report.measured.summarising import collisions, order_of_step, summarise
 from meanfree.report.measured.tables import tables
-from meanfree.report.planning.document import Document, Drawing, Section
+from meanfree.report.planning.naming import with_formulas
 from meanfree.report.record import CaseRecord
 from meanfree.report.rows import Sheet
 
@@ -76,6 +77,8 @@ def _grave(found: Findings) -> list[str]:
     said += found.notes
     for one in found.series:
         said += [text for text in one.words if not text.startswith("The points show no")]
+    for initial in found.initial:
+        said += initial.words[1:]
     return said
 
 
@@ -141,7 +144,12 @@ def _order(found: Findings, ranking: Sequence[Candidate]) -> list[Section]:
     sections = []
     test = found.order
     if test is not None:
-        texts = tuple(wording.clean(text) for text in (in_words(test), test.words) if text)
+        experiment = found.plan.request.runs[0].experiment
+        texts = tuple(
+            with_formulas(wording.clean(text[:1].upper() + text[1:]), experiment)
+            for text in (in_words(test), test.words)
+            if text
+        )
         sheet = sheets.ranking(test.candidates)
         caption = f"Orders of {wording.clean(test.step)} in {wording.clean(test.gas)} by AICc"
         sections.append(Section("Which order", texts, sheets=((sheet, caption),)))

@@ -126,14 +126,19 @@ def lines(found: Findings) -> Sheet | None:
     return Sheet(heading, rows, words=(0, 1, 2))
 
 
+def _tenths(value: float) -> str:
+    """One decimal, in groups of three digits."""
+    return f"{value:,.1f}".replace(",", " ").replace("-", "−")
+
+
 def ranking(candidates: Sequence[Candidate]) -> Sheet:
     """Descriptions of the same readings by AICc."""
     rows = [
         [
             wording.clean(one.name),
             f"{len(one.fit.parameters)}",
-            wording.number(one.aicc, 5),
-            f"{one.difference:.2f}",
+            _tenths(one.aicc),
+            _tenths(one.difference),
             wording.percent(one.weight, 3),
         ]
         for one in candidates
