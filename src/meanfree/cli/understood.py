@@ -17,6 +17,9 @@ from meanfree.report.flow_words import flow_words, sample_words
 from meanfree.report.law_words import choices, conditions
 from meanfree.sourced import Sourced
 
+MOST_POINTS = 20
+"""Points of a temperature program that are shown."""
+
 
 class _Record(BaseModel):
     model_config = ConfigDict(frozen=True, extra="forbid", ser_json_inf_nan="constants")
@@ -152,10 +155,10 @@ def _vessel(experiment: Experiment) -> str:
 def _temperature(experiment: Experiment) -> str:
     mode = experiment.temperature
     if isinstance(mode, Program):
-        points = ", ".join(
-            f"{_given(T)} at {_given(t) if t.value else '0'}" for t, T in mode.points
-        )
-        return f"program: {points}; linear between, constant after"
+        points = [f"{_given(T)} at {_given(t) if t.value else '0'}" for t, T in mode.points]
+        if len(points) > MOST_POINTS:
+            points[MOST_POINTS - 1 : -1] = [f"… {len(points) - MOST_POINTS} more …"]
+        return f"program: {', '.join(points)}; linear between, constant after"
     if isinstance(mode, Exchange):
         text = (
             f"exchange: {_given(mode.value)} at time zero, surroundings "

@@ -17,6 +17,7 @@ from meanfree.sourced import Sourced
 from meanfree.units.reading import described
 
 _OWN = ("diameter", "polarisability", "ionisation_energy", "dipole")
+MOST_UNKNOWN = 40
 _NO_LABEL_KEYS = ("formula", "cas", *_OWN, "enthalpy", "entropy")
 
 
@@ -27,7 +28,7 @@ def read_labels(raw: Any, findings: Findings) -> tuple[str, ...]:
     if not isinstance(raw, list):
         findings.wrong("labels", described(raw), 'a list of names, such as ["A", "lump1"]')
         return ()
-    labels: list[str] = []
+    labels: dict[str, None] = {}
     for place, name in enumerate(raw):
         problem = gas_name_problem(name)
         if problem is not None:
@@ -35,7 +36,7 @@ def read_labels(raw: Any, findings: Findings) -> tuple[str, ...]:
         elif name in labels:
             findings.wrong(f"labels.{place}", f'"{name}" twice', "each label once")
         else:
-            labels.append(name)
+            labels[name] = None
     return tuple(labels)
 
 
@@ -66,13 +67,20 @@ def find_gases(
 ) -> dict[str, Gas | None]:
     """Every gas of the fill and the steps by name; None for one that is not known."""
     gases: dict[str, Gas | None] = {}
+    declared, unknown = set(labels), 0
     for name in names:
         table = tables.get(name)
-        if name in labels:
+        if name in declared:
             gases[name] = Gas.label(name)
             _refuse_label_values(name, table, findings)
+        elif unknown >= MOST_UNKNOWN:
+            gases[name] = None
         else:
             gases[name] = _known(name, table, findings)
+            unknown += gases[name] is None
+            if unknown == MOST_UNKNOWN:  # each is sought for in a library of 70 000 compounds
+                expected = "labels = […] for names that are no real gases"
+                findings.wrong("gases", f"{unknown} unknown gases, and more unread", expected)
     _refuse_two_names(gases, findings)
     return gases
 
@@ -126,9 +134,9 @@ def refuse_unused(
     findings: Findings,
 ) -> None:
     """A gas in no step and no fill is a slip of the pen."""
-    names = list(used)
+    names, declared = dict.fromkeys(used), set(labels)
     for name in tables:
-        if name not in names and name not in labels:
+        if name not in names and name not in declared:
             expected = f"a gas of the fill or a step{did_you_mean(name, names)}"
             findings.wrong(f"gases.{name}", "a gas in no step and no fill", expected)
     for name in labels:

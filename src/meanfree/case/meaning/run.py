@@ -11,6 +11,8 @@ from meanfree.experiment.plan import RunPlan, Solver
 from meanfree.sourced import Sourced
 from meanfree.units import QuantityError, read
 
+MOST_TIMES = 1000
+
 
 def read_run(raw: Any, findings: Findings) -> RunPlan | None:
     """How the run is carried out, None where something is wrong with it."""
@@ -21,6 +23,10 @@ def read_run(raw: Any, findings: Findings) -> RunPlan | None:
     if table is None:
         return None
     until = _until(table.until, findings)
+    if len(table.report_at or ()) > MOST_TIMES:
+        expected = f"at most {MOST_TIMES}; profiles.csv has 200 times of its own"
+        findings.wrong("run.report_at", f"{len(table.report_at)} times", expected)
+        return None
     for place, time in enumerate(table.report_at or ()):
         if time.value <= 0:
             findings.wrong(f"run.report_at.{place}", "a time of 0", "times above 0 s")

@@ -23,6 +23,8 @@ from meanfree.experiment.temperature import (
 )
 from meanfree.units.reading import described
 
+MOST_POINTS = 10_000
+
 
 def read_temperature(raw: Any, findings: Findings) -> Temperature | None:
     """The temperature of the gas, None where something is wrong with it."""
@@ -58,6 +60,10 @@ def _joined(table: Table, findings: Findings) -> Temperature | None:
 
 def _program(table: ProgramTable, findings: Findings) -> Program | None:
     times = [time.value for time, _ in table.points]
+    if len(times) > MOST_POINTS:
+        expected = f"at most {MOST_POINTS}: the integration restarts at every one"
+        findings.wrong("temperature.points", f"{len(times)} points", expected)
+        return None
     before = len(findings.problems)
     if times[0] != 0:
         findings.wrong(
