@@ -7,12 +7,13 @@ from typing import TYPE_CHECKING, Annotated
 import typer
 
 from meanfree.cli._common import AsJson, Out, Quiet, Replace, Settings
-from meanfree.cli.planning import Cases, carry_out
+from meanfree.cli.documents import carry_out
+from meanfree.cli.each_case import Cases
 
 if TYPE_CHECKING:
     from meanfree.case import LoadedCase
     from meanfree.progress import Progress
-    from meanfree.report.planning.document import Document
+    from meanfree.report.document import Document
     from meanfree.report.record import CaseRecord
 
 Of = Annotated[

@@ -8,14 +8,14 @@ from typing import TYPE_CHECKING, Annotated
 import typer
 
 from meanfree.cli._common import AsJson, CasePath, Out, Quiet, Replace, Settings
-from meanfree.cli.planning import carry_out
+from meanfree.cli.documents import carry_out
 
 if TYPE_CHECKING:
     from meanfree.case import LoadedCase
     from meanfree.measured.evidence import Candidate
     from meanfree.measured.fits import Fit
     from meanfree.progress import Progress
-    from meanfree.report.planning.document import Document
+    from meanfree.report.document import Document
     from meanfree.report.record import CaseRecord
 
 Against = Annotated[

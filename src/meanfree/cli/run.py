@@ -7,22 +7,11 @@ from typing import TYPE_CHECKING, Annotated
 
 import typer
 
-from meanfree.cli._common import (
-    AsJson,
-    Out,
-    Quiet,
-    Replace,
-    Settings,
-    open_case,
-    record_of,
-    results_folder,
-)
-from meanfree.errors import ComputationError, InputError, Problem
+from meanfree.cli._common import AsJson, Out, Quiet, Replace, Settings, record_of
+from meanfree.cli.each_case import Cases, for_each_case
 
 if TYPE_CHECKING:
     from meanfree.case import LoadedCase
-
-Cases = Annotated[list[Path], typer.Argument(metavar="CASE...", help="The case files.")]
 
 
 def run(
@@ -43,72 +32,15 @@ def run(
 
     With several cases, --out names the folder that holds a folder for each.
     """
-    from meanfree.files import refuse_if_taken
-    from meanfree.report.folder import owner_name
 
-    loaded = _open_all(cases, settings)
-    targets = _targets(loaded, out)
-    for case, folder in zip(loaded, targets, strict=True):
-        refuse_if_taken(folder, owner=owner_name(case.path, folder), replace=replace)
-    failures: list[str] = []
-    texts: list[str] = []
-    for place, (case, folder) in enumerate(zip(loaded, targets, strict=True)):
-        try:
-            text = _one(
-                case,
-                folder,
-                replace=replace,
-                as_json=as_json,
-                quiet=quiet,
-                check_twice=check_twice,
-            )
-        except ComputationError as error:
-            failures.append(f"{case.path}: {error}" if len(loaded) > 1 else str(error))
-            continue
-        if as_json:
-            texts.append(text)
-        elif quiet:
-            typer.echo(text)
-        else:
-            typer.echo(("\n" if place else "") + text)
-    if as_json and texts:
-        typer.echo(texts[0] if len(loaded) == 1 else f"[{', '.join(texts)}]")
-    if failures:
-        raise ComputationError("\n".join(failures))
-
-
-def _open_all(cases: list[Path], settings: list[str] | None) -> list[LoadedCase]:
-    """Every case, or every problem of every case in one go."""
-    loaded: list[LoadedCase] = []
-    problems: list[Problem] = []
-    for path in cases:
-        try:
-            loaded.append(open_case(path, settings))
-        except InputError as error:
-            problems += error.problems
-    if problems:
-        raise InputError(problems)
-    return loaded
-
-
-def _targets(cases: list[LoadedCase], out: Path | None) -> list[Path]:
-    """A folder for each case. Raises `InputError` where two cases would share one."""
-    folders = [
-        results_folder(case, "run", out if out is None or len(cases) == 1 else out / case.name)
-        for case in cases
-    ]
-    problems = [
-        Problem(
-            "CASE",
-            f"{case.path}, whose results would also go to {folder}",
-            "cases whose files have different names",
+    def one(case: LoadedCase, folder: Path) -> str:
+        return _one(
+            case, folder, replace=replace, as_json=as_json, quiet=quiet, check_twice=check_twice
         )
-        for place, (case, folder) in enumerate(zip(cases, folders, strict=True))
-        if folder in folders[:place]
-    ]
-    if problems:
-        raise InputError(problems)
-    return folders
+
+    for_each_case(
+        "run", cases, settings, one, out=out, replace=replace, as_json=as_json, quiet=quiet
+    )
 
 
 def _one(

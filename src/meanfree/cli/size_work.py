@@ -24,7 +24,7 @@ if TYPE_CHECKING:
     from meanfree.case import LoadedCase
     from meanfree.experiment.experiment import Experiment
     from meanfree.progress import Progress
-    from meanfree.report.planning.document import Document
+    from meanfree.report.document import Document
     from meanfree.report.record import CaseRecord
 
 DEFAULT_LEVEL = 0.5

@@ -19,7 +19,7 @@ from meanfree.campaigns.store import Store, opened
 from meanfree.campaigns.sweeping import Engine, fill
 from meanfree.case.sweeps import campaign_of
 from meanfree.cli._common import open_case, record_of, results_folder
-from meanfree.cli.planning import told
+from meanfree.cli.documents import told
 from meanfree.cli.sweep_progress import bar
 from meanfree.errors import InputError, Problem
 from meanfree.files import refuse_if_taken
@@ -28,7 +28,7 @@ from meanfree.report.sweep.document import SweepResult, sweep_document, write_sw
 
 if TYPE_CHECKING:
     from meanfree.case import LoadedCase
-    from meanfree.report.planning.document import Document
+    from meanfree.report.document import Document
 
 FEW = 8192
 """Conditions below which further processes take longer to start than they save. Measured."""

@@ -7,7 +7,8 @@ from typing import TYPE_CHECKING, Annotated
 import typer
 
 from meanfree.cli._common import AsJson, Out, Quiet, Replace, Settings
-from meanfree.cli.planning import Cases, carry_out
+from meanfree.cli.documents import carry_out
+from meanfree.cli.each_case import Cases
 from meanfree.errors import InputError, Problem
 
 if TYPE_CHECKING:
@@ -15,7 +16,7 @@ if TYPE_CHECKING:
     from meanfree.experiment.experiment import Experiment
     from meanfree.planning.window_reasons import Axis
     from meanfree.progress import Progress
-    from meanfree.report.planning.document import Document
+    from meanfree.report.document import Document
     from meanfree.report.record import CaseRecord
 
 MOST = 1000

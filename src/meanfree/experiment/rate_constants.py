@@ -17,6 +17,8 @@ from meanfree.gases.gas import Gas
 from meanfree.rates.ceiling import activation_energy
 from meanfree.rates.collision import Collision
 from meanfree.rates.fixed import Fixed
+from meanfree.rates.photolysis import Photolysis
+from meanfree.rates.source import Source
 
 
 def rate_constant(
@@ -74,7 +76,7 @@ def own_diameter(experiment: Experiment, step: Step) -> float | None:
 
 
 def activation_energy_at(step: Step, k_of: Callable[[float], float], T: float) -> float | None:
-    """Ea at T [J/mol]; a fixed k does not say how it changes with temperature."""
-    if isinstance(step.law, Fixed) or k_of(T) <= 0:
+    """Ea at T [J/mol]; None where k is a number, light or a supply, which say nothing of it."""
+    if isinstance(step.law, Fixed | Photolysis | Source) or k_of(T) <= 0:
         return None
     return activation_energy(k_of, T)

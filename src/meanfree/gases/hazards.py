@@ -16,6 +16,10 @@ from meanfree.gases.gas import Gas
 from meanfree.sourced import Sourced
 
 NOT_KNOWN: Final[str] = "not known"
+OXIDISERS: Final[frozenset[str]] = frozenset(
+    {"O2", "O3", "N2O", "NO2", "N2O4", "F2", "Cl2", "ClO2", "ClF3"}
+)
+"""Formulas (Hill order) with which a flammable gas may burn; common practice, no source."""
 
 _ONTARIO: Final[str] = "Ontario occupational exposure limits, as tabulated in chemicals"
 _FIRE_SOURCES: Final[tuple[str, ...]] = ("IEC 60079-20-1 (2010)", "NFPA 497 (2008)")

@@ -5,18 +5,15 @@ from __future__ import annotations
 from collections.abc import Iterator, Mapping
 
 from meanfree.experiment.experiment import Experiment
-from meanfree.gases.condensation import condenses, vapour_pressure
+from meanfree.gases.condensation import condenses, saturation
 from meanfree.gases.gas import Gas
-from meanfree.gases.hazards import Hazards, hazards_of
+from meanfree.gases.hazards import OXIDISERS, Hazards, hazards_of
 from meanfree.integrate.run import Run
 from meanfree.report import wording
 from meanfree.sourced import Sourced
 
 OF_LIMIT = 0.25
 """Share of the lower limit in air from which a mixture is warned of; common practice, no source."""
-
-OXIDISERS = frozenset({"O2", "O3", "N2O", "NO2", "N2O4", "F2", "Cl2", "ClO2", "ClF3"})
-"""Formulas (Hill order) with which a flammable gas may burn; common practice, no source."""
 
 
 def condensation_in(run: Run) -> Iterator[str]:
@@ -56,14 +53,14 @@ def _condensation(run: Run, gas: Gas) -> Iterator[str]:
         *(("in the run", *moment) for moment in sorted(moments)),
     ):
         if partial > 0 and condenses(gas, temperature, partial):
-            saturated = vapour_pressure(gas, temperature)
-            assert saturated is not None, "a gas that condenses has a vapour pressure"
+            saturated = saturation(gas, temperature, partial)
+            assert saturated is not None, "a gas that condenses has one that says so"
             shown = wording.units_in_use(experiment)
             there = wording.pressure(partial, shown)
             limit = wording.pressure(saturated.value, shown)
             yield (
                 f"{wording.chemical(gas)} would condense {where}: {there} of it at "
-                f"{wording.temperature(temperature)}, where its vapour pressure is {limit} "
+                f"{wording.temperature(temperature)}, against a vapour pressure of {limit} "
                 f"({saturated.source})."
             )
             return

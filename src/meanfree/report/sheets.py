@@ -186,6 +186,8 @@ def inputs_in_use(run: Run) -> Sheet:
     """Every number of the case with its address and source."""
     rows = []
     for address, found in inputs(run.experiment).items():
+        if found.quantity.default and address.endswith(".T_ref"):
+            continue  # without a power of the temperature it means nothing
         value = f"{wording.given(found.value)} {wording.pretty_unit(found.unit)}".strip()
         source = wording.clean(found.source) or ("by default" if found.quantity.default else "")
         rows.append([wording.clean(address), value, source or "the case file"])

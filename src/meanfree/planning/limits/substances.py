@@ -5,15 +5,12 @@ from __future__ import annotations
 from collections.abc import Iterator
 
 from meanfree.constants import R
-from meanfree.gases.condensation import condenses, vapour_pressure
+from meanfree.gases.condensation import condenses, saturation
 from meanfree.gases.gas import Gas
-from meanfree.gases.hazards import Hazards, hazards_of
+from meanfree.gases.hazards import OXIDISERS, Hazards, hazards_of
 from meanfree.integrate.run import Run
 from meanfree.planning.limits.limit import Fact, Limit, Verdict, judged, unknown
 from meanfree.sourced import Sourced
-
-OXIDISERS = frozenset({"O2", "O3", "N2O", "NO2", "N2O4", "F2", "Cl2", "ClO2", "ClF3"})
-"""Formulas (Hill order) with which a flammable gas may burn; common practice, no source."""
 
 ROOM = 293.15
 """Temperature of the air into which a vessel would empty itself [K]."""
@@ -68,7 +65,7 @@ def condensation(run: Run) -> Iterator[Limit]:
             if condenses(gas, T, p) is None:
                 continue
             answered = True
-            saturated = vapour_pressure(gas, T)
+            saturated = saturation(gas, T, p)
             if saturated is not None and (worst is None or p / saturated.value > worst[0]):
                 worst = (p / saturated.value, where, T, p, saturated)
         if worst is not None:

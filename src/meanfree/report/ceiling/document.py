@@ -11,9 +11,9 @@ from meanfree.report import wording
 from meanfree.report.ceiling import sheets
 from meanfree.report.ceiling.models import summarise
 from meanfree.report.ceiling.naming import wrongs
+from meanfree.report.document import Document, Drawing, Section
 from meanfree.report.figures import style
 from meanfree.report.figures.ceiling import figure, grouped
-from meanfree.report.planning.document import Document, Drawing, Section
 from meanfree.report.record import CaseRecord
 
 MOST_FIGURES = 6

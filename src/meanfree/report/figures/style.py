@@ -158,9 +158,11 @@ def plain_decades(axis: Any) -> None:
 def decade(value: float, low: float, high: float) -> str:
     """A power of ten: ``0.01`` on a short axis, ``10⁻²`` on one that goes far.
 
-    >>> decade(0.01, 0.005, 500.0), decade(0.01, 1e-9, 1.0)
-    ('0.01', '10⁻²')
+    >>> decade(0.01, 0.005, 500.0), decade(0.01, 1e-9, 1.0), decade(0.0, 1e-310, 1.0)
+    ('0.01', '10⁻²', '')
     """
+    if value <= 0:  # below the smallest number there is, a tick has come down to zero
+        return ""
     if low >= 1e-4 and high <= 1e5:
         return number(value, 1)
     return power_of_ten(value)

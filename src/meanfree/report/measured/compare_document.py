@@ -11,11 +11,11 @@ from pydantic import ConfigDict, Field
 from meanfree.measured.comparison import CEILING, THEORY, Comparison, StepAgainstCollisions
 from meanfree.measured.runs import MeasuredRun
 from meanfree.report import wording
+from meanfree.report.document import Document, Drawing, Section
 from meanfree.report.figures import comparison as figures
 from meanfree.report.figures import style
 from meanfree.report.measured import numbers
 from meanfree.report.measured.models import IntervalAnswer, Record
-from meanfree.report.planning.document import Document, Drawing, Section
 from meanfree.report.record import CaseRecord
 from meanfree.report.rows import NONE, Answer, Sheet
 from meanfree.report.tables import to_csv

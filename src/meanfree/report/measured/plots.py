@@ -12,9 +12,9 @@ from meanfree.measured.relative_rates import RelativeRate
 from meanfree.measured.straight_lines import Line
 from meanfree.measured.walls import WallTest
 from meanfree.report import wording
+from meanfree.report.document import Drawing, Section
 from meanfree.report.figures import straight, style
 from meanfree.report.measured import numbers
-from meanfree.report.planning.document import Drawing, Section
 from meanfree.report.rows import Sheet
 
 NUMBERS = "The line (95 % intervals)"

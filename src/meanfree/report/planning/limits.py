@@ -12,9 +12,9 @@ from meanfree.experiment.experiment import Experiment
 from meanfree.planning.limits import Limit, Survey, Verdict
 from meanfree.planning.limits.motion import WallShare
 from meanfree.report import wording
+from meanfree.report.document import Document, Drawing, Section
 from meanfree.report.figures import limits as figure
 from meanfree.report.figures import style
-from meanfree.report.planning.document import Document, Drawing, Section
 from meanfree.report.planning.naming import with_formulas
 from meanfree.report.planning.showing import length, shown
 from meanfree.report.record import CaseRecord

@@ -29,7 +29,8 @@ def in_words(address: str, experiment: Experiment) -> str:
     if address.startswith("fill.gases."):
         return f"{_gas(words[2], experiment)} filled"
     if address.startswith("gases."):
-        return f"diameter of {_gas(words[1], experiment)}"
+        name, _, key = address.removeprefix("gases.").rpartition(".")
+        return f"{wording.clean(key.replace('_', ' '))} of {_gas(name, experiment)}"
     if address.startswith("steps."):
         step = next((s for s in experiment.steps if address.startswith(f"steps.{s.name}.")), None)
         if step is not None:

@@ -11,9 +11,9 @@ from pydantic import BaseModel, ConfigDict, Field
 from meanfree import units
 from meanfree.planning.schedule import Kinds, Plan, Schedule
 from meanfree.report import wording
+from meanfree.report.document import Document, Drawing, Section
 from meanfree.report.figures import schedule as figures
 from meanfree.report.figures import style
-from meanfree.report.planning.document import Document, Drawing, Section
 from meanfree.report.planning.naming import at_address, in_words
 from meanfree.report.planning.showing import shown
 from meanfree.report.record import CaseRecord

@@ -15,9 +15,9 @@ from meanfree.planning.sizing import Root, Sizing
 from meanfree.planning.uncertainty import Uncertainty
 from meanfree.planning.why_not import Reason, at_equilibrium
 from meanfree.report import wording
+from meanfree.report.document import Document, Drawing, Section
 from meanfree.report.figures import sizing as figures
 from meanfree.report.figures import style
-from meanfree.report.planning.document import Document, Drawing, Section
 from meanfree.report.planning.naming import at_address, in_words
 from meanfree.report.planning.reasons import because
 from meanfree.report.planning.size_models import (

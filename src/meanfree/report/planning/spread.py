@@ -13,9 +13,9 @@ from meanfree.planning.readings import Reading
 from meanfree.planning.sensitivity import Knob, Sensitivities
 from meanfree.planning.uncertainty import BAND, Uncertainty
 from meanfree.report import wording
+from meanfree.report.document import Drawing, Section
 from meanfree.report.figures import spread as figures
 from meanfree.report.figures import style
-from meanfree.report.planning.document import Drawing, Section
 from meanfree.report.planning.naming import in_words
 from meanfree.report.rows import Answer, Sheet
 from meanfree.report.tables import Cell, to_csv

@@ -13,9 +13,9 @@ from meanfree.experiment.experiment import Experiment
 from meanfree.planning.window import Window
 from meanfree.planning.window_reasons import COARSE, REGIONS
 from meanfree.report import wording
+from meanfree.report.document import Document, Drawing, Section
 from meanfree.report.figures import style
 from meanfree.report.figures import window as figures
-from meanfree.report.planning.document import Document, Drawing, Section
 from meanfree.report.planning.naming import at_address, in_words
 from meanfree.report.record import CaseRecord
 from meanfree.report.rows import Answer, Sheet

@@ -16,9 +16,9 @@ from meanfree.experiment.experiment import Experiment
 from meanfree.files import MANIFEST, OWNER_KEY, fresh_folder
 from meanfree.integrate.observables import At
 from meanfree.report import wording
+from meanfree.report.document import Document, Drawing, Section, page
 from meanfree.report.figures import style
 from meanfree.report.figures import sweep as figures
-from meanfree.report.planning.document import Document, Drawing, Section, page
 from meanfree.report.planning.naming import in_words
 from meanfree.report.record import CaseRecord, versions
 from meanfree.report.rows import NONE, Answer, Sheet

@@ -1,4 +1,4 @@
-"""What the commands that plan share: several cases, folders, the screen, progress."""
+"""What the commands that leave a document share: folders, the screen, progress."""
 
 from __future__ import annotations
 
@@ -6,21 +6,16 @@ import sys
 import time
 from collections.abc import Callable
 from pathlib import Path
-from typing import TYPE_CHECKING, Annotated
+from typing import TYPE_CHECKING
 
-import typer
-
-from meanfree.cli._common import open_case, record_of, results_folder
-from meanfree.errors import ComputationError, InputError, Problem
+from meanfree.cli._common import record_of
+from meanfree.cli.each_case import for_each_case
 
 if TYPE_CHECKING:
     from meanfree.case import LoadedCase
     from meanfree.progress import Progress
-    from meanfree.report.planning.document import Document
+    from meanfree.report.document import Document
     from meanfree.report.record import CaseRecord
-
-Cases = Annotated[list[Path], typer.Argument(metavar="CASE...", help="The case files.")]
-
 
 PATIENCE = 1.0
 """Seconds before progress is shown."""
@@ -39,60 +34,15 @@ def carry_out(
 ) -> None:
     """Do the work of a command for every case; print what it says, or its JSON, or the paths.
 
-    Raises `InputError` for anything wrong with any case before any work is done, and
-    `ComputationError` for those that failed after all others are done.
+    Raises as `for_each_case`.
     """
-    from meanfree.files import refuse_if_taken
-    from meanfree.report.folder import owner_name
 
-    loaded = _open_all(cases, settings)
-    folders = _folders(command, loaded, out)
-    for case, folder in zip(loaded, folders, strict=True):
-        refuse_if_taken(folder, owner=owner_name(case.path, folder), replace=replace)
-    texts: list[str] = []
-    failures: list[str] = []
-    for place, (case, folder) in enumerate(zip(loaded, folders, strict=True)):
-        try:
-            text = _one(case, folder, work, replace=replace, as_json=as_json, quiet=quiet)
-        except ComputationError as error:
-            failures.append(f"{case.path}: {error}" if len(loaded) > 1 else str(error))
-            continue
-        if as_json:
-            texts.append(text)
-        else:
-            typer.echo(("\n" if place and not quiet else "") + text)
-    if as_json and texts:
-        typer.echo(texts[0] if len(loaded) == 1 else f"[{', '.join(texts)}]")
-    if failures:
-        raise ComputationError("\n".join(failures))
+    def one(case: LoadedCase, folder: Path) -> str:
+        return _one(case, folder, work, replace=replace, as_json=as_json, quiet=quiet)
 
-
-def _open_all(cases: list[Path], settings: list[str] | None) -> list[LoadedCase]:
-    loaded: list[LoadedCase] = []
-    problems: list[Problem] = []
-    for path in cases:
-        try:
-            loaded.append(open_case(path, settings))
-        except InputError as error:
-            problems += error.problems
-    if problems:
-        raise InputError(problems)
-    return loaded
-
-
-def _folders(command: str, cases: list[LoadedCase], out: Path | None) -> list[Path]:
-    folders = [
-        results_folder(case, command, out if out is None or len(cases) == 1 else out / case.name)
-        for case in cases
-    ]
-    problems = [
-        Problem("CASE", f"{case.path}, whose results would also go to {folder}", "other names")
-        for place, (case, folder) in enumerate(zip(cases, folders, strict=True))
-        if folder in folders[:place]
-    ]
-    if problems:
-        raise InputError(problems)
-    return folders
+    for_each_case(
+        command, cases, settings, one, out=out, replace=replace, as_json=as_json, quiet=quiet
+    )
 
 
 def _one(
@@ -104,8 +54,8 @@ def _one(
     as_json: bool,
     quiet: bool,
 ) -> str:
+    from meanfree.report.document import write_document
     from meanfree.report.folder import owner_name
-    from meanfree.report.planning.document import write_document
 
     record = record_of(case)
     progress = ScreenProgress()
@@ -128,7 +78,7 @@ def told(document: Document, folder: Path) -> str:
 
     from meanfree.cli.screen import answers_grid, as_text, hanging, sheet_grid
     from meanfree.report import wording
-    from meanfree.report.planning.document import GUIDANCE
+    from meanfree.report.cautions import GUIDANCE
 
     parts: list[object] = [Text(wording.clean(document.title), style="bold"), ""]
     parts.append(answers_grid(document.answers))

@@ -1,4 +1,4 @@
-"""What every planning command leaves: answers first, then figures, tables and how to repeat it.
+"""What most commands leave: answers first, then figures, tables and how to repeat it.
 
 A `Document` is complete text; the page and the screen show the same one.
 """
@@ -13,15 +13,11 @@ from pathlib import Path
 
 from meanfree.files import MANIFEST, OWNER_KEY
 from meanfree.report import wording
+from meanfree.report.cautions import GUIDANCE
 from meanfree.report.folder import leave
 from meanfree.report.page import inlined, templates
 from meanfree.report.record import CaseRecord, versions
 from meanfree.report.rows import Answer, Sheet
-
-GUIDANCE = (
-    "Guidance only: local codes and licensed practice decide what may be done with pressurised, "
-    "flammable or toxic gases."
-)
 
 
 @dataclass(frozen=True)
@@ -46,7 +42,7 @@ class Section:
 
 @dataclass(frozen=True)
 class Document:
-    """Everything that a planning command says.
+    """Everything that a command says of a case.
 
     ``arguments`` are those after the case file, as they must be given to repeat it; ``summary`` is
     the text of `summary.json`; ``screen`` is a table for the screen; ``tables`` maps file names
@@ -103,7 +99,7 @@ def page(document: Document, record: CaseRecord) -> str:
     """The page as HTML."""
     text: str = (
         templates()
-        .get_template("planning.html.j2")
+        .get_template("document.html.j2")
         .render(
             title=wording.clean(document.title),
             subtitle=wording.clean(document.subtitle),
