@@ -15,9 +15,9 @@ from laboratory import si
 
 from meanfree.gases.gas import Gas
 from meanfree.rates.capture import Capture
-from meanfree.rates.falloff import Falloff
+from meanfree.rates.falloff import Centre, Falloff
 from meanfree.rates.law import Interior, Law, Numbers, StepContext
-from meanfree.rates.limits import PowerLaw
+from meanfree.rates.limits import PowerLaw, StrongCollisions
 from meanfree.rates.long_range import FORMULAS
 from meanfree.rates.photolysis import Photolysis
 from meanfree.rates.wall import Wall
@@ -181,3 +181,65 @@ def test_a_rate_constant_asked_without_pressure_or_bath_is_that_in_an_empty_vess
     v = math.sqrt(8 * R * 300.0 / (math.pi * 2.016e-3))
     free = 0.1 * v / (2 * (2 - 0.1)) * 3 / 0.03
     assert wall.rate_constant(where, 300.0) == pytest.approx(free, rel=1e-9)
+
+
+SECOND: dict[str, Any] = {"polarisability": {"NH3": si(2.1e-30)}, "dipole": si(4.9e-30)}
+CAPTURES = [
+    (Capture("dispersion", C6=si(1e-77)), PAIR),
+    (
+        Capture("ion and induced dipole", polarisability=SECOND["polarisability"]),
+        meeting(ION, NEUTRAL),
+    ),
+    (Capture("ion and permanent dipole", **SECOND), meeting(ION, NEUTRAL)),
+    (
+        Capture(
+            "electron jump", ionisation_energy={"H2": si(9e5)}, electron_affinity={"I2": si(2e5)}
+        ),
+        PAIR,
+    ),
+]
+
+
+@pytest.mark.parametrize(
+    ("law", "where"), CAPTURES, ids=lambda value: getattr(value, "attraction", "")
+)
+def test_every_attraction_takes_its_share_of_surfaces_and_names_its_numbers(
+    law: Capture, where: StepContext
+) -> None:
+    whole = float(law.rate_constant(where, 400.0))
+    third = replace(law, electronic_factor=si(1 / 3))
+    assert third.rate_constant(where, 400.0) == pytest.approx(whole / 3, rel=1e-12)
+    slots = law.template(where).slots
+    assert len(slots) == len(set(slots)) == len(law.numbers(where))
+
+
+@pytest.mark.parametrize(("factor", "said"), [(0.999, 0), (1.001, 1)])
+def test_how_slowly_a_dipole_may_turn(factor: float, said: int) -> None:
+    """I* = mu_D I/(alpha q mu) below (0.7 + x^2)/(2 + 0.6 x), at x of the coldest temperature.
+
+    T. Su and W. J. Chesnavich, J. Chem. Phys. 76, 5183 (1982) (from memory); x^2 = mu_D^2/(2 alpha
+    k_B T) with mu_D^2/(4 pi eps0), everything in SI; I = h/(8 pi^2 c B) of a rotational constant.
+    """
+    T, alpha, dipole = 300.0, 2.1e-30, 4.9e-30
+    x = math.sqrt(dipole**2 / (4 * math.pi * 8.8541878128e-12) / (2 * alpha * 1.380649e-23 * T))
+    mu = 19.023e-3 * 17.031e-3 / (19.023e-3 + 17.031e-3) / 6.02214076e23
+    limit = (0.7 + x * x) / (2 + 0.6 * x)
+    inertia = factor * limit * alpha * mu / (dipole / 1.602176634e-19)
+    B = 6.62607015e-34**2 / (8 * math.pi**2 * inertia) * 6.02214076e23
+    law = Capture("ion and permanent dipole", **SECOND, rotational_constant=si(B))
+    where = meeting(ION, NEUTRAL, temperatures=(T, 900.0))
+    assert law.reduced_dipole(where, T) == pytest.approx(x, rel=1e-8)
+    # so heavy a rotor is far from quantum, and x is small: this is all there is to say
+    assert len(list(law.cautions(where))) == said
+
+
+def test_a_falloff_step_without_broadening_reads_no_centre() -> None:
+    """And says what its estimated low-pressure limit rests on."""
+    low = StrongCollisions(si(1e5), si(3.0), "H2")
+    where = alone(H2, has_bath=True)
+    law = Falloff(low, PowerLaw(si(3.0)), "none", Centre(si(0.5)))
+    assert len(law.numbers(where)) == len(law.template(where).slots) == 8
+    assert list(law.cautions(where)) == list(low.cautions(where))
+    assert len(list(low.cautions(where))) == 1
+    broad = replace(law, broadening="unit width")
+    assert len(broad.numbers(where)) == len(broad.template(where).slots) == 9

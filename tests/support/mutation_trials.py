@@ -15,7 +15,6 @@ import importlib.util
 import inspect
 import json
 import os
-import resource
 import shutil
 import signal
 import sys
@@ -304,6 +303,8 @@ def in_fork(trial: Trial, seconds: float, output: Path) -> int | None:
     if pid == 0:
         status = 99
         try:
+            import resource  # where there are forks, there is this
+
             os.setsid()
             resource.setrlimit(resource.RLIMIT_DATA, (MEMORY, MEMORY))
             written = os.open(output, os.O_WRONLY | os.O_CREAT | os.O_TRUNC)
