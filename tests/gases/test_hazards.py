@@ -14,6 +14,7 @@ from meanfree.gases.condensation import (
     SOURCES,
     condenses,
     library_vapour,
+    saturation,
     vapour_of,
     vapour_pressure,
 )
@@ -128,6 +129,33 @@ def test_not_known_or_out_of_range_is_none() -> None:
     assert condenses(Gas.label("A"), 298.15, 1e5) is None
     assert vapour_pressure(find_gas("H2O"), 10.0) is None
     assert condenses(find_gas("H3O+"), 298.15, 1e5) is None
+
+
+def test_what_rises_with_temperature_settles_it_outside_the_tables() -> None:
+    """Water freezes at 273.16 K with 611.66 Pa (the triple point, IAPWS); below, it has less."""
+    water = find_gas("H2O")
+    coldest = min(table.low for table in vapour_of(water.cas or "").tables)
+    cold = coldest - 5.0
+    assert vapour_pressure(water, cold) is None
+    assert condenses(water, cold, 1000.0) is True
+    assert condenses(water, cold, 1e-9) is None
+    settles = saturation(water, cold, 1000.0)
+    assert settles is not None
+    # correlations begin within 0.05 K of the triple point, where 0.05 K is 0.4 %
+    assert settles.value == pytest.approx(611.66, rel=0.005)
+    assert settles.source.endswith(f" K: less at {cold:.5g} K")
+    # just below the critical temperature, where the correlations end (all but one of the gases)
+    for gas in pinned_gases():
+        vapour = vapour_of(gas.cas)
+        if vapour.critical_temperature is None or not vapour.tables:
+            continue
+        hottest = max(vapour.tables, key=lambda table: table.high)
+        T = 0.5 * (hottest.high + vapour.critical_temperature.value)
+        if hottest.high < T < vapour.critical_temperature.value:
+            highest = max(table.pressure(table.high) for table in vapour.tables if table.high < T)
+            found = find_gas(gas.name)
+            assert condenses(found, T, 0.999 * highest) is False, gas.name
+            assert condenses(found, T, 1.001 * highest) is None, gas.name
 
 
 def test_every_correlation_rises_within_its_range() -> None:

@@ -1,6 +1,7 @@
 """Vapour pressures: whether a gas would condense at the temperature it is filled or run at.
 
-None means not known. Nothing is extrapolated outside the range of a correlation.
+None means not known. Nothing is extrapolated outside the range of a correlation; only that vapour
+pressures rise with temperature is used there.
 """
 
 from __future__ import annotations
@@ -80,18 +81,42 @@ def vapour_pressure(gas: Gas, temperature: float) -> Sourced | None:
     return None
 
 
+def saturation(gas: Gas, temperature: float, partial_pressure: float) -> Sourced | None:
+    """The pressure [Pa] that settles whether ``gas`` at ``partial_pressure`` [Pa] would condense.
+
+    The vapour pressure where it is known at ``temperature`` [K]; else, since it rises with
+    temperature, that at the nearest higher temperature, where the gas has more than that, or at
+    the nearest lower one, where it has no more. None where neither settles it.
+    """
+    exact = vapour_pressure(gas, temperature)
+    if exact is not None or gas.cas is None or gas.charge:
+        return exact
+    tables = vapour_of(gas.cas).tables
+    above = [(t.pressure(t.low), t.low, t.kind) for t in tables if t.low > temperature]
+    below = [(t.pressure(t.high), t.high, t.kind) for t in tables if t.high < temperature]
+    if above and partial_pressure > min(above)[0]:
+        value, T, kind = min(above)
+        word = "less"
+    elif below and partial_pressure <= max(below)[0]:
+        value, T, kind = max(below)
+        word = "more"
+    else:
+        return None
+    return Sourced(value, "kPa", f"{SOURCES[kind]}, at {T:.5g} K: {word} at {temperature:.5g} K")
+
+
 def condenses(gas: Gas, temperature: float, partial_pressure: float) -> bool | None:
     """Whether ``gas`` at ``partial_pressure`` [Pa] and ``temperature`` [K] would condense.
 
-    Never above the critical temperature; None where nothing is known.
+    Never above the critical temperature; None where nothing that is known settles it.
     """
     if gas.cas is None or gas.charge:
         return None
     critical = vapour_of(gas.cas).critical_temperature
     if critical is not None and temperature > critical.value:
         return False
-    saturated = vapour_pressure(gas, temperature)
-    return None if saturated is None else partial_pressure > saturated.value
+    settles = saturation(gas, temperature, partial_pressure)
+    return None if settles is None else partial_pressure > settles.value
 
 
 @lru_cache(maxsize=512)

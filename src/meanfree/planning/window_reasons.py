@@ -15,7 +15,7 @@ from meanfree.errors import ComputationError
 from meanfree.experiment.equilibrium import equilibrium, why_none
 from meanfree.experiment.experiment import Experiment
 from meanfree.experiment.inputs import with_inputs
-from meanfree.gases.condensation import vapour_pressure
+from meanfree.gases.condensation import saturation
 from meanfree.planning.mixture import Mixture
 from meanfree.planning.request import PlanRequest
 from meanfree.planning.sizing import GEOMETRIC, grid
@@ -219,7 +219,7 @@ def over_vapour_pressure(experiment: Experiment) -> float:
     for gas in experiment.gases:
         share = experiment.mole_fractions.get(gas.name, 0.0)
         for T, p in pairs:
-            saturated = vapour_pressure(gas, T) if share > 0 else None
+            saturated = saturation(gas, T, share * p) if share > 0 else None
             if saturated is not None:
                 found.append(share * p / saturated.value)
     if not found:

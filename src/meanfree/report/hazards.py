@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator, Mapping
 
 from meanfree.experiment.experiment import Experiment
-from meanfree.gases.condensation import condenses, vapour_pressure
+from meanfree.gases.condensation import condenses, saturation
 from meanfree.gases.gas import Gas
 from meanfree.gases.hazards import OXIDISERS, Hazards, hazards_of
 from meanfree.integrate.run import Run
@@ -53,14 +53,14 @@ def _condensation(run: Run, gas: Gas) -> Iterator[str]:
         *(("in the run", *moment) for moment in sorted(moments)),
     ):
         if partial > 0 and condenses(gas, temperature, partial):
-            saturated = vapour_pressure(gas, temperature)
-            assert saturated is not None, "a gas that condenses has a vapour pressure"
+            saturated = saturation(gas, temperature, partial)
+            assert saturated is not None, "a gas that condenses has more than some pressure"
             shown = wording.units_in_use(experiment)
             there = wording.pressure(partial, shown)
             limit = wording.pressure(saturated.value, shown)
             yield (
                 f"{wording.chemical(gas)} would condense {where}: {there} of it at "
-                f"{wording.temperature(temperature)}, where its vapour pressure is {limit} "
+                f"{wording.temperature(temperature)}, against a vapour pressure of {limit} "
                 f"({saturated.source})."
             )
             return

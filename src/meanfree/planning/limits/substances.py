@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 
 from meanfree.constants import R
-from meanfree.gases.condensation import condenses, vapour_pressure
+from meanfree.gases.condensation import condenses, saturation
 from meanfree.gases.gas import Gas
 from meanfree.gases.hazards import OXIDISERS, Hazards, hazards_of
 from meanfree.integrate.run import Run
@@ -65,7 +65,7 @@ def condensation(run: Run) -> Iterator[Limit]:
             if condenses(gas, T, p) is None:
                 continue
             answered = True
-            saturated = vapour_pressure(gas, T)
+            saturated = saturation(gas, T, p)
             if saturated is not None and (worst is None or p / saturated.value > worst[0]):
                 worst = (p / saturated.value, where, T, p, saturated)
         if worst is not None:
