@@ -242,6 +242,9 @@ def test_points_of_a_program():
     changed = with_inputs(case, {"temperature.points.1.temperature": 450.0}).temperature
     assert isinstance(changed, Program)
     assert [T.value for _, T in changed.points] == [300.0, 450.0]
+    later = with_inputs(case, {"temperature.points.1.time": 90.0}).temperature
+    assert isinstance(later, Program)
+    assert [(t.value, T.value) for t, T in later.points] == [(0.0, 300.0), (90.0, 400.0)]
 
 
 def test_numbers_by_gas_in_a_law():
