@@ -177,7 +177,7 @@ def test_potassium_and_bromine(checked: Checked) -> None:
     I = 420, EA = 250 kJ/mol give R = 817 pm and (R/d)^2 = 4.17; measured is 4.8 = 1.0e12/2.1e11.
     """
     where = meeting(K, BR2)
-    assert HARPOON.jump_distance() == pytest.approx(817.267e-12, rel=1e-5)
+    assert HARPOON.jump_distance(where) == pytest.approx(817.267e-12, rel=1e-5)
     spheres = Collision(threshold=si(0.0), diameter=si(400e-12))
     T = np.array([300.0, 900.0])
     P = HARPOON.rate_constant(where, T) / spheres.rate_constant(where, T)
@@ -215,6 +215,43 @@ def test_impossible_captures_are_refused_in_words() -> None:
     assert found(replace(HARPOON, ionisation_energy={"K": si(2e5)}), K, BR2) == [
         "ionisation_energy.K: found an electron affinity of Br2 at or above that ionisation "
         "energy; expected an ionisation energy above it: else the electron jumps at any distance"
+    ]
+
+
+def test_what_a_step_leaves_out_is_taken_from_its_gases() -> None:
+    """The same numbers with the gases as with the step, and the step's own before theirs."""
+    argon = molecule("Ar")
+    stated = Capture(
+        "dispersion",
+        polarisability={"Ar": si(1.64 * A3)},
+        ionisation_energy={"Ar": si(15.76 * e * N_A)},
+    )
+    known = replace(
+        argon, polarisability=si(1.64 * A3), ionisation_energy=si(15.76 * e * N_A), dipole=si(0.0)
+    )
+    bare = Capture("dispersion")
+    assert found(bare, known) == []
+    assert bare.numbers(meeting(known)) == stated.numbers(meeting(argon))
+    twice = replace(bare, polarisability={"Ar": si(2 * 1.64 * A3)})
+    ratio = twice.dispersion_coefficient(meeting(known)) / stated.dispersion_coefficient(
+        meeting(argon)
+    )
+    assert ratio == pytest.approx(4.0, rel=1e-12)
+    ammonia = replace(NH3, polarisability=si(2.103 * A3), dipole=si(1.4718 * DEBYE))
+    polar = Capture("ion and permanent dipole")
+    assert found(polar, H3O, ammonia) == []
+    given = ion(H3O, NH3, 2.103 * A3, dipole=si(1.4718 * DEBYE))
+    assert polar.numbers(meeting(H3O, ammonia)) == given.numbers(meeting(H3O, NH3))
+    potassium = replace(K, ionisation_energy=si(420e3))
+    jump = replace(HARPOON, ionisation_energy={})
+    assert found(jump, potassium, BR2) == []
+    assert jump.numbers(meeting(potassium, BR2)) == HARPOON.numbers(meeting(K, BR2))
+    # The electron comes from the partner of the gas that takes it, whatever that one has.
+    other = replace(BR2, ionisation_energy=si(1015e3))
+    assert jump.numbers(meeting(potassium, other)) == HARPOON.numbers(meeting(K, BR2))
+    assert found(jump, K, other) == [
+        "ionisation_energy: found 0 gases; expected that of one partner: the other takes or gives "
+        "the electron"
     ]
 
 

@@ -37,7 +37,8 @@ class Capture(Law):
     the neutral, the second its ``dipole`` [C m] too (``rotational_constant`` [J/mol] lets the
     range of the fit be checked); "electron jump" takes the ionisation energy of the one and the
     electron affinity of the other. ``electronic_factor`` [1] is the share of encounters on an
-    attractive electronic surface. Like partners carry the 1/2.
+    attractive electronic surface. Like partners carry the 1/2. What a step does not give is taken
+    from its gases: polarisability, ionisation energy and dipole.
     """
 
     attraction: Attraction
@@ -62,14 +63,29 @@ class Capture(Law):
         if self.attraction == "dispersion":
             return (*pair, self.dispersion_coefficient(context))
         if self.attraction == "electron jump":
-            return (*pair, self.jump_distance())
+            return (*pair, self.jump_distance(context))
         ion, neutral = _ion_and_neutral(context)
-        alpha = self.polarisability[neutral.name].value
+        alpha = self._known("polarisability", neutral)
         pull = ion.charge**2 * ELECTRIC * alpha
         if self.attraction == "ion and induced dipole":
             return (*pair, pull)
-        assert self.dipole is not None
-        return (*pair, pull, self.dipole.value**2 / (4 * math.pi * eps0) / alpha)
+        return (*pair, pull, self._dipole(neutral) ** 2 / (4 * math.pi * eps0) / alpha)
+
+    def _of(self, key: str, gas: Gas) -> Sourced | None:
+        """What the step gives of a gas, else what the gas has; None without either."""
+        given: Sourced | None = getattr(self, key).get(gas.name)
+        own: Sourced | None = getattr(gas, key, None)
+        return own if given is None else given
+
+    def _known(self, key: str, gas: Gas) -> float:
+        found = self._of(key, gas)
+        assert found is not None, "problems() has looked"
+        return found.value
+
+    def _dipole(self, neutral: Gas) -> float:
+        found = neutral.dipole if self.dipole is None else self.dipole
+        assert found is not None, "problems() has looked"
+        return found.value
 
     def dispersion_coefficient(self, context: StepContext) -> float:
         """C6 [J m^6]: given, or 3/2 a1 a2 I1 I2/(I1 + I2).
@@ -78,20 +94,30 @@ class Capture(Law):
         """
         if self.C6 is not None:
             return self.C6.value
-        first, second = (gas.name for gas in context.partners)
-        a = self.polarisability[first].value * self.polarisability[second].value
-        I1, I2 = (self.ionisation_energy[name].value / N_A for name in (first, second))
+        first, second = context.partners
+        a = self._known("polarisability", first) * self._known("polarisability", second)
+        I1, I2 = (self._known("ionisation_energy", gas) / N_A for gas in (first, second))
         return 1.5 * a * I1 * I2 / (I1 + I2)
 
-    def jump_distance(self) -> float:
+    def jump_distance(self, context: StepContext) -> float:
         """R = e^2/(4 pi eps0 (I - EA)) [m], where the ionic curve crosses the neutral one.
 
         Source: Atkins and de Paula, Physical Chemistry, 8th ed. (2006), section 24.1; M. Polanyi,
         Atomic Reactions, 1932.
         """
-        (ionisation,) = self.ionisation_energy.values()
+        donor = self._donor(context)
+        assert donor is not None, "problems() has looked"
         (affinity,) = self.electron_affinity.values()
-        return ELECTRIC * N_A / (ionisation.value - affinity.value)
+        return ELECTRIC * N_A / (self._known("ionisation_energy", donor) - affinity.value)
+
+    def _donor(self, context: StepContext) -> Gas | None:
+        """The gas that gives the electron: whose ionisation energy is given, else the partner of
+        the one whose electron affinity is, if it has one itself."""
+        for gas in context.partners:
+            if gas.name in self.ionisation_energy:
+                return gas
+        others = [gas for gas in context.partners if gas.name not in self.electron_affinity]
+        return next((gas for gas in others if gas.ionisation_energy is not None), None)
 
     # What is impossible
 
@@ -112,31 +138,39 @@ class Capture(Law):
                     expected = " or ".join(sorted(names))
                     yield Problem(f"{key}.{name}", "a gas that does not collide here", expected)
         if self.attraction == "dispersion":
-            yield from self._dispersion_problems(names)
+            yield from self._dispersion_problems(context)
         elif self.attraction == "electron jump":
-            yield from self._jump_problems()
+            yield from self._jump_problems(context)
         else:
             yield from self._ion_problems(context)
 
-    def _dispersion_problems(self, names: set[str]) -> Iterator[Problem]:
+    def _dispersion_problems(self, context: StepContext) -> Iterator[Problem]:
         if self.C6 is not None:
             return
+        gases = {gas.name: gas for gas in context.partners}
         for key in ("polarisability", "ionisation_energy"):
-            for name in sorted(names - set(getattr(self, key))):
-                yield Problem(f"{key}.{name}", "nothing", "one for each partner, or C6")
+            for name in sorted(gases):
+                if self._of(key, gases[name]) is None:
+                    yield Problem(f"{key}.{name}", "nothing", "one for each partner, or C6")
 
-    def _jump_problems(self) -> Iterator[Problem]:
-        for key in ("ionisation_energy", "electron_affinity"):
-            if len(getattr(self, key)) != 1:
+    def _jump_problems(self, context: StepContext) -> Iterator[Problem]:
+        donor = self._donor(context)
+        counts = {
+            "ionisation_energy": max(len(self.ionisation_energy), 0 if donor is None else 1),
+            "electron_affinity": len(self.electron_affinity),
+        }
+        for key, count in counts.items():
+            if count != 1:
                 expected = "that of one partner: the other takes or gives the electron"
-                yield Problem(key, f"{len(getattr(self, key))} gases", expected)
+                yield Problem(key, f"{count} gases", expected)
                 return
-        donor, acceptor = next(iter(self.ionisation_energy)), next(iter(self.electron_affinity))
-        ionisation = self.ionisation_energy[donor].value
+        assert donor is not None, "there is one"
+        acceptor = next(iter(self.electron_affinity))
+        ionisation = self._known("ionisation_energy", donor)
         if ionisation <= self.electron_affinity[acceptor].value:
             found = f"an electron affinity of {acceptor} at or above that ionisation energy"
             expected = "an ionisation energy above it: else the electron jumps at any distance"
-            yield Problem(f"ionisation_energy.{donor}", found, expected)
+            yield Problem(f"ionisation_energy.{donor.name}", found, expected)
 
     def _ion_problems(self, context: StepContext) -> Iterator[Problem]:
         charges = [gas.charge for gas in context.partners]
@@ -145,10 +179,11 @@ class Capture(Law):
             yield Problem("reaction", found, "one ion and one neutral molecule")
             return
         _, neutral = _ion_and_neutral(context)
-        if neutral.name not in self.polarisability:
+        if self._of("polarisability", neutral) is None:
             expected = f"the polarisability of {neutral.name}, which is the neutral"
             yield Problem(f"polarisability.{neutral.name}", "nothing", expected)
-        if self.attraction == "ion and permanent dipole" and self.dipole is None:
+        lacking = self.dipole is None and neutral.dipole is None
+        if self.attraction == "ion and permanent dipole" and lacking:
             yield Problem("dipole", "nothing", f'the dipole of {neutral.name}, such as "1.5 D"')
 
     # What is worth knowing
@@ -169,12 +204,12 @@ class Capture(Law):
 
     def _rotation_cautions(self, context: StepContext, cold: float, x: float) -> Iterator[str]:
         """Source: T. Su and W. J. Chesnavich, J. Chem. Phys. 76, 5183 (1982) (from memory)."""
-        assert self.rotational_constant is not None and self.dipole is not None
+        assert self.rotational_constant is not None
         B = self.rotational_constant.value / N_A
         inertia = h**2 / (8 * math.pi**2 * B)
         ion, neutral = _ion_and_neutral(context)
-        alpha = self.polarisability[neutral.name].value
-        length = self.dipole.value / (abs(ion.charge) * e)
+        alpha = self._known("polarisability", neutral)
+        length = self._dipole(neutral) / (abs(ion.charge) * e)
         reduced = length * inertia / (alpha * reduced_mass(context))
         if reduced >= (0.7 + x * x) / (2 + 0.6 * x):
             yield (

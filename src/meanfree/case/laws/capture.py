@@ -28,16 +28,19 @@ class CaptureStep(StepTable):
         None, description='of a potential -C6/r^6, such as "60 hartree*bohr^6"'
     )
     polarisability: dict[str, Annotated[Sourced, Quantity("polarisability")]] | None = Field(
-        None, description='volumes by gas, such as { N2 = "1.74 angstrom^3" }'
+        None,
+        description='volumes by gas, such as { N2 = "1.74 angstrom^3" }; default: those of the '
+        "gases",
     )
     ionisation_energy: dict[str, MolarEnergy] | None = Field(
-        None, description='by gas, such as { K = "4.34 eV" }'
+        None, description='by gas, such as { K = "4.34 eV" }; default: those of the gases'
     )
     electron_affinity: dict[str, MolarEnergy] | None = Field(
         None, description='by gas, such as { Br2 = "2.55 eV" }'
     )
     dipole: Annotated[Sourced, Quantity("dipole moment")] | None = Field(
-        None, description='dipole moment of the neutral, such as "1.47 D"'
+        None,
+        description='dipole moment of the neutral, such as "1.47 D"; default: that of the gas',
     )
     rotational_constant: MolarEnergy | None = Field(
         None, description="of the neutral: lets the range of the ion-dipole fit be checked"
