@@ -52,11 +52,14 @@ class Grouped:
         good = np.isfinite(values)
         keys = group[good] * _SPAN + classes(values[good]) + _OFFSET
         new, times = np.unique(keys, return_counts=True)
-        both = np.concatenate([self.keys, new])
-        self.keys, place = np.unique(both, return_inverse=True)
-        counts = np.zeros(len(self.keys), np.int64)
-        np.add.at(counts, place, np.concatenate([self.counts, times]))
-        self.counts = counts
+        # Most classes are there from earlier parts: only the others need room.
+        place: Longs = np.atleast_1d(np.searchsorted(self.keys, new))
+        there = np.zeros(len(new), bool)
+        inside = place < len(self.keys)
+        there[inside] = self.keys[place[inside]] == new[inside]
+        self.counts[place[there]] += times[there]
+        self.keys = np.insert(self.keys, place[~there], new[~there])
+        self.counts = np.insert(self.counts, place[~there], times[~there])
 
     def quantiles(self, levels: Sequence[float]) -> Floats:
         """Quantiles of each group [shape (n_levels, n_groups)], NaN where it is empty."""

@@ -7,22 +7,24 @@ runs. A condition that cannot be integrated is kept with its reason.
 from __future__ import annotations
 
 import io
-from collections import Counter
-from collections.abc import Mapping, Sequence
+from collections.abc import Mapping
 from dataclasses import dataclass
 
 import numpy as np
+from numpy.typing import NDArray
 
 from meanfree.campaigns.campaign import Campaign, makers
 from meanfree.campaigns.columns import ENDING
 from meanfree.campaigns.designs import Floats
 from meanfree.campaigns.possible import impossible_values, reason_of
 from meanfree.errors import ComputationError, InputError
-from meanfree.integrate.many import many
+from meanfree.integrate.many import Runs
+from meanfree.kernel.status import Ending
 
 COMPRESSION = "zstd"
 
 Table = Mapping[str, Floats]
+Longs = NDArray[np.int64]
 
 
 @dataclass(frozen=True)
@@ -52,41 +54,49 @@ def compute_part(campaign: Campaign, number: int) -> Part:
     return Part(number, stop - start, _file(campaign, number, conditions, values, endings))
 
 
-def _integrated(campaign: Campaign, conditions: Table, count: int) -> tuple[Floats, list[str]]:
+@dataclass
+class _Endings:
+    """How each run ended: words, and which of them."""
+
+    words: list[str]
+    which: Longs
+
+    def say(self, rows: Longs | int, word: str) -> None:
+        """The same words for some rows."""
+        if word not in self.words:
+            self.words.append(word)
+        self.which[rows] = self.words.index(word)
+
+
+def _integrated(campaign: Campaign, conditions: Table, count: int) -> tuple[Floats, _Endings]:
     """Observables [shape (n_columns, count)] and how each run ended."""
     values = np.full((len(campaign.columns.observables), count), np.nan)
-    endings = [""] * count
+    endings = _Endings([ending.sentence for ending in Ending], np.zeros(count, np.int64))
     refused = impossible_values(campaign.experiment, conditions)
     for row, reason in refused.items():
-        endings[row] = reason
+        endings.say(row, reason)
+    runs = Runs(campaign.experiment, campaign.observables, workers=1)
     pending = [np.setdiff1d(np.arange(count), np.fromiter(refused, int, len(refused)))]
     while pending:
         rows = pending.pop()
         if not len(rows):
             continue
         try:
-            found = many(
-                campaign.experiment,
-                {address: column[rows] for address, column in conditions.items()},
-                campaign.observables,
-                workers=1,
-            )
+            found, marks = runs.arrays({a: column[rows] for a, column in conditions.items()})
         except InputError as error:
             # Some of them make no experiment: halve until those stand alone.
             if len(rows) == 1:
-                endings[int(rows[0])] = reason_of(error)
+                endings.say(int(rows[0]), reason_of(error))
             else:
                 pending += [rows[len(rows) // 2 :], rows[: len(rows) // 2]]
             continue
-        for place, name in enumerate(campaign.columns.observables):
-            values[place, rows] = found[name].to_numpy()
-        for row, words in zip(rows, found[ENDING].astype(str), strict=True):
-            endings[int(row)] = words
+        values[:, rows] = found
+        endings.which[rows] = marks
     return values, endings
 
 
 def _file(
-    campaign: Campaign, number: int, conditions: Table, values: Floats, endings: Sequence[str]
+    campaign: Campaign, number: int, conditions: Table, values: Floats, endings: _Endings
 ) -> bytes:
     """The Parquet file of a part; its metadata say what it belongs to."""
     import pyarrow as pa
@@ -96,10 +106,13 @@ def _file(
     schema = campaign.columns.schema(
         {**campaign.identity, "campaign": campaign.hash, "part": str(number)}
     )
-    words = sorted(Counter(endings))
-    codes = {word: place for place, word in enumerate(words)}
+    used, codes = np.unique(endings.which, return_inverse=True)
+    words = [endings.words[which] for which in used]
+    # In order of the alphabet, whatever order they were met in.
+    order = sorted(range(len(words)), key=words.__getitem__)
+    rank = np.argsort(order)
     ending = pa.DictionaryArray.from_arrays(
-        pa.array([codes[word] for word in endings], pa.int32()), pa.array(words, pa.string())
+        pa.array(rank[codes].astype(np.int32)), pa.array([words[i] for i in order], pa.string())
     )
     arrays = [
         pa.array(np.arange(start, stop)),

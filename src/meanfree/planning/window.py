@@ -61,6 +61,14 @@ class Window:
         return {name: margin > 0 for name, margin in self.margins.items()}
 
     @property
+    def unreached(self) -> NDArray[np.bool_]:
+        """Where the goal is not reached by ``until`` and no other reason holds."""
+        taken = np.zeros(self.time.shape, bool)
+        for mask in self.regions.values():
+            taken = taken | mask
+        return np.isnan(self.time) & ~taken
+
+    @property
     def usable(self) -> NDArray[np.bool_]:
         """Where nothing stands against a run."""
         masks = list(self.regions.values())

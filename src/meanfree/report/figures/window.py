@@ -8,6 +8,7 @@ from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 from matplotlib.patches import Patch
 
+from meanfree.equations.system import Floats
 from meanfree.experiment.experiment import Experiment
 from meanfree.planning.window import Window
 from meanfree.planning.window_reasons import Axis
@@ -30,7 +31,16 @@ NICE = (
     *(1e-6, 1e-5, 1e-4, 1e-3, 1e-2, 0.1, 1.0, 10.0, 60.0, 600.0, 3600.0),
     *(4 * 3600.0, 8 * 3600.0, 86400.0, 7 * 86400.0, 30 * 86400.0, 365.25 * 86400.0),
 )
-"""Times that contours are drawn for [s]."""
+"""Times that contours are drawn for [s], where the map has at least `FEW` of them."""
+
+FEW, LINES = 3, 6
+"""Fewer lines than this do not show how the time goes; then there are about so many, rounded."""
+
+FLAT = 1e-3
+"""Times that differ by less are one time."""
+
+UNREACHED = ("#777777", "|||")
+"""Colour and hatching of what is not reached for no reason that is known."""
 
 
 def figure(found: Window, experiment: Experiment) -> Figure:
@@ -50,7 +60,12 @@ def figure(found: Window, experiment: Experiment) -> Figure:
         if axis.is_geometric:
             set_scale("log")
             style.plain_decades(places)
-    handles: list[Artist] = [_shade(ax, found, name) for name in found.margins]
+    handles: list[Artist] = [
+        _shade(ax, found, margin, name, *SHADES[name]) for name, margin in found.margins.items()
+    ]
+    if found.unreached.any():
+        words = f"not reached in {wording.duration(found.until)}"
+        handles.append(_shade(ax, found, np.where(found.unreached, 0.5, -0.5), words, *UNREACHED))
     _contours(ax, found)
     inside = [
         _within(value, axis)
@@ -58,7 +73,15 @@ def figure(found: Window, experiment: Experiment) -> Figure:
     ]
     if all(inside):
         (point,) = ax.plot(
-            *found.base, "o", color=style.INK, markersize=7, label="the case", zorder=5
+            *found.base,
+            "o",
+            markerfacecolor="white",
+            markeredgecolor=style.INK,
+            markeredgewidth=1.5,
+            markersize=13,
+            linestyle="none",
+            label="the case",
+            zorder=5,
         )
         handles.append(point)
     if found.middle is not None:
@@ -68,10 +91,10 @@ def figure(found: Window, experiment: Experiment) -> Figure:
             [y[row]],
             "*",
             color=style.PALETTE[0],
-            markersize=12,
-            markeredgecolor="white",
+            markersize=11,
+            linestyle="none",
             label="middle of the window",
-            zorder=5,
+            zorder=6,
         )
         handles.append(point)
     ax.legend(
@@ -93,9 +116,7 @@ def _within(value: float, axis: Axis) -> bool:
     return bool(axis.values[0] <= value <= axis.values[-1])
 
 
-def _shade(ax: Axes, found: Window, name: str) -> Patch:
-    colour, hatch = SHADES[name]
-    margin = found.margins[name]
+def _shade(ax: Axes, found: Window, margin: Floats, name: str, colour: str, hatch: str) -> Patch:
     x, y = found.across.values, found.up.values
     top = float(margin.max()) + 1.0
     ax.contourf(x, y, margin, levels=[0.0, top], colors=[colour], alpha=0.22, zorder=1)
@@ -118,8 +139,10 @@ def _contours(ax: Axes, found: Window) -> None:
     if time.count() == 0:
         return
     low, high = float(time.min()), float(time.max())
-    levels = [level for level in NICE if low < level < high]
+    levels = _levels(low, high)
     if not levels:
+        words = f"{wording.duration(low)} everywhere"
+        ax.text(0.02, 0.03, words, transform=ax.transAxes, fontsize=8.5, zorder=4)
         return
     lines = ax.contour(
         found.across.values,
@@ -139,3 +162,17 @@ def _contours(ax: Axes, found: Window) -> None:
     for text in texts:
         text.set_bbox({"facecolor": "white", "alpha": 0.8, "edgecolor": "none", "pad": 1.0})
         text.set_zorder(4)
+
+
+def _levels(low: float, high: float) -> list[float]:
+    """Times between two others that lines are drawn for [s]: familiar ones, or rounded ones."""
+    levels = [level for level in NICE if low < level < high]
+    if len(levels) >= FEW or not high > low * (1 + FLAT):
+        return levels
+    for digits in (1, 2, 3):
+        even = np.geomspace(low, high, LINES + 2)[1:-1]
+        rounded = sorted({float(f"{value:.{digits}g}") for value in even})
+        levels = [level for level in rounded if low < level < high]
+        if len(levels) >= FEW:
+            break
+    return levels

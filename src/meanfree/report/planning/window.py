@@ -141,16 +141,19 @@ def answers(found: Window, experiment: Experiment) -> list[Answer]:
         result += _span(found, experiment)
     base = _base(found)
     if base is not None:
-        against = "; ".join(base.stands_against) or "nothing stands against it"
-        time = wording.duration(base.time_s)
-        result.append(Answer("The case as it stands", f"{goal} after {time}", against))
+        against = "; ".join(base.stands_against)
+        if base.time_s is None:
+            reached = f"{goal} not reached in {wording.duration(found.until)}"
+        else:
+            reached = f"{goal} after {wording.duration(base.time_s)}"
+            against = against or "nothing stands against it"
+        result.append(Answer("The case as it stands", reached, against))
     return result
 
 
 def _largest(found: Window) -> str:
     shares = {name: float(mask.mean()) for name, mask in found.regions.items()}
-    if not shares:
-        return f"not reached in {wording.duration(found.until)}"
+    shares[f"not reached in {wording.duration(found.until)}"] = float(found.unreached.mean())
     name = max(shares, key=lambda key: shares[key])
     return f"mostly {name}"
 
@@ -189,6 +192,11 @@ def regions_sheet(found: Window) -> Sheet:
         mask = found.regions.get(name)
         share = 0.0 if mask is None else float(mask.mean())
         rows.append([name, wording.percent(share, 2), "" if share else "nowhere on this map"])
+    unreached = float(found.unreached.mean())
+    if unreached:
+        remark = "for no other reason"
+        name = f"not reached in {wording.duration(found.until)}"
+        rows.append([name, wording.percent(unreached, 2), remark])
     return Sheet(["Reason", "share of the map", "remark"], rows, words=(0, 2))
 
 
