@@ -6,6 +6,7 @@ import json
 import os
 import random
 import resource
+import shutil
 import subprocess
 import sys
 import time
@@ -210,6 +211,30 @@ def test_an_error_in_the_block_leaves_everything_as_it_was(tmp_path: Path) -> No
         raise KeyboardInterrupt
     assert number_in(target) == 1
     assert names(target.parent) == ["run"]
+
+
+@pytest.mark.parametrize("kind", ["file", "folder"])
+@pytest.mark.parametrize("replace", [False, True])
+def test_what_is_put_there_meanwhile_is_left_alone(
+    tmp_path: Path, kind: str, replace: bool
+) -> None:
+    """Checked before the writing, which takes a while, and once more after it."""
+    target = tmp_path / "run"
+    write(target, "a", 1)
+    with (
+        pytest.raises(InputError, match=r"^--out: found "),
+        fresh_folder(target, owner="a", replace=replace) as folder,
+    ):
+        (folder / "manifest.json").write_text('{"case_file": "a"}')
+        shutil.rmtree(target)
+        if kind == "file":
+            target.write_text("mine")
+        else:
+            target.mkdir()
+            (target / "notes.txt").write_text("mine")
+    mine = target if kind == "file" else target / "notes.txt"
+    assert mine.read_text() == "mine"
+    assert names(tmp_path) == ["run"]
 
 
 def test_other_errors_of_the_system_pass_through(tmp_path: Path) -> None:

@@ -100,6 +100,8 @@ def fresh_folder(
             try:
                 yield new
                 _seal(new, owner)
+                # Writing took its time: somebody may have put something of his own there.
+                refuse_if_taken(target, owner=owner, replace=replace)
                 _swap(target, aside)
             finally:
                 _recover(target, aside)
