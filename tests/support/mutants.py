@@ -184,7 +184,8 @@ def _wrongs(node: ast.AST) -> Iterator[ast.AST]:
         case ast.Constant(value=bool() as value):
             yield ast.Constant(not value)
         case ast.Constant(value=int() | float() as number):
-            yield ast.Constant(number + 1)
+            if number + 1 != number:
+                yield ast.Constant(number + 1)
             if number:
                 yield ast.Constant(2 * number)
                 yield ast.UnaryOp(ast.USub(), ast.Constant(number))
