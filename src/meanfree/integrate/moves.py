@@ -9,17 +9,17 @@ temperature follows from those numbers by the chain rule in the kernel.
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import numpy as np
 
-from meanfree.equations.system import Floats, System
+from meanfree.equations.system import Floats
 from meanfree.errors import InputError, Problem
 from meanfree.experiment.experiment import Experiment
 from meanfree.experiment.inputs import Input, inputs, with_inputs
 from meanfree.integrate.conditions import Block, blocks_of
-from meanfree.integrate.numbers import numbers_of, same_structure
-from meanfree.kernel.moving import BREAK, MovingVariation
+from meanfree.integrate.numbers import numbers_of, same_structure, structure_of
+from meanfree.kernel.moving import MovingVariation
 from meanfree.kernel.slots import Name
 
 STEP = 2e-3
@@ -42,7 +42,7 @@ END = ("end",)
 
 
 @dataclass(frozen=True)
-class _Stencil:
+class Stencil:
     """Values at which an input is tried, and the weights of the derivative."""
 
     values: Floats
@@ -93,7 +93,8 @@ def moving(block: Block, table: Mapping[str, Floats], addresses: Sequence[str]) 
     return MovingVariation(plain.system, plain.count, plain.values, tuple(found))
 
 
-def _stencil(at: Input, value: float) -> _Stencil:
+def stencil(at: Input, value: float) -> Stencil:
+    """Where to try an input that stands at ``value``, within its bounds."""
     span = value - at.low if np.isfinite(at.low) else abs(value)
     h = STEP * (span if span > 0 else 1.0)
     places, weights = CENTRAL
@@ -102,57 +103,43 @@ def _stencil(at: Input, value: float) -> _Stencil:
     elif value + 3 * h > at.high:
         places, weights = tuple(-p for p in AHEAD[0]), tuple(-w for w in AHEAD[1])
     values = value + h * np.array(places, float)
-    return _Stencil(values, np.array(weights) / h)
+    return Stencil(values, np.array(weights) / h)
 
 
 def _one_by_one(
     block: Block, table: Mapping[str, Floats], known: Mapping[str, Input]
 ) -> list[dict[Name, Floats]]:
     """Every System of every condition is built."""
-    count = len(block.rows)
+    count, problems = len(block.rows), list[Problem]()
+    structure = structure_of(block.variation.system)
     moves: list[dict[Name, Floats]] = []
     for address, at in known.items():
         rows: list[dict[Name, float]] = []
         for row in range(count):
             inputs_here = {a: float(column[row]) for a, column in table.items()}
-            stencil = _stencil(at, inputs_here.get(address, at.value))
-            seen = []
-            for value in stencil.values:
-                there = with_inputs(block.experiment, {**inputs_here, address: float(value)})
-                built = numbers_of(there)
-                _refuse_other_form(block.variation.system, built.system, address)
-                seen.append({**built.by_name, **_of_form(built.system)})
-            rows.append(_differenced(seen, stencil.weights))
+            tried = stencil(at, inputs_here.get(address, at.value))
+            built = [
+                numbers_of(with_inputs(block.experiment, {**inputs_here, address: float(value)}))
+                for value in tried.values
+            ]
+            if any(one.structure != structure for one in built):
+                problems.append(_other_form(address))
+                break
+            rows.append(_differenced([one.by_name for one in built], tried.weights))
         names = {name for row in rows for name in row}
         moves.append({name: np.array([row.get(name, 0.0) for row in rows]) for name in names})
+    if problems:
+        raise InputError(problems)
     return moves
 
 
-def _of_form(system: System) -> dict[Name, float]:
-    """Numbers that a Variation does not carry, but a direction may: breaks and stated heats."""
-    found: dict[Name, float] = {}
-    for place, segment in enumerate(system.segments):
-        for what in ("start", "retained", "temperature", "slope"):
-            found[BREAK, place, what] = float(getattr(segment, what))
-    for j in range(system.n_steps):
-        found["photon", j] = float(system.photon[j])
-        if not np.isnan(system.heat_given[j]):
-            found["heat", j] = float(system.heat_given[j])
-    return found
-
-
-def _refuse_other_form(one: System, other: System, address: str) -> None:
-    same = len(one.segments) == len(other.segments) and same_structure(
-        one,
-        replace(other, segments=one.segments, photon=one.photon, heat_given=one.heat_given),
+def _other_form(address: str) -> Problem:
+    return Problem(
+        "sensitivities",
+        f"{address!r}, at whose value the equations change their form",
+        "a value with some room on both sides: two breaks that coincide, say, part when one of "
+        "them moves",
     )
-    if not same:
-        raise InputError.at(
-            "sensitivities",
-            f"{address!r}, at whose value the equations change their form",
-            "a value with some room on both sides: two breaks that coincide, say, part when one "
-            "of them moves",
-        )
 
 
 def _differenced(seen: Sequence[Mapping[Name, float]], weights: Floats) -> dict[Name, float]:
@@ -175,7 +162,7 @@ def _together(
     weights: list[Floats] = []
     for address, at in known.items():
         here = table.get(address, np.full(count, at.value))
-        stencils = [_stencil(at, float(value)) for value in here]
+        stencils = [stencil(at, float(value)) for value in here]
         if len({len(s.values) for s in stencils}) > 1:
             return None
         for place in range(len(stencils[0].values)):
@@ -190,7 +177,7 @@ def _together(
         whole = next(iter(blocks_of(block.experiment, columns, count * len(shifted))))
     except InputError:
         return None
-    if len(whole.rows) < count * len(shifted) or whole.variation.system.mode == "program":
+    if len(whole.rows) < count * len(shifted):
         return None
     if not same_structure(whole.variation.system, block.variation.system):
         return None

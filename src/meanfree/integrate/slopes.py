@@ -6,18 +6,16 @@ The kernel integrates the variational equations together with the state; address
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 
 from meanfree.equations.system import Floats
-from meanfree.integrate.conditions import Block
-from meanfree.integrate.moves import moving
 from meanfree.kernel.engine import Task
 from meanfree.kernel.motion import Moment, Motion
 from meanfree.kernel.moving import BREAK, MovingVariation
-from meanfree.kernel.records import Floats as Columns
+from meanfree.kernel.slots import Name
 from meanfree.kernel.tangent_engine import TangentKernel
 from meanfree.kernel.watching import Functional
 
@@ -40,7 +38,7 @@ class Slopes:
 
 
 class SlopeRunner:
-    """The conditions of a block, ready to be integrated with derivatives by some addresses.
+    """Integrates conditions that move along the same directions as ``variation``.
 
     ``controlled``: the errors of derivatives count in the choice of steps as those of states do. A
     derivative is measured along a direction of such a length that the largest relative change of
@@ -49,27 +47,30 @@ class SlopeRunner:
     """
 
     def __init__(
-        self,
-        block: Block,
-        table: Mapping[str, Floats],
-        addresses: Sequence[str],
-        precision: tuple[float, float],
-        controlled: bool = True,
+        self, variation: MovingVariation, precision: tuple[float, float], controlled: bool = True
     ) -> None:
-        self.block, self.precision, self.addresses = block, precision, tuple(addresses)
-        self.variation = moving(block, table, addresses)
-        named = {n for each in self.variation.moves for n in each if n[0] != BREAK}
-        varied = frozenset(named | set(self.variation.values))
-        self.kernel = TangentKernel(self.variation, varied=varied, controlled=controlled)
-        self.motion = Motion(self.kernel.program.layout, self.kernel.tableau)
+        self.precision, self.n_directions = precision, len(variation.moves)
+        self.varied = _names(variation)
+        self.kernel = TangentKernel(variation, varied=self.varied, controlled=controlled)
         self.layout = self.kernel.program.layout
 
-    def run(self, start: int, stop: int, times: Floats, end: Floats) -> Slopes:
-        """Conditions ``start`` to ``stop``, each to its ``end`` [s, shape (count,)].
+    @cached_property
+    def motion(self) -> Motion:
+        """The equations, for single moments."""
+        return Motion(self.layout, self.kernel.tableau)
+
+    def serves(self, part: MovingVariation) -> bool:
+        """True where these conditions move along no more than what the kernel was made for."""
+        moved = part.directions(self.kernel.plain)
+        return _names(part) <= self.varied and all(
+            one <= known for one, known in zip(moved, self.layout.directions, strict=True)
+        )
+
+    def run(self, part: MovingVariation, times: Floats, end: Floats) -> Slopes:
+        """Some conditions, each to its ``end`` [s, shape (count,)].
 
         ``times`` [s, shape (count, n_times)], in any order, NaN where nothing is asked.
         """
-        part = self.variation.part(start, stop)
         lengths = part.lengths(self.kernel.plain)
         size, n = self.layout.size, self.layout.states
         order = np.argsort(times, axis=1, kind="stable")
@@ -87,13 +88,36 @@ class SlopeRunner:
         # The end of a run is kept to the last place, the last time of a grid may fall beside it.
         at_end = times >= end[:, None] * (1 - 1e-12)
         values = np.where(at_end[:, :, None], kept.ends[:, None, :size], values)
-        s = values[:, :, n:].reshape(*times.shape, len(self.addresses), n)
-        scale = np.stack([np.broadcast_to(one, part.count) for one in lengths], axis=1)
-        return Slopes(times, values[:, :, :n], s * scale[:, None, :, None], kept.marks)
+        s = values[:, :, n:].reshape(*times.shape, self.n_directions, n)
+        if lengths:
+            scale = np.stack([np.broadcast_to(one, part.count) for one in lengths], axis=1)
+            s = s * scale[:, None, :, None]
+        return Slopes(times, values[:, :, :n], s, kept.marks)
 
-    def moment(self, start: int, stop: int, found: Slopes, place: int) -> Moment:
+    def moment(self, part: MovingVariation, found: Slopes, place: int) -> Moment:
         """What the states at the time ``place`` of each condition do there."""
-        part: MovingVariation = self.variation.part(start, stop)
         y, s = found.y[:, place], found.s[:, place]
-        values: Columns = np.concatenate([y, s.reshape(len(y), -1)], axis=1)
+        values = np.concatenate([y, s.reshape(len(y), -1)], axis=1)
         return self.motion.at(part, values, found.times[:, place])
+
+
+def _names(variation: MovingVariation) -> frozenset[Name]:
+    """Numbers that differ from those of the System, or move."""
+    moved = {name for each in variation.moves for name in each if name[0] != BREAK}
+    return frozenset(moved | set(variation.values))
+
+
+def retained(part: MovingVariation, times: Floats) -> tuple[Floats, Floats]:
+    """What samples left by some times [(n,)], and its derivatives [(n_directions, n)].
+
+    ``times`` are one for each condition, or several of one condition.
+    """
+    left, slope = np.ones(len(times)), np.zeros((len(part.moves), len(times)))
+    for place in range(len(part.system.segments)):
+        kept = part.get(BREAK, place, "retained")
+        past = times > part.get(BREAK, place, "start")
+        for k in range(len(part.moves)):
+            moved = part.moved(k, BREAK, place, "retained")
+            slope[k] = np.where(past, slope[k] * kept + left * moved, slope[k])
+        left = np.where(past, left * kept, left)
+    return left, slope

@@ -14,8 +14,9 @@ from meanfree.constants import R
 from meanfree.equations.system import Floats
 from meanfree.integrate.conditions import Block
 from meanfree.integrate.many import Chunk, Runner
+from meanfree.integrate.moves import moving
 from meanfree.integrate.observables import At, EndTime, HalfLife, Observable, Peak, ReactionTime
-from meanfree.integrate.slopes import SlopeRunner
+from meanfree.integrate.slopes import SlopeRunner, retained
 from meanfree.kernel.motion import Moment
 from meanfree.kernel.moving import BREAK
 from meanfree.kernel.resting import LEFT
@@ -40,7 +41,8 @@ class SlopingRunner:
         self.events = list(dict.fromkeys(_events(observables)))
         asked = [*observables, *self.events, EndTime()]
         self.inner = Runner(block, asked, precision)
-        self.slopes = SlopeRunner(block, table, addresses, precision)
+        self.variation = moving(block, table, addresses)
+        self.slopes = SlopeRunner(self.variation, precision)
         self.names = [name for o in observables for name in o.columns]
 
     def prepare(self, size: int) -> None:
@@ -82,8 +84,8 @@ class _Here:
         ends: Floats,
         endings: np.ndarray,
     ) -> None:
-        self.runner, self.span, self.ends = runner, (start, stop), ends
-        self.part = runner.slopes.variation.part(start, stop)
+        self.runner, self.ends = runner, ends
+        self.part = runner.variation.part(start, stop)
         self.system, self.before = self.part.system, endings
         self.automatic = runner.inner.block.end is None
         times: dict[object, Floats] = {"end": ends}
@@ -98,7 +100,7 @@ class _Here:
         finish = np.where(np.isfinite(finish) & (finish > 0), finish, 1e-30)
         times["finish"] = finish
         self.places = {key: place for place, key in enumerate(times)}
-        self.found = runner.slopes.run(start, stop, np.array(list(times.values())).T, finish)
+        self.found = runner.slopes.run(self.part, np.array(list(times.values())).T, finish)
         marks = self.found.marks[:, 0]
         good = np.isin(endings, [int(e) for e in Ending if e.is_good])
         self.endings = np.where(good & (marks != Ending.REACHED), marks, endings)
@@ -121,7 +123,7 @@ class _Here:
     def _moment(self, key: object) -> Moment:
         if key not in self.moments:
             place = self.places[key]
-            self.moments[key] = self.runner.slopes.moment(*self.span, self.found, place)
+            self.moments[key] = self.runner.slopes.moment(self.part, self.found, place)
         return self.moments[key]
 
     def _s(self, key: object) -> Floats:
@@ -136,33 +138,23 @@ class _Here:
         each = [self.part.moved(k, *name) for k in range(len(self.part.moves))]
         return np.array([np.broadcast_to(one, self.part.count) for one in each])
 
-    def _retained(self, times: Floats) -> tuple[Floats, Floats]:
-        """What samples left by some times, and its derivatives."""
-        left, slope = np.ones(self.part.count), np.zeros((len(self.part.moves), self.part.count))
-        for place, segment in enumerate(self.system.segments):
-            past = times > segment.start
-            moved = self._moved(BREAK, place, "retained")
-            slope = np.where(past, slope * segment.retained + left * moved, slope)
-            left = np.where(past, left * segment.retained, left)
-        return left, slope
-
     def _level(self, o: ReactionTime) -> Floats:
         """A level of what is left of a gas: g = x - level theta x0."""
         i, level = self.system.gases.index(o.gas), 1.0 - o.conversion
         times = self.found.times[:, self.places[o]]
-        retained, slope = self._retained(times)
+        left, slope = retained(self.part, times)
         x0, dx0 = self.part.get("x", i), self._moved("x", i)
-        change = self._s(o)[:, :, i] - level * (retained * dx0 + slope * x0)
+        change = self._s(o)[:, :, i] - level * (left * dx0 + slope * x0)
         with np.errstate(divide="ignore", invalid="ignore"):
             return np.asarray(-change / self._moment(o).y[:, i])
 
     def _at_break(self, times: Floats, inside: Floats) -> Floats:
         """``inside``, but what happens at a break moves with it, and at time zero not at all."""
         slope = np.where(times <= 0, 0.0, inside)
-        for place, segment in enumerate(self.system.segments):
-            if segment.start > 0:
-                near = np.abs(times - segment.start) <= 1e-12 * segment.start
-                slope = np.where(near, self._moved(BREAK, place, "start"), slope)
+        for place in range(1, len(self.system.segments)):
+            start = self.part.get(BREAK, place, "start")
+            near = np.abs(times - start) <= 1e-12 * start
+            slope = np.where(near, self._moved(BREAK, place, "start"), slope)
         return slope
 
     def _peak(self, o: Peak) -> Iterator[Floats]:
@@ -245,7 +237,7 @@ class _Here:
         with np.errstate(divide="ignore", invalid="ignore"):
             if o.quantity == "mole fraction":
                 return np.asarray(dx / total - x * d_total / total**2)
-            retained, d_retained = self._retained(times)
-            start = retained * part.get("x", i)
-            d_start = retained * self._moved("x", i) + d_retained * part.get("x", i)
+            left, d_left = retained(part, times)
+            start = left * part.get("x", i)
+            d_start = left * self._moved("x", i) + d_left * part.get("x", i)
             return np.asarray(-dx / start + x * d_start / start**2)

@@ -5,6 +5,7 @@ Needed where something happens: the derivative of an event's time is -g'/(dg/dt)
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -47,9 +48,12 @@ class Motion:
         """At states with their derivatives [shape (count, size)] and times [s, shape (count,)]."""
         layout, count = self.layout, len(values)
         slots = {layout.state + i: values[:, i] for i in range(layout.size)}
-        segments = variation.system.segments
-        where = np.searchsorted([s.start for s in segments], np.nan_to_num(times), "left") - 1
-        where = np.maximum(where, 0)
+        starts = [
+            np.broadcast_to(variation.get(BREAK, place, "start"), count)
+            for place in range(1, len(variation.system.segments))
+        ]
+        where = np.sum([times > start for start in starts], axis=0, initial=0)
+        where = np.broadcast_to(np.asarray(where, int), count)
         for name in layout.parameters:
             slots[layout.parameter(*name)] = self._parameter(variation, name, where)
         found = [np.broadcast_to(v, count) for v in on_columns(self.tape, self.wanted, slots)]
@@ -63,12 +67,19 @@ class Motion:
         """A parameter in the segment of every time."""
         segments = variation.system.segments
         if name[0] == "slope":
-            return np.asarray(np.array([s.slope for s in segments])[where])
+            return _picked([variation.get(BREAK, i, "slope") for i in range(len(segments))], where)
         if name[0] == "switch":
             on = [1.0 if s.switches is None else s.switches[int(name[1])] for s in segments]
             return np.asarray(np.array(on)[where])
         if name[0] == TANGENT and name[2:] == ("slope",):
-            each = [variation.moved(int(name[1]), BREAK, i, "slope") for i in range(len(segments))]
-            table = np.array([np.broadcast_to(one, len(where)) for one in each])
-            return np.asarray(table[where, np.arange(len(where))])
+            k = int(name[1])
+            return _picked(
+                [variation.moved(k, BREAK, i, "slope") for i in range(len(segments))], where
+            )
         return parameter(self.layout, variation, name)
+
+
+def _picked(each: Sequence[Floats], where: np.ndarray) -> Floats:
+    """Of one array a segment, the entry of the segment that counts."""
+    table = np.array([np.broadcast_to(one, len(where)) for one in each])
+    return np.asarray(table[where, np.arange(len(where))])

@@ -80,9 +80,9 @@ class MovingVariation(Variation):
         return self.moved(k, *name)
 
     def start(self, layout: Layout) -> list[Floats]:
-        """Derivatives of the state at time zero, direction after direction."""
+        """Derivatives of the state at time zero, in the directions of a layout one by one."""
         found = []
-        for k in range(len(self.moves)):
+        for k in range(len(layout.directions)):
             block = [np.zeros(1)] * layout.states
             block[: self.system.n_gases] = [
                 self.moved(k, "x", i) for i in range(self.system.n_gases)
