@@ -278,7 +278,8 @@ def test_a_stated_area_and_a_piston() -> None:
     assert k_w(law, bag) == pytest.approx(1e-3 * SPEED * 0.09 / 2e-3 / 4, rel=1e-12)
     assert list(law.cautions(inside(bag))) == [
         "wall loss of H: γ v S/(4 V), with no hindrance by diffusion.",
-        "the surface of the piston over its volume is kept at what it is at filling.",
+        "the surface of the piston over its volume is kept at what it is at filling: k of the "
+        "wall is off by about as much as the volume changes.",
     ]
 
 

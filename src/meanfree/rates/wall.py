@@ -226,7 +226,10 @@ class Wall(Law):
                 f"the width of the vessel, {inside.radius * 2e3:.3g} mm."
             )
         if context.surroundings is not None and not context.surroundings.is_rigid:
-            yield "the surface of the piston over its volume is kept at what it is at filling."
+            yield (
+                "the surface of the piston over its volume is kept at what it is at filling: k of "
+                "the wall is off by about as much as the volume changes."
+            )
 
 
 _FORMS: dict[str, str] = {
