@@ -93,6 +93,7 @@ def test_a_negative_amount_beyond_the_tolerance_is_said():
     run = integrate(case)
     left = run.state(9.0)[0, 0]
     assert spoilt(run, 0, -left - 0.9e-6).failures == ()
+    assert len(spoilt(run, 0, -left - 1.1e-6).failures) == 1
     found = spoilt(run, 0, -left - 2e-3)
     assert found.failures == ("A went negative, to -2.0e-03 mol/m^3",)
     assert found.most_negative == pytest.approx(2e-3, rel=1e-6)
