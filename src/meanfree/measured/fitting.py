@@ -21,9 +21,6 @@ from meanfree.measured.parameters import Parameter, parameters_of, scales_of
 from meanfree.measured.profiles import BetterMinimum, Profile, profile
 from meanfree.measured.runs import MeasuredRun
 
-STEP_OF_INTEGRATION: Final[float] = 1e-3
-"""Step of differences where predictions are integrated to 1e-10: 1e-7 by either error."""
-
 DECADES: Final[tuple[int, ...]] = (-12, -9, -6, -4, -3, -2, -1, 1, 2, 3, 4, 6, 9, 12)
 """Powers of ten by which a guess is tried to be off."""
 
@@ -50,8 +47,6 @@ def fit(request: FitRequest) -> Fit:
     misfit = Misfit(request.runs, parameters)
     _enough(misfit)
     scales = scales_of(parameters, T)
-    if not all(misfit.exact):
-        scales = replace(scales, step=STEP_OF_INTEGRATION)
     misfit, solution = _minimised(misfit, scales, request)
     for _ in range(3):
         cov = covariance(solution)

@@ -154,7 +154,8 @@ def solve(
     ----------
     residuals : parameters [shape (n,)] to residuals [shape (m,)] in units of their deviation
     scales : start, bounds and sizes of the parameters
-    jacobian : its derivative [shape (m, n)]; None: central differences
+    jacobian : its derivative [shape (m, n)]; None: what ``residuals.jacobian(parameters, scales)``
+        gives, where it has that, else central differences
     loss, width : robust loss, and the residual beyond which it takes effect
     starts : further starting points, each of shape (n,); the lowest minimum counts
     most : evaluations after which a start is given up
@@ -212,7 +213,12 @@ class _Inner:
         if self.given is not None:
             return np.asarray(self.given(x), float)
         if self.last_slope[0] != x.tobytes():
-            self.last_slope = (x.tobytes(), differences(_Watched(self), x, self.scales))
+            own = getattr(self.f, "jacobian", None)
+            if own is None:
+                found = differences(_Watched(self), x, self.scales)
+            else:
+                found = np.asarray(own(x, self.scales), float)
+            self.last_slope = (x.tobytes(), found)
         return self.last_slope[1].copy()
 
     def jacobian(self, z: Floats) -> Floats:

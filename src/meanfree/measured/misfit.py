@@ -4,13 +4,15 @@ from __future__ import annotations
 
 import math
 from collections.abc import Mapping, Sequence
+from dataclasses import replace
+from typing import TYPE_CHECKING
 
 import numpy as np
 
 from meanfree.equations.system import Floats
 from meanfree.errors import ComputationError, InputError
 from meanfree.experiment.experiment import Experiment
-from meanfree.measured.batches import predict_many
+from meanfree.measured.least_squares import Scales, differences
 from meanfree.measured.parameters import (
     SIGNAL_OFFSET,
     TIME_OFFSET,
@@ -18,17 +20,21 @@ from meanfree.measured.parameters import (
     applied,
     changes,
     offset_of,
+    unit_of,
 )
 from meanfree.measured.prediction import Prediction, is_exact, predict
 from meanfree.measured.runs import MeasuredRun
-from meanfree.measured.signals import predicted
+from meanfree.measured.signals import changed, predicted
+
+if TYPE_CHECKING:
+    from meanfree.measured.predictor import Predictor
 
 HOPELESS = 1e140
 """Residual of a prediction that cannot be computed: any step back is an improvement."""
 
-
-FEWEST_TOGETHER = 3
-"""Fewer predictions than this are integrated one by one: a call for many costs about two."""
+STEP_OF_INTEGRATION = 1e-3
+"""Step of differences where predictions are integrated one by one to 1e-10: 1e-7 by either error.
+Only where the kernel cannot give derivatives."""
 
 
 def rate_constant_at(experiment: Experiment, name: str, temperatures: Floats) -> Floats:
@@ -63,11 +69,9 @@ def curves(
     parameters: Sequence[Parameter],
     rows: Sequence[Floats],
     times: Floats | None = None,
-    exact: bool | None = None,
+    predictor: Predictor | None = None,
 ) -> list[Floats]:
-    """`curve` for several sets of values, integrated together where there is no formula.
-
-    ``exact`` says whether there is one, where that is known already.
+    """`curve` for several sets of values; a ``predictor`` integrates them together.
 
     Raises ComputationError or InputError where one of them cannot be had.
     """
@@ -85,7 +89,7 @@ def curves(
     return [
         predicted(readings.signal, found) + offset_of(SIGNAL_OFFSET, place, parameters, row)
         for found, row in zip(
-            _predictions(run, place, parameters, rows, since, exact), rows, strict=True
+            _predictions(run, place, parameters, rows, since, predictor), rows, strict=True
         )
     ]
 
@@ -96,16 +100,11 @@ def _predictions(
     parameters: Sequence[Parameter],
     rows: Sequence[Floats],
     times: Sequence[Floats],
-    exact: bool | None,
+    predictor: Predictor | None,
 ) -> list[Prediction]:
-    changed = changes(place, parameters, rows[0])
-    if exact is None:
-        exact = is_exact(run.experiment)
-    if changed and not exact and len(rows) >= FEWEST_TOGETHER:
+    if predictor is not None:
         try:
-            return predict_many(
-                run.experiment, [changes(place, parameters, row) for row in rows], times
-            )
+            return predictor.many([changes(place, parameters, row) for row in rows], times)
         except ComputationError:
             pass  # one by one, then: another integrator may do what the compiled one could not
     return [
@@ -126,6 +125,7 @@ class Misfit:
         runs: Sequence[MeasuredRun],
         parameters: Sequence[Parameter],
         estimates: Mapping[str, float] | None = None,
+        predictors: Sequence[Predictor | None] | None = None,
     ) -> None:
         self.runs, self.parameters = tuple(runs), tuple(parameters)
         self.groups = tuple(
@@ -137,10 +137,20 @@ class Misfit:
                 # Any number does: it is put right by the scatter about the first fit.
                 self.estimates[group] = 0.01 * float(np.ptp(_value(run)))
         self.sizes = tuple(len(run.readings) for run in self.runs)
-        self.exact = tuple(
-            run.readings.signal.is_rate_constant or is_exact(run.experiment) for run in runs
-        )
+        if predictors is None:
+            predictors = [self._predictor(place) for place in range(len(self.runs))]
+        self.predictors = tuple(predictors)
         self.priors = tuple((i, p) for i, p in enumerate(parameters) if p.prior is not None)
+
+    def _predictor(self, place: int) -> Predictor | None:
+        """The compiled integrator of a run, None where there is a formula."""
+        run = self.runs[place]
+        if run.readings.signal.is_rate_constant or is_exact(run.experiment):
+            return None
+        from meanfree.measured.predictor import Predictor
+
+        keys = changes(place, self.parameters, np.ones(len(self.parameters)))
+        return Predictor(run.experiment, tuple(keys))
 
     @property
     def n_readings(self) -> int:
@@ -149,7 +159,7 @@ class Misfit:
 
     def with_deviations(self, estimates: Mapping[str, float]) -> Misfit:
         """The same residuals with other estimated deviations."""
-        return Misfit(self.runs, self.parameters, estimates)
+        return Misfit(self.runs, self.parameters, estimates, self.predictors)
 
     def natural(self, inner: Floats) -> Floats:
         """Values in the file's unit of inner coordinates."""
@@ -168,20 +178,22 @@ class Misfit:
         return self._differences([inner])[0]
 
     def _differences(self, rows: Sequence[Floats]) -> list[list[Floats]]:
-        values = [self.natural(inner) for inner in rows]
-        found: list[list[Floats]] = [[] for _ in rows]
-        for place, run in enumerate(self.runs):
-            try:
-                with np.errstate(all="ignore"):
-                    shown = curves(run, place, self.parameters, values, None, self.exact[place])
-            except (ComputationError, InputError, ArithmeticError, ValueError):
-                shown = [np.full(len(run.readings), np.nan) for _ in rows]
-            for each, one in zip(found, shown, strict=True):
-                if run.readings.signal.is_rate_constant:
-                    one = np.log(np.maximum(one, 1e-300))
-                difference = _value(run) - one
-                each.append(np.where(np.isfinite(difference), difference, HOPELESS))
-        return found
+        each = [self.of_run(place, rows) for place in range(len(self.runs))]
+        return [list(of_runs) for of_runs in zip(*each, strict=True)]
+
+    def of_run(self, place: int, rows: Sequence[Floats]) -> list[Floats]:
+        """Reading less prediction of one run, at several sets of inner coordinates."""
+        run, values = self.runs[place], [self.natural(inner) for inner in rows]
+        predictor = self.predictors[place]
+        try:
+            with np.errstate(all="ignore"):
+                shown = curves(run, place, self.parameters, values, None, predictor)
+        except (ComputationError, InputError, ArithmeticError, ValueError):
+            shown = [np.full(len(run.readings), np.nan) for _ in rows]
+        if run.readings.signal.is_rate_constant:
+            shown = [np.log(np.maximum(one, 1e-300)) for one in shown]
+        found = [_value(run) - one for one in shown]
+        return [np.where(np.isfinite(one), one, HOPELESS) for one in found]
 
     def __call__(self, inner: Floats) -> Floats:
         """Residuals of all readings, then of the priors, in standard deviations."""
@@ -202,6 +214,63 @@ class Misfit:
             parts.append(np.array([(values[i] - parameter.prior.value) / parameter.prior.sd]))
         return np.concatenate(parts)
 
+    def jacobian(self, inner: Floats, scales: Scales) -> Floats:
+        """Derivatives of the residuals by the inner coordinates [shape (m, n)].
+
+        By the variational equations where a run is integrated, by differences of the formula where
+        there is one; ``scales`` are those of the coordinates.
+        """
+        values = self.natural(inner)
+        by_inner = np.array(
+            [v if p.logarithmic else 1.0 for p, v in zip(self.parameters, values, strict=True)]
+        )
+        parts = []
+        for place in range(len(self.runs)):
+            slopes = self._of_integrated(place, values)
+            if slopes is None:
+                step = scales.step if self.predictors[place] is None else STEP_OF_INTEGRATION
+                of_run = _OfRun(self, place)
+                part = differences(of_run, inner, replace(scales, step=step))
+            else:
+                part = -slopes * by_inner
+            parts.append(part / self.deviation(place)[:, None])
+        for i, parameter in self.priors:
+            assert parameter.prior is not None
+            row = np.zeros((1, len(inner)))
+            row[0, i] = by_inner[i] / parameter.prior.sd
+            parts.append(row)
+        found = np.vstack(parts)
+        return np.where(np.isfinite(found), found, 0.0)
+
+    def _of_integrated(self, place: int, values: Floats) -> Floats | None:
+        """Derivatives of what a run shows, by the values in the file's unit [shape (m, n)].
+
+        None where the kernel has none to give.
+        """
+        predictor, run, parameters = self.predictors[place], self.runs[place], self.parameters
+        if predictor is None:
+            return None
+        signal, times = run.readings.signal, run.readings.times
+        since = np.maximum(times - offset_of(TIME_OFFSET, place, parameters, values), 0.0)
+        try:
+            with np.errstate(all="ignore"):
+                found = predictor.differentiated(changes(place, parameters, values), since)
+        except (ComputationError, InputError, ArithmeticError, ValueError):
+            return None
+        slopes = np.zeros((len(times), len(parameters)))
+        for i, parameter in enumerate(parameters):
+            if place not in parameter.runs:
+                continue
+            if not parameter.is_offset:
+                by = found.by_input[parameter.key]
+                slopes[:, i] = changed(signal, found.prediction, by)
+                continue
+            slopes[:, i] = unit_of(parameter)
+            if parameter.key == TIME_OFFSET:
+                rate = changed(signal, found.prediction, found.by_time)
+                slopes[:, i] *= np.where(since > 0, -rate, 0.0)
+        return slopes
+
     def log_likelihood(self, residuals: Floats) -> float:
         """ln L of Gaussian readings; estimated deviations at their most likely value."""
         total, start = 0.0, 0
@@ -220,6 +289,19 @@ class Misfit:
         for sum_of_squares, n in squares.values():
             total -= 0.5 * n * (math.log(2 * math.pi * max(sum_of_squares, 1e-300) / n) + 1)
         return total
+
+
+class _OfRun:
+    """Reading less prediction of one run, one point at a time or several together."""
+
+    def __init__(self, misfit: Misfit, place: int) -> None:
+        self.misfit, self.place = misfit, place
+
+    def __call__(self, inner: Floats) -> Floats:
+        return self.together([inner])[0]
+
+    def together(self, rows: Sequence[Floats]) -> list[Floats]:
+        return self.misfit.of_run(self.place, rows)
 
 
 def _value(run: MeasuredRun) -> Floats:

@@ -230,6 +230,12 @@ def offset_of(key: str, place: int, parameters: Sequence[Parameter], values: Flo
     return 0.0
 
 
+def unit_of(parameter: Parameter) -> float:
+    """One of a parameter's unit in SI, as a difference."""
+    zero, one = (units.to_si(v, parameter.unit, parameter.dimension) for v in (0.0, 1.0))
+    return one - zero
+
+
 def scales_of(parameters: Sequence[Parameter], temperature: float | None) -> Scales:
     """Start, bounds, sizes and basis of the inner coordinates.
 

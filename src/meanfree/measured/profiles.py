@@ -146,6 +146,8 @@ class _OfOthers:
         self.walk, self.u = walk, u
         if hasattr(walk.residuals, "together"):
             self.together = self._together
+        if hasattr(walk.residuals, "jacobian"):
+            self.jacobian = self._jacobian
 
     def __call__(self, rest: Floats) -> Floats:
         return self.walk.residuals(self.walk.joined(self.u, rest))
@@ -155,6 +157,13 @@ class _OfOthers:
             [self.walk.joined(self.u, rest) for rest in points]
         )
         return several
+
+    def _jacobian(self, rest: Floats, scales: Scales) -> Floats:
+        walk = self.walk
+        whole = walk.residuals.jacobian(  # type: ignore[attr-defined]
+            walk.joined(self.u, rest), walk.scales
+        )
+        return np.asarray(whole[:, walk.others])
 
 
 def _end(walk: _Walk, sign: float, threshold: float, farthest: float) -> float:

@@ -114,6 +114,53 @@ def predicted(signal: Signal, prediction: Prediction) -> Floats:
     return c
 
 
+@dataclass(frozen=True)
+class Change:
+    """How a prediction changes with something: the derivatives of its parts.
+
+    ``x`` [shape (n_gases, n_times)], ``spread``, ``temperature`` and ``retained`` [(n_times,)],
+    ``filled`` [(n_gases,)] of the amounts over V(0) at time zero.
+    """
+
+    x: Floats
+    spread: Floats
+    temperature: Floats
+    retained: Floats
+    filled: Floats
+
+
+def changed(signal: Signal, at: Prediction, by: Change) -> Floats:
+    """The derivative of `predicted` [SI, shape (n_times,)]."""
+    gases = at.system.gases
+
+    def concentration(x: Floats, dx: Floats) -> Floats:
+        return np.asarray(dx / at.spread - x * by.spread / at.spread**2)
+
+    total, d_total = at.total_concentration, concentration(at.x.sum(axis=0), by.x.sum(axis=0))
+    if signal.kind == TOTAL_PRESSURE:
+        return np.asarray(R * (d_total * at.temperature + total * by.temperature))
+    if signal.kind == ABSORBANCE:
+        assert signal.path is not None, "the loader asks for the path"
+        places = [(gases.index(gas), c.value) for gas, c in signal.coefficients.items()]
+        each = [c * concentration(at.x[i], by.x[i]) for i, c in places]
+        return np.asarray(signal.path.value * np.sum(each, axis=0))
+    summed = [gases.index(gas) for gas in signal.gases]
+    x, dx = at.x[summed].sum(axis=0), by.x[summed].sum(axis=0)
+    if signal.kind == "conversion":
+        filled, d_filled = sum(at.filled(gas) for gas in signal.gases), by.filled[summed].sum()
+        start = filled * at.retained
+        d_start = d_filled * at.retained + filled * by.retained
+        return np.asarray(-dx / start + x * d_start / start**2)
+    c, dc = x / at.spread, concentration(x, dx)
+    if signal.kind == "partial pressure":
+        return np.asarray(R * (dc * at.temperature + c * by.temperature))
+    if signal.kind == "number density":
+        return dc * N_A
+    if signal.kind == "mole fraction":
+        return np.asarray(dc / total - c * d_total / total**2)
+    return dc
+
+
 def coefficient_as_used(value: float, *, per_molecule: bool, base: str, written: str) -> float:
     """An absorption coefficient [m^2/mol] in the base of the readings.
 
