@@ -12,6 +12,7 @@ import numpy as np
 import pytest
 from laboratory import experiment, si, step
 
+from meanfree.errors import ComputationError
 from meanfree.experiment.samples import Sample
 from meanfree.experiment.temperature import Adiabatic, Exchange
 from meanfree.gases.energies import thermochemistry_of
@@ -219,3 +220,17 @@ def test_labels_among_real_gases_conserve_nothing_by_name():
     names, table = composition(idle)
     assert names == ["Ar", "N", "O"]
     assert table[:, 1].tolist() == [0.0, 0.0, 0.0]
+
+
+def test_a_catalyst_is_not_consumed():
+    run = integrate(experiment([step("A + E -> B + E", 0.3)], {"A": 1.0, "E": 0.5}, until=2.0))
+    assert run.consumed == ("A",)
+
+
+def test_growth_is_judged_over_what_was_filled():
+    """A -> 2 A from 50 mol/m3: a billion times that, not of one, and so no sooner."""
+    with pytest.raises(ComputationError) as caught:
+        integrate(experiment([step("A -> 2 A", 0.3)], {"A": 50.0}))
+    time = float(str(caught.value).split(" by ")[1].split(" s,")[0])
+    # the step that passed the bound ends within a tenth of the way
+    assert np.log(1e9) / 0.3 <= time < 1.1 * np.log(1e9) / 0.3
