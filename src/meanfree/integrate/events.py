@@ -10,6 +10,9 @@ from scipy.optimize import brentq
 from meanfree.equations.system import Floats
 from meanfree.integrate.trajectory import Trajectory
 
+REACHED = 1e-13
+"""A level that the end of a run misses by this fraction of it, rounding, was reached there."""
+
 Quantity = Callable[[Floats], Floats]
 """A quantity as a function of times [shape (n_times,)]."""
 
@@ -31,6 +34,10 @@ def crossings(
         found.append(_root(quantity, level, float(grid[i]), float(grid[i + 1])))
         if first_only:
             break
+    # A run that was ended because it came to a level ends there, not one rounding before it.
+    missed = abs(float(difference[-1]))
+    if not found and len(grid) > 1 and 0 < missed <= REACHED * abs(level):
+        found.append(float(grid[-1]))
     return found
 
 

@@ -23,6 +23,7 @@ from meanfree.integrate.observables import (
     QUANTITIES,
     At,
     EndTime,
+    HalfLife,
     HighestPressure,
     Observable,
     ReactionTime,
@@ -197,8 +198,14 @@ class Runs:
         return SlopingRunner(block, table, self.observables, self.precision, self.sensitivities)
 
 
+def _counts_conversion(o: Observable) -> bool:
+    """Whether an observable counts what reaction consumed, apart from what flowed out."""
+    return isinstance(o, ReactionTime | HalfLife) or getattr(o, "quantity", "") == "conversion"
+
+
 def _refuse(experiment: Experiment, observables: Sequence[Observable], sloping: bool) -> None:
     gases = set(experiment.gas_named)
+    leaving = {gas for step in experiment.flow_steps for gas, _ in step.reactants}
     problems = []
     if not experiment.vessel.is_rigid and any(s.volume is not None for s in experiment.samples):
         expected = "samples as fractions: what a volume takes of a piston differs from run to run"
@@ -222,5 +229,10 @@ def _refuse(experiment: Experiment, observables: Sequence[Observable], sloping: 
             problems.append(
                 Problem("observables", f"conversion {o.conversion:g}", "between 0 and 1")
             )
+        elif gas in leaving and _counts_conversion(o):
+            # What outflow left of the gas is an integral over the run that lanes do not carry.
+            found = f"conversions of {gas}, which also flows out"
+            expected = "amounts or concentrations; `run` follows such conversions, one by one"
+            problems.append(Problem("observables", found, expected))
     if problems:
         raise InputError(problems)

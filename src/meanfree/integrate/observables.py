@@ -179,7 +179,11 @@ class At:
 
 
 def levels_of(gas: int, fractions: list[float], variation: Variation) -> Functional:
-    """What is left of a filled gas, as fractions of its start in the order they are reached."""
+    """What is left of a filled gas, as fractions of its start in the order they are reached.
+
+    Of a gas that is not filled nothing is ever left or gone: its levels are NaN.
+    """
     start = variation.get("x", gas)
+    start = np.where(start > 0, start, np.nan)
     levels = np.outer(start, sorted(fractions, reverse=True))
     return Functional(((gas, 1.0),), levels=levels, shrinks=True)

@@ -222,12 +222,22 @@ class Run:
         return (*self.beyond, *stopped)
 
     def reaction_time(self, gas: str, conversion: float) -> float | None:
-        """First time [s] at which a filled gas reaches a conversion; None if it does not."""
+        """First time [s] at which a filled gas reaches a conversion; None if it does not.
+
+        None as well for a gas that was not filled, which has no conversion.
+        """
+        if not self.system.initial_x[self.index(gas)] > 0:
+            return None
         return first_crossing(self.trajectory, lambda t: self.remaining(gas, t), 1.0 - conversion)
 
     def half_lives(self, gas: str) -> list[HalfLife]:
-        """Successive half-lives of a filled gas; the last entry is the one not finished."""
+        """Successive half-lives of a filled gas; the last entry is the one not finished.
+
+        None at all for a gas that was not filled.
+        """
         found: list[HalfLife] = []
+        if not self.system.initial_x[self.index(gas)] > 0:
+            return found
         start = 0.0
         for ordinal in range(1, MOST_HALF_LIVES + 1):
             level = 0.5**ordinal

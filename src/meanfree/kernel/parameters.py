@@ -19,6 +19,9 @@ from meanfree.equations.system import Floats, System, Thermal
 from meanfree.kernel.slots import Layout, Name
 from meanfree.rates.law import NUMBERS
 
+OF_ITS_OWN = 1e-12
+"""Absolute tolerance over the fill of any filled gas, where that is less than over the total."""
+
 
 @dataclass(frozen=True)
 class Variation:
@@ -151,6 +154,15 @@ def parameter(layout: Layout, variation: Variation, name: Name) -> Floats:
     return variation.get(*name)
 
 
+def _least_filled(variation: Variation) -> Floats:
+    """The smallest amount of a filled gas over V0 [mol/m^3, shape (count,) or (1,)]."""
+    least = np.full(1, np.inf)
+    for i in range(variation.system.n_gases):
+        x = variation.get("x", i)
+        least = np.minimum(least, np.where(x > 0, x, np.inf))
+    return least
+
+
 def columns(layout: Layout, variation: Variation, atol: float, end: Floats) -> list[Floats]:
     """Everything a lane takes in: state, parameters, three absolute tolerances, end [s].
 
@@ -167,5 +179,6 @@ def columns(layout: Layout, variation: Variation, atol: float, end: Floats) -> l
         state[layout.T_index] = variation.get("T")
     state += variation.start(layout)
     parameters = [parameter(layout, variation, name) for name in layout.parameters]
-    tolerances = [atol * total, 1e-12 * total, 1e-9 * total * 8.3 * 300]
+    absolute = np.minimum(atol * total, OF_ITS_OWN * _least_filled(variation))
+    tolerances = [absolute, 1e-12 * total, 1e-9 * total * 8.3 * 300]
     return [*state, *parameters, *tolerances, end]
