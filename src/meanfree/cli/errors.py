@@ -53,11 +53,27 @@ def report_errors(call: Callable[[], Any], *, as_json: bool, commands: Sequence[
         return stop.code if isinstance(stop.code, int) else 1
     except MemoryError:
         return _tell_failure("There is not enough memory for this.", 1, as_json)
+    except ImportError as error:
+        if not any(words in str(error) for words in ("map segment", "allocate memory")):
+            return _tell_failure(_unexpected(error), 1, as_json)
+        return _tell_failure("There is not enough memory for this.", 1, as_json)
     except OSError as error:
         return _tell_place(error, as_json)
     except Exception as error:  # noqa: BLE001 -- the last net: one line instead of a traceback
+        if _comes_of_interruption(error):
+            told("Interrupted.", sys.stderr)
+            return interrupted_status()
         return _tell_failure(_unexpected(error), 1, as_json)
     return status if isinstance(status, int) else 0
+
+
+def _comes_of_interruption(error: BaseException | None) -> bool:
+    """True where Ctrl-C fell into code that made another error of it."""
+    while error is not None:
+        if isinstance(error, KeyboardInterrupt):
+            return True
+        error = error.__cause__ or error.__context__
+    return False
 
 
 def _reader_gone() -> int:

@@ -38,6 +38,9 @@ def prepare(*, as_json: bool) -> None:
     _end_tidily()
     # Figures are drawn to files, so nobody's choice of a window system may stop them.
     os.environ["MPLBACKEND"] = "agg"
+    # More threads bring our small matrices nothing, and where memory is short they wait for
+    # each other for ever.
+    os.environ.setdefault("OPENBLAS_NUM_THREADS", "1")
 
 
 def end() -> None:
