@@ -1,9 +1,9 @@
 """How the kernel's errors lie over random mechanisms and conditions.
 
 ``--minutes N`` works out references by collocation of order 13 (`compiled_reference`), with
-``--radau`` by scipy's Radau, spread over 200 mechanisms of `plain_mechanisms` with 50 conditions each; what was
-worked out is kept in ``--store`` and a rerun goes on from there. Without ``--minutes`` it compares
-the answers of `integrate.many` with what there is and prints how the errors lie.
+``--radau`` by scipy's Radau, spread over 200 mechanisms of `plain_mechanisms` with 50 conditions
+each; what was worked out is kept in ``--store`` and a rerun goes on from there. Without
+``--minutes`` it compares the answers of `integrate.many` with what there is and prints the errors.
 """
 
 from __future__ import annotations
