@@ -85,7 +85,8 @@ def _how_far(run: Run, summary: RunSummary, gas: GasAnswer) -> Answer:
         note = f"no equilibrium to state ({wording.clean(summary.equilibrium.why_none or '')})"
     if furthest := _furthest(gas):
         note = f"{furthest}; {note}"
-    return Answer("How far it goes", reached, f"{note}; {wording.clean(summary.message)}")
+    ended = wording.reaction(summary.message, run.experiment)
+    return Answer("How far it goes", reached, f"{note}; {ended}")
 
 
 def _vessel(run: Run, summary: RunSummary) -> list[Answer]:
