@@ -80,6 +80,7 @@ class Runner:
             rtol=self.precision[0],
             atol=self.precision[1],
             watched=self.watched,
+            at_least=max((t.value for t in self.block.experiment.plan.report_at), default=0.0),
             functionals=tuple(self._functionals(part)),
             grid=np.array([self.times]) if self.times else None,
         )

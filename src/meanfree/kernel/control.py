@@ -61,8 +61,8 @@ def judge(
         further = _mean_square(layout, t, last, sizes, states * (1 + k))
         # What is no number must not be passed over for what is one.
         error = t.add(t.max(further, error), t.sub(further, further))
-    exponent = t.const(-0.5 / (error_order + 1))
-    factor = t.mul(t.const(SAFETY), t.unary(Op.EXP, t.mul(exponent, t.unary(Op.LOG, error))))
+    power = t.mul(t.const(-0.5 / (error_order + 1)), t.unary(Op.ROUGH_LOG2, error))
+    factor = t.mul(t.const(SAFETY), t.unary(Op.ROUGH_EXP2, power))
     factor = t.min(t.max(factor, t.const(SHRINK)), t.const(GROW))
     yes = t.sub(one, error)
     h, now = scalar("h"), scalar("t")
@@ -74,13 +74,12 @@ def judge(
     next_h = t.mul(h, t.select(yes, growing, shrinking))
     large_enough = t.min(t.nmadd(t.const(1e-15), now, next_h), t.sub(next_h, t.const(1e-280)))
     after_yes = t.max(scalar("limited"), scalar("automatic"))
-    next_look = t.min(scalar("due"), scalar("snap_at"))
-    met_due = t.select(t.sub(next_look, reached), after_yes, one)
+    met_due = t.select(t.sub(scalar("due"), reached), after_yes, one)
     attention = t.select(yes, met_due, t.select(large_enough, never, one))
     attention = t.max(t.sub(scalar("bad"), scalar("worst")), attention)
     attention = t.max(t.sub(t.add(scalar("tried"), t.const(1.5)), scalar("most_steps")), attention)
     for name, value in (
-        ("error", error), ("factor", factor), ("accepted", t.select(yes, one, t.const(0.0))),
+        ("error", error), ("accepted", t.select(yes, one, t.const(0.0))),
         ("reached", reached), ("next_h", next_h), ("attention", attention),
         ("negative", t.neg(lowest)),
     ):  # fmt: skip
@@ -120,7 +119,7 @@ def absolute_tolerance(layout: Layout, t: Tape, i: int) -> int:
     """Absolute tolerance of a state, as for a single run."""
     system = layout.system
     if i < system.n_gases:
-        return t.input(layout.scalar("atol_x"))
+        return t.input(layout.atol + i)
     if layout.has_T and i == layout.T_index:
         return t.const(1e-11)
     if system.volume_varies and i == system.volume_index:

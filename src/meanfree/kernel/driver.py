@@ -8,12 +8,17 @@ from __future__ import annotations
 
 import numpy as np
 
-from meanfree.kernel import events, jumps, lane, pivoting, resting
+from meanfree.kernel import attending, lane, pivoting, resting
 from meanfree.kernel.records import (
     AGAIN,
+    BEGAN,
+    FIRST_RUN,
     FRESH,
-    SEGMENT,
+    ONE_STEP,
+    SECOND_RUN,
     SLOT,
+    TO_RUN_AGAIN,
+    TO_STEP_AGAIN,
     WHO,
     Conditions,
     Floats,
@@ -23,33 +28,15 @@ from meanfree.kernel.records import (
     Request,
     compiled,
 )
-from meanfree.kernel.status import Ending
-from meanfree.kernel.vector import call_address
+from meanfree.kernel.vector import call_address, positive_lanes, unowned
 
 ACCEPT, START, JUDGE, STEP = 0, 1, 4, 5
-PENDING, REACHED, HORIZON = int(Ending.PENDING), int(Ending.REACHED), int(Ending.HORIZON)
-CONVERTED, SETTLED = int(Ending.CONVERTED), int(Ending.SETTLED)
-TOO_SMALL, TOO_MANY = int(Ending.STEP_TOO_SMALL), int(Ending.TOO_MANY_STEPS)
-NOT_FINITE, IS_NEGATIVE = int(Ending.NOT_FINITE), int(Ending.NEGATIVE)
 
-T, H, STOP, DUE, END, UNTIL = (
-    SLOT[name] for name in ("t", "h", "stop", "due", "end", "until")
-)  # fmt: skip
-ACCEPTED, AT, NEXT_H, ATTENTION = (
-    SLOT[name] for name in ("accepted", "reached", "next_h", "attention")
-)  # fmt: skip
-ERROR, BAD, FIRST, CROSSED, DEEPEST, NEGATIVE = (
-    SLOT[name] for name in ("error", "bad", "first", "crossed", "deepest", "negative")
-)
-TRIED, REFUSALS, MOST_STEPS = SLOT["tried"], SLOT["refusals"], SLOT["most_steps"]
-LEDGER, WORST = SLOT["atol_ledger"], SLOT["worst"]
-AUTOMATIC, SNAP_AT = SLOT["automatic"], SLOT["snap_at"]
+T, H, STOP, ATTENTION = (SLOT[name] for name in ("t", "h", "stop", "attention"))
+BAD, FIRST, WORST, LAST = (SLOT[name] for name in ("bad", "first", "worst", "last"))
 
 FIRST_STEP = 0.02
 """First step over the time in which a derivative changes; chosen by fewest steps on ROBER."""
-
-ALLOWED = 100.0 / 1e-12
-"""A negative amount may be 100 rtol of the total deep; the ledger's tolerance is 1e-12 of it."""
 
 
 @compiled
@@ -66,17 +53,63 @@ def advance(
     job: Conditions,
     ask: Request,
     out: Kept,
+    history: Floats,
 ) -> int:
-    """Integrate all conditions; the number of steps that the lanes made together."""
-    n, L, base, watching = out.marks.shape[0], p.lanes, W.ctypes.data, p.n_functionals > 0
-    n_phases = len(addresses) if watching else len(addresses) - 1
+    """Integrate all conditions; the number of steps that the lanes made together.
+
+    ``history`` [steps, 2 + states, lanes] is room for what runs of open length look back at.
+    """
+    base = W.ctypes.data
+    W, I, addresses, codes, entries = (
+        unowned(W), unowned(I), unowned(addresses), unowned(codes), unowned(entries)
+    )  # fmt: skip
+    a, c_table, dense, history = unowned(a), unowned(c_table), unowned(dense), unowned(history)
+    job = Conditions(
+        unowned(job.common), unowned(job.varied), unowned(job.own), unowned(job.breaks),
+        unowned(job.changed), unowned(job.moving),
+    )  # fmt: skip
+    ask = Request(
+        unowned(ask.flags), unowned(ask.initial), unowned(ask.levels), unowned(ask.grid),
+        unowned(ask.bearing),
+    )  # fmt: skip
+    out = Kept(
+        unowned(out.ends), unowned(out.rests), unowned(out.marks), unowned(out.events),
+        unowned(out.peaks), unowned(out.values),
+    )  # fmt: skip
+    steps: int = _loop(
+        p, W, I, addresses, codes, entries, a, c_table, dense, job, ask, out, history, base
+    )
+    return steps
+
+
+@compiled
+def _loop(
+    p: Places,
+    W: Floats,
+    I: Longs,
+    addresses: Longs,
+    codes: Longs,
+    entries: Longs,
+    a: Floats,
+    c_table: Floats,
+    dense: Floats,
+    job: Conditions,
+    ask: Request,
+    out: Kept,
+    history: Floats,
+    base: int,
+) -> int:
+    """The loop itself."""
+    n, L = out.marks.shape[0], p.lanes
+    watching, last_phase = p.n_functionals > 0 or p.automatic, len(addresses) - 1
     following, live, count, some_fresh = 0, 0, 0, True
     I[WHO, :] = -1
-    I[AGAIN, :] = 0
+    I[AGAIN, :] = FIRST_RUN
+    W[LAST, :] = -1.0
     for l in range(L):
         lane.load(p, W, I, job, min(following, n - 1), l)
         if following < n:
-            _enter(p, W, I, job, ask, out, following, l)
+            attending.enter(p, W, I, job, ask, out, following, count, l)
             following += 1
             live += 1
     while live > 0:
@@ -84,55 +117,59 @@ def advance(
             call_address(addresses[START], base, codes[START])
             _first_steps(p, W, I)
             some_fresh = False
-        for s in range(STEP, n_phases):
+        if p.automatic:
+            _remember(p, W, history, count)
+        for s in range(STEP, last_phase):
             call_address(addresses[s], base, codes[s])
+        call_address(addresses[JUDGE], base, codes[JUDGE])
         count += 1
-        bad = False
-        for l in range(L):
-            bad = bad or W[BAD, l] > W[WORST, l]
-        if bad:
-            _with_pivots(p, W, I, addresses, codes, entries, a, c_table, out.marks)
-        for l in range(L):
-            if W[ATTENTION, l] > 0 and I[WHO, l] >= 0:
-                some_fresh = True
-                if _attend(p, W, I, dense, job, ask, out, l):
-                    I[WHO, l] = -1
-                    live -= 1
-        call_address(addresses[ACCEPT], base, codes[ACCEPT])
-        if some_fresh:
-            some_fresh = False
+        calling = positive_lanes(base, ATTENTION, L)
+        if calling != 0:
+            bad = False
             for l in range(L):
+                bad = bad or W[BAD, l] > W[WORST, l]
+            if bad:
+                _with_pivots(p, W, I, addresses, codes, entries, a, c_table, out.marks)
+        if watching:
+            call_address(addresses[last_phase], base, codes[last_phase])
+        calling = positive_lanes(base, ATTENTION, L)
+        for l in range(L if calling != 0 else 0):
+            called = (calling >> l) & 1 and I[WHO, l] >= 0
+            if called and attending.attend(p, W, I, dense, job, ask, out, history, count, l):
+                I[WHO, l] = -1
+                live -= 1
+        call_address(addresses[ACCEPT], base, codes[ACCEPT])
+        for l in range(L if calling != 0 else 0):
+            if (calling >> l) & 1:
                 if I[WHO, l] < 0:
                     if following < n:
-                        _enter(p, W, I, job, ask, out, following, l)
+                        attending.enter(p, W, I, job, ask, out, following, count, l)
                         following += 1
                         live += 1
                         some_fresh = True
-                elif I[AGAIN, l] == 2:
-                    I[AGAIN, l] = 1
-                    W[AUTOMATIC, l] = 1.0
+                elif I[AGAIN, l] == TO_STEP_AGAIN:
+                    I[AGAIN, l] = ONE_STEP
+                    resting.put_back(p, W, history, I[BEGAN, l], l)
+                elif I[AGAIN, l] == TO_RUN_AGAIN:
+                    I[AGAIN, l] = SECOND_RUN
                     lane.load(p, W, I, job, I[WHO, l], l)
                     some_fresh = True
                 elif W[T, l] >= W[STOP, l]:
-                    _pass_break(p, W, I, addresses, codes, job, ask, l)
+                    attending.pass_break(p, W, I, addresses, codes, job, ask, out, count, l)
                     some_fresh = True
     return count
 
 
 @compiled
-def _enter(
-    p: Places, W: Floats, I: Longs, job: Conditions, ask: Request, out: Kept, c: int, l: int
-) -> None:
-    """A lane takes a condition for the first time."""
-    I[WHO, l], I[AGAIN, l] = c, 0
-    W[DEEPEST, l] = W[TRIED, l] = W[REFUSALS, l] = 0.0
-    lane.load(p, W, I, job, c, l)
-    W[DUE, l] = W[SNAP_AT, l] = events.NEVER
-    W[AUTOMATIC, l] = 1.0 if p.automatic and job.breaks.shape[1] > 0 else -1.0
-    if p.n_functionals > 0:
-        events.begin(p, W, I, ask, out, l)
-    if p.automatic:
-        resting.begin_watch(p, W, I, l)
+def _remember(p: Places, W: Floats, history: Floats, count: int) -> None:
+    """Time, step size and state of every lane before a step."""
+    place = count % len(history)
+    for l in range(p.lanes):
+        history[place, 0, l] = W[T, l]
+        history[place, 1, l] = W[H, l]
+    for i in range(p.states):
+        for l in range(p.lanes):
+            history[place, 2 + i, l] = W[p.state + i, l]
 
 
 @compiled
@@ -169,85 +206,3 @@ def _with_pivots(
             if I[WHO, l] >= 0:
                 marks[I[WHO, l], 3] += 1
     call_address(addresses[JUDGE], base, codes[JUDGE])
-    if p.n_functionals > 0:
-        call_address(addresses[len(addresses) - 1], base, codes[len(addresses) - 1])
-
-
-@compiled
-def _attend(
-    p: Places,
-    W: Floats,
-    I: Longs,
-    dense: Floats,
-    job: Conditions,
-    ask: Request,
-    out: Kept,
-    l: int,
-) -> bool:
-    """Look at a lane after a step; True where its condition has ended."""
-    c, ending, first_run = I[WHO, l], PENDING, I[AGAIN, l] == 0
-    if W[ACCEPTED, l] > 0:
-        if p.n_functionals > 0 and first_run and (W[AT, l] >= W[DUE, l] or W[p.alarm, l] > 0):
-            events.look(p, W, I, ask, out, l)
-        if p.automatic and first_run:
-            last = I[SEGMENT, l] >= job.breaks.shape[1]
-            ending = resting.watch(p, W, I, dense, out.ends, last, l)
-        elif p.automatic:
-            resting.approach(p, W, dense, out.ends, c, l)
-        if W[AT, l] >= W[STOP, l] or ending != PENDING:
-            end = W[UNTIL, l] if I[AGAIN, l] == 1 else W[END, l]
-            if ending == PENDING and W[AT, l] >= end:
-                ending = HORIZON if p.automatic else REACHED
-            if first_run:
-                events.last_peaks(p, W, I, ask.flags, out.peaks, l)
-                if ending != PENDING and ending != CONVERTED:
-                    lane.hand_out(p, W, out.ends, c, l)
-    elif not (W[NEXT_H, l] > 1e-15 * W[T, l] and W[NEXT_H, l] > 1e-280):
-        ending = TOO_SMALL if np.isfinite(W[ERROR, l]) else NOT_FINITE
-    if ending == PENDING and W[TRIED, l] + 1.5 > W[MOST_STEPS, l]:
-        ending = TOO_MANY
-    if ending == SETTLED and first_run:
-        # Once more from the start, to find when it had arrived.
-        I[AGAIN, l] = 2
-        W[UNTIL, l], W[CROSSED, l] = out.ends[c, p.size], -1.0
-        for i in range(p.size):
-            out.rests[c, i] = W[p.rest + i, l]
-        return False
-    if ending == PENDING:
-        return False
-    _close(p, W, I, ask, out, ending, l)
-    return True
-
-
-@compiled
-def _close(p: Places, W: Floats, I: Longs, ask: Request, out: Kept, ending: int, l: int) -> None:
-    """Write down how a condition ended, when, and what it cost."""
-    c = I[WHO, l]
-    if I[AGAIN, l] == 1 and ending == HORIZON:
-        # The second run ended where the first had settled; the way was done before.
-        ending = SETTLED
-    if ending in (SETTLED, CONVERTED) and W[CROSSED, l] >= 0:
-        out.ends[c, p.size] = W[CROSSED, l]
-    if p.automatic and ending != HORIZON:
-        lane.strike_beyond(out.events, out.values, ask.grid, c, out.ends[c, p.size])
-    deepest = max(W[DEEPEST, l], W[NEGATIVE, l])
-    if ending <= HORIZON and deepest > ALLOWED * (p.rtol + 1e-16) * W[LEDGER, l]:
-        ending = IS_NEGATIVE
-    out.marks[c, 0] = ending
-    out.marks[c, 1] = int(W[TRIED, l]) + 1
-    out.marks[c, 2] = int(W[REFUSALS, l]) + int(W[ACCEPTED, l] <= 0)
-
-
-@compiled
-def _pass_break(
-    p: Places, W: Floats, I: Longs, addresses: Longs, codes: Longs, job: Conditions, ask: Request,
-    l: int,
-) -> None:  # fmt: skip
-    """A break, and what it means for levels that shrink with the contents."""
-    if p.size > p.states:
-        jumps.pass_break(p, W, I, job, addresses, codes, l)
-    else:
-        lane.pass_break(p, W, I, job.breaks, job.changed, l)
-    for f in range(p.n_functionals):
-        if not ask.flags[f, 2]:
-            events.set_level(p, W, I, ask.flags, ask.levels, f, l)

@@ -6,11 +6,12 @@ mechanism, which has to be compiled; both give the same bits.
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
+from meanfree.equations.bearing import bearing_on
 from meanfree.equations.system import System
 from meanfree.kernel.cache import Say, silent
 from meanfree.kernel.parameters import Variation, columns
@@ -18,18 +19,20 @@ from meanfree.kernel.phases import Program, build_program
 from meanfree.kernel.records import (
     LEVEL,
     SLOT,
-    SNAPSHOTS,
     Conditions,
     Floats,
     Kept,
     Longs,
     Places,
     kept_for,
+    remembered,
 )
 from meanfree.kernel.slots import Name
 from meanfree.kernel.tableau import RODAS5P, Tableau
+from meanfree.kernel.tape import Phase
 from meanfree.kernel.watching import (
     Functional,
+    Rest,
     request_for,
     slots_per_functional,
     watching_phase,
@@ -65,9 +68,10 @@ class Task:
     """What to integrate and what to keep.
 
     ``end`` [s, shape (count,) or (1,)], None where runs end by themselves; then ``watched`` is the
-    gas whose conversion counts (-1: none). ``rtol`` and ``atol`` (over the total initial
-    concentration) as in a single run. ``grid`` [s, shape (rows, n_times)]. Steps whose elimination
-    meets a multiplier above ``worst_multiplier`` are made again with row exchanges.
+    gas whose conversion counts (-1: none), and none ends before ``at_least`` [s]. ``rtol`` and
+    ``atol`` (over the total initial concentration) as in a single run. ``grid`` [s, shape (rows,
+    n_times)]. Steps whose elimination meets a multiplier above ``worst_multiplier`` are made again
+    with row exchanges.
     """
 
     end: Floats | None
@@ -78,6 +82,7 @@ class Task:
     grid: Floats | None = None
     most_steps: int = MOST_STEPS
     worst_multiplier: float = WORST_MULTIPLIER
+    at_least: float = 0.0
 
 
 class Kernel:
@@ -96,39 +101,42 @@ class Kernel:
         self._compiled, self._lanes = self._told = compiled, lanes
         self._addresses: dict[int, list[int]] = {}
         self._kept: bool | None = None
-        self._codes: dict[Any, tuple[Lowering, list[Longs]]] = {}
+        self._expected = 0
+        self._watchings: dict[Any, Phase] = {}
+        self._codes: dict[int, tuple[Lowering, list[Longs]]] = {}
+        self._watching_addresses: dict[tuple[int, int], int] = {}
 
     def run(self, variation: Variation, task: Task) -> Kept:
         """Integrate all conditions of a variation in this thread, without Python's lock."""
         from meanfree.kernel.driver import advance
-        from meanfree.kernel.resting import LEFT
 
         compiled, lanes = self.choice(variation.count)
-        asked = len(task.functionals)
-        if task.end is None and task.watched >= 0:
-            # When the watched gas is nearly gone the loop must look.
-            goal = LEFT * variation.get("x", task.watched)
-            gone = Functional(((task.watched, 1.0),), levels=goal[:, None])
-            task = replace(task, functionals=(*task.functionals, gone))
         end = np.atleast_1d(np.array(HORIZON if task.end is None else task.end, float))
         numbers = columns(self.program.layout, variation, task.atol, end)
         grid = np.zeros((1, 0)) if task.grid is None else np.atleast_2d(task.grid)
         size = self.program.layout.size
-        request = request_for(task.functionals, numbers[:size], variation.count, grid)
+        bearing = self._bearing(task)
+        request = request_for(
+            task.functionals, numbers[:size], variation.count, grid, bearing, self.system.n_gases
+        )
         free = self.program.end + 1 + slots_per_functional(self.program) * len(task.functionals)
         places = self._places(task, lanes, free)
-        lowering, codes = self._code(task, free + (3 + SNAPSHOTS) * (size + 1))
+        rest = Rest(task.watched, bearing, places.most, places.still)
+        watching = self._watching(task, rest if task.end is None else None)
+        lowering, codes = self._code(watching, free + 5 * size)
         work = aligned(lowering.next * lanes).reshape(-1, lanes)
         for value, slot in lowering.constants.items():
             work[slot] = value
         work[SLOT["rtol"]], work[SLOT["most_steps"]] = task.rtol, task.most_steps
-        work[SLOT["worst"]] = task.worst_multiplier
+        work[SLOT["worst"]], work[SLOT["at_least"]] = task.worst_multiplier, task.at_least
+        states = self.program.layout.states
+        held = remembered(states) if task.end is None else 1
         method, kept = self.tableau, kept_for(places, request, variation.count)
         advance(
             places,
             work,
             np.zeros((LEVEL + len(task.functionals), lanes), np.int64),
-            np.array(self._all_addresses(compiled, lanes), np.int64),
+            np.array(self._all_addresses(compiled, lanes, watching, variation.count), np.int64),
             np.array([code.ctypes.data for code in codes], np.int64),
             np.array(self.program.entries, np.int64),
             method.a,
@@ -137,41 +145,50 @@ class Kernel:
             self._conditions(variation, numbers),
             request,
             kept,
+            aligned(held * (2 + states) * lanes).reshape(held, 2 + states, lanes),
         )
-        return kept._replace(
-            events=kept.events[:, :asked],
-            peaks=kept.peaks[:, :asked],
-            values=kept.values[:, :, :asked],
-        )
+        return kept
 
     def settle(self, total: int, chunk: int) -> None:
         """Choose for ``total`` conditions in all, of which ``chunk`` come at a time."""
         self._compiled, self._lanes = self._told
         self._compiled, self._lanes = self.choice(total)
+        self._expected = total
         if chunk <= 8 and not self._addresses:
             self._lanes = 8
         if self._compiled:
             self._compiled_addresses(self._lanes)
 
-    def _code(self, task: Task, first: int) -> tuple[Lowering, list[Longs]]:
-        """What the interpreter carries out, made once for each set of functionals."""
+    def _bearing(self, task: Task) -> tuple[int, ...]:
+        """Gases that must come to rest before a run of open length does."""
+        if task.watched < 0:
+            return tuple(range(self.system.n_gases))
+        return tuple(bearing_on(self.system, task.watched))
+
+    def _watching(self, task: Task, rest: Rest | None) -> Phase:
+        """The phase that follows every step, made once for what is asked."""
+        asked = tuple((f.weights, f.levels is None, f.falls, f.peak) for f in task.functionals)
+        key = (asked, rest)
+        if key not in self._watchings:
+            self._watchings[key] = watching_phase(self.program, task.functionals, rest)
+        return self._watchings[key]
+
+    def _code(self, watching: Phase, first: int) -> tuple[Lowering, list[Longs]]:
+        """What the interpreter carries out."""
         from meanfree.kernel.interpreter import Lowering
 
-        key = tuple((f.weights, f.levels is None, f.falls, f.peak) for f in task.functionals)
-        if key not in self._codes:
+        if id(watching) not in self._codes:
             lowering = Lowering(first)
-            phases = [*self.program.phases, watching_phase(self.program, task.functionals)]
-            self._codes[key] = lowering, [lowering.code(phase) for phase in phases]
-        return self._codes[key]
+            phases = [*self.program.phases, watching]
+            self._codes[id(watching)] = lowering, [lowering.code(phase) for phase in phases]
+        return self._codes[id(watching)]
 
     def choice(self, count: int) -> tuple[bool, int]:
         """(compile, number of lanes) for so many conditions, by expected time."""
         operations = self.program.operations
-        saved = INTERPRET * operations * EXPECTED_STEPS * count
-        cost = COMPILE[0] + COMPILE[1] * operations
-        if saved > KEPT and self._machine_code_is_kept():
-            cost = KEPT
-        compiled = saved > cost
+        compiled = self._pays(operations, count, True) and (
+            self._pays(operations, count, False) or self._machine_code_is_kept()
+        )
         if self._compiled is not None:
             compiled = self._compiled
         lanes = self._lanes
@@ -196,6 +213,7 @@ class Kernel:
             heat=system.volume_index - 1 if system.exchanges_heat else -1,
             v=system.volume_index if system.volume_varies else -1,
             T=layout.T_index if layout.has_T else -1,
+            atol=layout.atol,
             state=layout.state,
             new=layout.new,
             argument=layout.argument,
@@ -204,9 +222,9 @@ class Kernel:
             parameter=layout.first_parameter,
             alarm=program.end,
             most=end,
-            rest=end + layout.size,
-            begin=end + 2 * layout.size,
-            snaps=end + 3 * layout.size,
+            still=end + layout.size,
+            rest=end + 3 * layout.size,
+            begin=end + 4 * layout.size,
             gamma=self.tableau.gamma,
             exponent=-0.5 / (self.tableau.error_order + 1),
             rtol=task.rtol,
@@ -214,13 +232,30 @@ class Kernel:
             watched=task.watched,
         )
 
-    def _all_addresses(self, compiled: bool, lanes: int) -> list[int]:
-        """Of every phase; what watches a run differs from job to job and is interpreted."""
+    def _all_addresses(self, compiled: bool, lanes: int, watching: Phase, count: int) -> list[int]:
+        """Of every phase. What watches a run differs from job to job: it is compiled by itself."""
         from meanfree.kernel.interpreter import ADDRESSES
 
-        if compiled:
-            return [*self._compiled_addresses(lanes), ADDRESSES[lanes]]
-        return [ADDRESSES[lanes]] * (len(self.program.phases) + 1)
+        if not compiled:
+            return [ADDRESSES[lanes]] * (len(self.program.phases) + 1)
+        own = [*self._compiled_addresses(lanes)]
+        key = (id(watching), lanes)
+        if key not in self._watching_addresses:
+            from meanfree.kernel.cache import file_of
+            from meanfree.kernel.generated import addresses, source_of
+
+            operations = len(watching.tape.entries)
+            kept = file_of(source_of([watching], lanes)).is_file()
+            if not (kept or self._pays(operations, max(count, self._expected), kept)):
+                return [*own, ADDRESSES[lanes]]
+            self._watching_addresses[key] = addresses([watching], lanes, self.say)[0]
+        return [*own, self._watching_addresses[key]]
+
+    @staticmethod
+    def _pays(operations: int, count: int, kept: bool) -> bool:
+        """True where machine code for so many operations gains more time than it takes to get."""
+        saved = INTERPRET * operations * EXPECTED_STEPS * count
+        return saved > (KEPT if kept else COMPILE[0] + COMPILE[1] * operations)
 
     def _machine_code_is_kept(self) -> bool:
         """True where a module with machine code lies in the cache from before."""

@@ -180,7 +180,8 @@ def _loop(builder: Any, base: Any, code: Any, lanes: int) -> None:
 def _arity(op: Op) -> int:
     if op in (Op.MADD, Op.NMADD, Op.SELECT):
         return 3
-    return 1 if op in (Op.NEG, Op.ABS, Op.SQRT, Op.EXP, Op.LOG, Op.COPY) else 2
+    alone = (Op.NEG, Op.ABS, Op.SQRT, Op.EXP, Op.LOG, Op.COPY, Op.ROUGH_LOG2, Op.ROUGH_EXP2)
+    return 1 if op in alone else 2
 
 
 _interpret_8 = _interpret(8)

@@ -6,6 +6,7 @@ import numpy as np
 
 from meanfree.kernel.records import (
     AGAIN,
+    FIRST_RUN,
     FRESH,
     SEGMENT,
     SLOT,
@@ -21,6 +22,9 @@ ATOL, T, STOP = SLOT["atol_x"], SLOT["t"], SLOT["stop"]
 THETA, UNTIL, END = SLOT["theta"], SLOT["until"], SLOT["end"]
 REFUSED, STEPS, LIMITED = SLOT["refused"], SLOT["steps"], SLOT["limited"]
 REACHED = SLOT["reached"]
+
+OF_ITS_OWN = 1e-12
+"""Absolute tolerance of a filled gas over its own fill, where that is less than over the total."""
 
 
 @compiled
@@ -45,6 +49,11 @@ def load(p: Places, W: Floats, I: Longs, job: Conditions, c: int, l: int) -> Non
         else:
             slot = END
         W[slot, l] = job.own[v, c]
+    for i in range(p.gases):
+        # A filled trace is kept to a part of its own fill, however little of the whole that is.
+        filled = W[p.state + i, l]
+        own = OF_ITS_OWN * filled
+        W[p.atol + i, l] = own if filled > 0 and own < W[ATOL, l] else W[ATOL, l]
     if p.automatic:
         for i in range(p.size):
             W[p.begin + i, l] = W[p.state + i, l]
@@ -58,7 +67,7 @@ def load(p: Places, W: Floats, I: Longs, job: Conditions, c: int, l: int) -> Non
 @compiled
 def set_stop(p: Places, W: Floats, I: Longs, breaks: Floats, c: int, l: int) -> None:
     """The break or end that the lane must not step over."""
-    end = W[UNTIL, l] if I[AGAIN, l] == 1 else W[END, l]
+    end = W[END, l] if I[AGAIN, l] == FIRST_RUN else W[UNTIL, l]
     if I[SEGMENT, l] < breaks.shape[1]:
         end = min(end, breaks[min(c, len(breaks) - 1), I[SEGMENT, l], 0])
     W[STOP, l] = end

@@ -1,9 +1,8 @@
 """The phases of one step of a Rosenbrock method for one System.
 
 ``factor`` settles the step size, evaluates the Jacobian, factorises and makes the first stage; the
-other stages follow; the last one also judges the step. ``accept`` takes a new state over,
-``start`` finds the time scale for a first step; ``assemble``, ``evaluate`` and ``judge`` serve the
-path with pivoting.
+other stages follow; ``judge`` decides about the step. ``accept`` takes a new state over, ``start``
+finds the time scale for a first step; ``assemble`` and ``evaluate`` serve the path with pivoting.
 """
 
 from __future__ import annotations
@@ -91,6 +90,7 @@ class Writer:
         self.factors = slots
         step = [self._factor()]
         step += [self._stage(s) for s in range(1, tableau.stages)]
+        judge = self._judging()
         assemble, matrix = self._assemble(first + len(slots))
         return Program(
             layout,
@@ -102,10 +102,10 @@ class Writer:
             self._start(),
             assemble,
             self._evaluate(),
-            self._judging(),
+            judge,
             [*((0, *key, slot) for key, slot in matrix.items()), *self._couplings()],
             first + len(slots) + len(matrix),
-            sum(len(phase.tape.entries) for phase in step),
+            sum(len(phase.tape.entries) for phase in (*step, judge)),
         )
 
     def _own_slots(self, first: int) -> int:
@@ -181,8 +181,6 @@ class Writer:
         matrix = {key: t.input(slot) for key, slot in self.factors.items()}
         new = self._solved(t, rhs, matrix)
         outputs.update({layout.stage(s) + i: value for i, value in enumerate(new)})
-        if s + 1 == method.stages:
-            control.judge(layout, t, method.error_order, argument, new, outputs)
         return Phase(f"stage_{s}", t, outputs)
 
     def _continues(self, s: int) -> bool:
@@ -202,7 +200,7 @@ class Writer:
         ]
 
     def _judging(self) -> Phase:
-        """The judgement once more, of stages that lie in their slots."""
+        """Whether the step is accepted; a phase of its own, which holds fewer numbers at once."""
         layout, t, outputs = self.layout, Tape(), dict[int, int]()
         argument = self._state(t, layout.argument)
         last = self._state(t, layout.stage(self.tableau.stages - 1))

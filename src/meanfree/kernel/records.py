@@ -46,6 +46,7 @@ class Places(NamedTuple):
     heat: int
     v: int
     T: int
+    atol: int
     state: int
     new: int
     argument: int
@@ -54,9 +55,9 @@ class Places(NamedTuple):
     parameter: int
     alarm: int
     most: int
+    still: int
     rest: int
     begin: int
-    snaps: int
     gamma: float
     exponent: float
     rtol: float
@@ -87,13 +88,15 @@ class Request(NamedTuple):
     ``flags`` [n_functionals, 3]: sign (-1 where levels are reached from above), whether drawn
     samples shrink the levels, whether the maximum is asked instead. ``initial`` [n, n_functionals]
     values at time zero. ``levels`` [rows, n_functionals, n_levels] in the order in which they are
-    reached, NaN after the last. ``grid`` [rows, n_times] in s.
+    reached, NaN after the last. ``grid`` [rows, n_times] in s. ``bearing`` [n_gases] is 1 for gases
+    that must come to rest before a run of open length does.
     """
 
     flags: Longs
     initial: Floats
     levels: Floats
     grid: Floats
+    bearing: Longs
 
 
 class Kept(NamedTuple):
@@ -114,10 +117,10 @@ class Kept(NamedTuple):
 
 
 class Lane(IntEnum):
-    """Rows of I. ``WHO`` is the condition, -1 for none; ``AGAIN`` 0 in a first run, 1 in a second,
-    2 in
+    """Rows of I. ``WHO`` is the condition, -1 for none; ``AGAIN`` one of the numbers below;
 
-    between; ``LEVEL`` and beyond count the levels reached.
+    ``BEGAN`` the step of the loop with which the segment began; ``LEVEL`` and beyond count the
+    levels reached.
     """
 
     WHO = 0
@@ -125,17 +128,26 @@ class Lane(IntEnum):
     SEGMENT = 2
     AGAIN = 3
     GRID = 4
-    SNAPS = 5
+    BEGAN = 5
     LEVEL = 6
 
 
-WHO, FRESH, SEGMENT, AGAIN, GRID, SNAPS, LEVEL = (int(mark) for mark in Lane)
+WHO, FRESH, SEGMENT, AGAIN, GRID, BEGAN, LEVEL = (int(mark) for mark in Lane)
 
 SLOT = {name: SCALARS.index(name) for name in SCALARS}
 """Slot of each scalar by name."""
 
-SNAPSHOTS = 24
-"""States remembered a lane to see whether it still moves; each takes a slot more, for its time."""
+FIRST_RUN, SECOND_RUN, ONE_STEP, TO_RUN_AGAIN, TO_STEP_AGAIN = range(5)
+"""What a lane is doing: integrating a condition, integrating it once more, making one step of it
+once more; or about to do one of the latter."""
+
+ROOM, FEWEST, MOST = 4096, 64, 1024
+"""Numbers a lane that the history of a run may take, but no fewer steps and no more than these."""
+
+
+def remembered(states: int) -> int:
+    """Steps that are remembered; what comes to rest later than that is integrated twice."""
+    return int(min(max(ROOM // (states + 2), FEWEST), MOST))
 
 
 def kept_for(p: Places, request: Request, count: int) -> Kept:

@@ -15,10 +15,11 @@ Name = tuple[str | int, ...]
 
 SCALARS = (
     "t", "h", "stop", "due", "limited", "inverse_h_gamma", "inverse_h", "first", "bad",
-    "error", "factor", "accepted", "reached", "next_h", "attention", "negative",
+    "error", "accepted", "reached", "next_h", "attention", "negative",
     "refused", "tried", "refusals", "steps", "deepest",
     "rtol", "atol_x", "atol_ledger", "atol_heat", "most_steps", "automatic", "worst",
-    "theta", "end", "until", "crossed", "snap_at",
+    "theta", "end", "until", "crossed",
+    "last", "at_least", "goal", "older", "newer", "verdict", "crosses",
 )  # fmt: skip
 """Slots that every lane has besides its state and its parameters.
 
@@ -27,8 +28,11 @@ Of time: the lane must not step over ``stop``; at ``due`` the next time of the g
 ``attention`` > 0 where the loop must look at the lane. ``automatic`` > 0
 where it must look after every step. ``worst`` is the multiplier above which a
 pivot is bad. Counted: ``tried``, ``refusals``, ``steps``. ``theta`` is what drawn samples left;
-``end`` ends a run, ``until`` a second one; at ``crossed`` a level was crossed that may end a
-run, at ``snap_at`` it is seen whether anything moves.
+``end`` ends a run, ``until`` a second one. Of runs of open length: at ``crossed`` a level was
+crossed that may end it; ``last`` > 0 in the last segment; it does not end before ``at_least``;
+``goal`` of the watched gas; nothing moved away from the states remembered at ``older`` and
+``newer`` (-1: none is); ``verdict`` of the step just made, an ending or 0; ``crosses`` > 0 where
+it crossed the goal.
 """
 
 
@@ -77,6 +81,11 @@ class Layout:
     @property
     def state(self) -> int:
         """First slot of the state."""
+        return self.atol + self.system.n_gases
+
+    @property
+    def atol(self) -> int:
+        """First slot of the absolute tolerances of the gases [mol/m^3]."""
         return len(SCALARS)
 
     @property

@@ -19,17 +19,21 @@ class Ending(IntEnum):
     NEGATIVE = 8
     SINGULAR = 9
     DRIFTED = 10
+    RESTLESS = 11
+    UNBOUNDED = 12
 
     @property
     def is_good(self) -> bool:
         """True where the results may be used."""
-        return self in (Ending.REACHED, Ending.CONVERTED, Ending.SETTLED, Ending.HORIZON)
+        return self in GOOD
 
     @property
     def sentence(self) -> str:
         """The ending in words."""
         return SENTENCES[self]
 
+
+GOOD = (Ending.REACHED, Ending.CONVERTED, Ending.SETTLED, Ending.HORIZON, Ending.RESTLESS)
 
 SENTENCES = {
     Ending.PENDING: "not integrated",
@@ -43,4 +47,6 @@ SENTENCES = {
     Ending.NEGATIVE: "an amount went negative beyond what the tolerance explains",
     Ending.SINGULAR: "the equations of a step could not be solved, even with pivoting",
     Ending.DRIFTED: "an element was not conserved",
+    Ending.RESTLESS: "still moving after the most steps an automatic run takes",
+    Ending.UNBOUNDED: "the amount of gas grew 1e+09 times, and nothing in the case ends that",
 }

@@ -14,7 +14,10 @@ from enum import IntEnum
 
 
 class Op(IntEnum):
-    """The operations. ``MADD`` is a b + c, ``NMADD`` c - a b, ``SELECT`` b where a > 0, else c."""
+    """The operations. ``MADD`` is a b + c, ``NMADD`` c - a b, ``SELECT`` b where a > 0, else c.
+
+    The rough functions are good to 1e-4, enough for the choice of a step.
+    """
 
     CONST = 0
     INPUT = 1
@@ -33,6 +36,8 @@ class Op(IntEnum):
     LOG = 14
     SELECT = 15
     COPY = 16
+    ROUGH_LOG2 = 17
+    ROUGH_EXP2 = 18
 
 
 Entry = tuple[int, int, int, int]
@@ -167,9 +172,9 @@ class Tape:
         return self._make(Op.DIV, a, b)
 
     def unary(self, op: Op, a: int) -> int:
-        """ABS, SQRT, EXP or LOG of a."""
+        """ABS, SQRT, EXP, LOG or a rough function of a."""
         x = self.number(a)
-        if x is not None:
+        if x is not None and op in _PLAIN:
             return self.const(_PLAIN[op](x))
         return self._make(op, a)
 

@@ -13,6 +13,7 @@ import numpy as np
 
 from meanfree.kernel.phases import Program
 from meanfree.kernel.records import Floats, Request
+from meanfree.kernel.stillness import observe
 from meanfree.kernel.tape import Phase, Tape
 
 INSIDE = (0.25, 0.5, 0.75)
@@ -44,12 +45,13 @@ def slots_per_functional(program: Program) -> int:
 
 
 def request_for(
-    functionals: Sequence[Functional], states: Sequence[Floats], count: int, grid: Floats
-) -> Request:
+    functionals: Sequence[Functional], states: Sequence[Floats], count: int, grid: Floats,
+    bearing: Sequence[int], n_gases: int,
+) -> Request:  # fmt: skip
     """The request as plain arrays for ``count`` conditions.
 
     ``states`` are those at time zero, each of shape (count,) or (1,); ``grid`` [rows, n_times] in
-    s.
+    s; ``bearing`` are the gases that must come to rest.
     """
     with_levels = [f.levels for f in functionals if f.levels is not None]
     n_levels = max((table.shape[1] for table in with_levels), default=0)
@@ -67,10 +69,26 @@ def request_for(
         initial,
         levels,
         np.ascontiguousarray(grid, float),
+        np.isin(np.arange(n_gases), bearing).astype(np.int64),
     )
 
 
-def watching_phase(program: Program, functionals: Sequence[Functional]) -> Phase:
+@dataclass(frozen=True)
+class Rest:
+    """How runs of open length are watched: the gas that counts (-1: none), what must rest, and
+
+    the first slots of the most there was of each state and of the states remembered.
+    """
+
+    watched: int
+    bearing: tuple[int, ...]
+    most: int
+    still: int
+
+
+def watching_phase(
+    program: Program, functionals: Sequence[Functional], rest: Rest | None = None
+) -> Phase:
     """The phase that follows every step; its slots begin at the program's end."""
     t, layout, outputs = Tape(), program.layout, dict[int, int]()
     alarm = t.const(-1.0)
@@ -108,6 +126,9 @@ def watching_phase(program: Program, functionals: Sequence[Functional]) -> Phase
     # A refused step is no reason to look.
     accepted = t.input(layout.scalar("accepted"))
     outputs[program.end] = alarm = t.select(accepted, alarm, t.const(-1.0))
+    if rest is not None:
+        ends = observe(layout, t, rest.most, rest.still, rest.watched, rest.bearing, outputs)
+        alarm = t.max(ends, alarm)
     attention = layout.scalar("attention")
     outputs[attention] = t.max(alarm, t.input(attention))
     return Phase("watch", t, outputs)
