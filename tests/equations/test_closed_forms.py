@@ -123,13 +123,13 @@ def test_second_order_worked_example(checked):
 
 
 def test_equimolar_second_order(checked):
-    """E08: 50 % in 10 min leaves one third at 20 min (CP303 course sheet)."""
+    """E08: 50 % in 10 min leaves one third at 20 min (a worked exercise, CP303)."""
     k = 1 / 600.0
     run = integrate(experiment([step("A + B -> C", k)], {"A": 1.0, "B": 1.0}, until=1200.0))
     assert run.reaction_time("A", 0.5) == pytest.approx(600.0, rel=1e-8)
     left = run.remaining("A", 1200.0)[0]
     name = "left after twice the half-life, second order"
-    checked(name, left, "0.3333333333", "", "CP303 course sheet (one third)", rel=1e-8)
+    checked(name, left, "0.3333333333", "", "a worked exercise, CP303 (one third)", rel=1e-8)
 
 
 @pytest.mark.parametrize(
