@@ -210,6 +210,16 @@ def test_tables_are_not_walked_without_end(tmp_path: Path) -> None:
     assert refused(tmp_path, f"a.a.a = 1\n{GOOD}")[0].startswith("a: found an unknown key")
 
 
+def test_less_than_a_molecule(tmp_path: Path) -> None:
+    """185 torr at 296 K are 6.04e18 molecules/cm^3 (n = p/kT)."""
+    said = refused(tmp_path, GOOD.replace("1.8 L", "1e-19 cm^3"))
+    assert said == [
+        "fill: found a fill of 0.604 molecules in all; "
+        "expected at least one; rate laws need a great many"
+    ]
+    assert load_text(tmp_path, GOOD.replace("1.8 L", "2e-19 cm^3")).experiment.steps
+
+
 def test_a_fill_out_of_all_bounds(tmp_path: Path) -> None:
     """50 torr read at 1e-20 K are 4.8e25 torr at 480 K."""
     said = refused(tmp_path, GOOD.replace('at = "296 K"', 'at = "1e-20 K"'))

@@ -227,7 +227,7 @@ def _joined(
         together.check_laws(experiment, findings, surroundings_known=known)
         return None
     together.check_piston(experiment, findings)
-    together.check_pressure(experiment, findings)
+    together.check_amounts(experiment, findings)
     together.check_laws(experiment, findings)
     check_flows(experiment, findings)
     if findings.problems:

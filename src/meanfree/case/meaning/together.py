@@ -11,7 +11,7 @@ from meanfree.case.findings import Findings
 from meanfree.case.meaning.energies import energies_needed, with_energies
 from meanfree.case.meaning.temperature import span
 from meanfree.case.schema.tables import GasTable
-from meanfree.constants import R
+from meanfree.constants import N_A, R
 from meanfree.experiment.equilibrium import ln_K
 from meanfree.experiment.experiment import Experiment
 from meanfree.experiment.mechanism import GivenEquilibrium, Step
@@ -65,11 +65,15 @@ def gases_with_energies(
     return found
 
 
-def check_pressure(experiment: Experiment, findings: Findings) -> None:
-    """Refuse a fill whose pressure at time zero is out of all bounds.
+def check_amounts(experiment: Experiment, findings: Findings) -> None:
+    """Refuse a fill out of all bounds: an absurd pressure at time zero, less than a molecule.
 
     Each number may be possible by itself: read at 1e-20 K, a torr is 1e22 torr in the oven.
     """
+    molecules = sum(experiment.moles.values()) * N_A
+    if molecules < 1:
+        found = f"a fill of {molecules:.3g} molecules in all"
+        findings.wrong("fill", found, "at least one; rate laws need a great many")
     most = named("pressure").highest
     if not experiment.initial_pressure <= most:
         found = f"a fill that has {experiment.initial_pressure:.3g} Pa at time zero"
