@@ -123,7 +123,8 @@ def test_bytes():
     )
     assert str(decoded(b"t\n\0\n")) == "line 2: found a zero byte; expected a text file"
     assert str(decoded(b" " * (LARGEST + 1))) == (
-        "found a file larger than 16 MiB; expected one of at most 16 MiB: fewer readings, thinned out"
+        "found a file larger than 16 MiB; expected one of at most 16 MiB: fewer readings, "
+        "thinned out"
     )
 
 
