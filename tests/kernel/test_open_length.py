@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from contextlib import suppress
 from dataclasses import replace
 from pathlib import Path
@@ -15,6 +16,7 @@ from meanfree.case.loader import load_case
 from meanfree.equations.build import build_system
 from meanfree.errors import ComputationError
 from meanfree.experiment.experiment import Experiment
+from meanfree.experiment.mechanism import GivenEquilibrium, Step
 from meanfree.integrate.single import integrate
 from meanfree.kernel import records
 from meanfree.kernel.engine import Kernel, Task
@@ -70,7 +72,7 @@ def test_shipped_cases(name: str) -> None:
 @pytest.mark.slow
 def test_random_experiments(size: str) -> None:
     """Both vessels, every law, every way to hold a temperature; what differs is counted."""
-    indices = range(6) if size == "small" else range(60)
+    indices = (0, 1) if size == "small" else range(60)
     differences = []
     for index in indices:
         ending, difference = compare(random_experiment(index))
@@ -143,3 +145,33 @@ def test_a_maximum_beyond_the_end_counts_only_up_to_it() -> None:
     end = found.ends[0, -1]
     assert found.peaks[0, 0, 0] == end
     assert found.peaks[0, 0, 1] == pytest.approx(found.ends[0, 1], rel=1e-12)
+
+
+def kc(value: float) -> GivenEquilibrium:
+    return GivenEquilibrium("Kc", si(value), si(300.0))
+
+
+@pytest.mark.parametrize("compiled", [False, True])
+@pytest.mark.parametrize(
+    ("slow", "end"),
+    [
+        # [A] = 0.75 exp(-k t/2) once the fast step is in balance, from 1.0 to 0.001
+        (step("A -> C", 1e-3), 2e3 * math.log(750.0)),
+        # k/2 + k forwards and back: all three to 1.6/3, A from 0.75; 1e-3 of the way from 1
+        (step("A -> C", 1e-3, reverse=kc(1.0)), math.log((0.75 - 1.6 / 3) / (1.4e-3 / 3)) / 1.5e-3),
+    ],
+)  # fmt: skip
+def test_a_fast_equilibrium_is_no_rest_before_a_slow_step(
+    slow: Step, end: float, compiled: bool
+) -> None:
+    """Fifteen decades lie between the two: nothing moves for most of the time in between."""
+    steps = [step("A -> B", 1e12, reverse=kc(1.0)), slow]
+    case = experiment(steps, {"A": 1.0, "B": 0.5, "C": 0.1}, watch="A")
+    run = integrate(open_ended(case))
+    # 1e-6 of movement at rest over the 1e-3 of the way that is left there, over ln 750
+    assert run.end == pytest.approx(end, rel=2e-4)
+    system = build_system(open_ended(case))
+    kernel = Kernel(system, compiled=compiled)
+    found = kernel.run(Variation(system, 1), Task(None, watched=system.gases.index("A")))
+    assert Ending(found.marks[0, 0]).sentence == run.status.value
+    assert found.ends[0, -1] == pytest.approx(end, rel=2e-4)

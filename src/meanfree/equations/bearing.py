@@ -1,10 +1,16 @@
-"""Which gases bear on one of them: what must come to rest before it can."""
+"""What must come to rest before a gas can: the gases that bear on it, and the steps behind them."""
 
 from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
 
 import numpy as np
 
 from meanfree.equations.system import System
+
+NOISE = 1e-3
+"""Net over both ways of a reversible step below which it counts as balanced."""
 
 
 def bearing_on(system: System, watched: int) -> list[int]:
@@ -39,3 +45,33 @@ def bearing_on(system: System, watched: int) -> list[int]:
             pending.extend(needed - bearing)
             bearing |= needed
     return sorted(bearing)
+
+
+@dataclass(frozen=True)
+class Turnover:
+    """A step with its reverse (-1: one-way): what going forwards takes, and going backwards.
+
+    ``left`` and ``right`` are gases with how many of them a net event takes.
+    """
+
+    step: int
+    reverse: int
+    left: tuple[tuple[int, float], ...]
+    right: tuple[tuple[int, float], ...]
+
+
+def turnovers(system: System, bearing: Sequence[int]) -> list[Turnover]:
+    """Steps that may still have to act when everything seems to rest.
+
+    Of the steps that change a gas that must rest, unless one alone does: then rest is rest.
+    """
+    back = dict(zip(system.reverses.forward.tolist(), system.reverses.step.tolist(), strict=True))
+    reverses, found = set(back.values()), []
+    for j in range(system.n_steps):
+        net = system.net.row(j)
+        if j in reverses or not any(gas in bearing for gas, _ in net):
+            continue
+        left = tuple((gas, -number) for gas, number in net if number < 0)
+        right = tuple((gas, number) for gas, number in net if number > 0)
+        found.append(Turnover(j, back.get(j, -1), left, right))
+    return found if len(found) > 1 else []

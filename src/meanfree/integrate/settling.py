@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 
-from meanfree.equations.bearing import bearing_on
+from meanfree.equations.bearing import NOISE, bearing_on, turnovers
 from meanfree.equations.system import Floats, System
 
 CONVERTED = 0.999
@@ -35,7 +35,8 @@ class Settling:
 
     Compared with the most that was ever there of each gas, not with the total: a gas that is
     only just appearing grows by as much as there is of it, so an induction period is never
-    taken for rest. A run does not end before ``at_least`` [s].
+    taken for rest. Nor is the pause before a slow step that follows a fast equilibrium, however
+    far apart the two are. A run does not end before ``at_least`` [s].
     """
 
     def __init__(self, system: System, watched: int | None, at_least: float = 0.0) -> None:
@@ -46,6 +47,7 @@ class Settling:
         self.reason = ""
         gases = list(range(system.n_gases)) if watched is None else bearing_on(system, watched)
         self.bearing = gases
+        self.turnovers = turnovers(system, gases)
         self.kept = np.r_[gases, system.volume_index : system.size].astype(np.intp)
         # n/(theta n0) is what counts: drawn samples take their share without converting it.
         self.goal = (1.0 - CONVERTED) * float(np.prod([s.retained for s in system.segments]))
@@ -60,7 +62,8 @@ class Settling:
             if start > 0 and y[self.watched] <= self.goal * start:
                 self.reason = "converted"
                 return last_segment and t >= self.at_least
-        if last_segment and t >= self.at_least and self._still(t, y):
+        at_end = last_segment and t >= self.at_least
+        if at_end and self._still(t, y) and not self._waits(t, y):
             self.reason = "settled"
             return True
         if y[: self.system.n_gases].sum() > BOUND * self.system.total_concentration:
@@ -90,3 +93,28 @@ class Settling:
         most = self.most[self.kept]
         change = np.abs(since - y[self.kept]).max(axis=0)
         return np.asarray(change / np.where(most > 0, most, 1.0), float)
+
+    def _waits(self, t: float, y: Floats) -> bool:
+        """True while a step that is out of balance has not yet had the time to act.
+
+        That is what it takes to use up what is there of its scarcest gas at its present rate.
+        """
+        if not self.turnovers:
+            return False
+        from meanfree.equations.arrays import ArrayEquations
+
+        system, equations = self.system, ArrayEquations(self.system)
+        v = float(y[system.volume_index]) if system.volume_varies else 1.0
+        rates = v * equations.rates(t, y, system.segments[-1])
+        for one in self.turnovers:
+            back = rates[one.reverse] if one.reverse >= 0 else 0.0
+            net, both = rates[one.step] - back, rates[one.step] + back
+            taken = one.left if net > 0 else one.right
+            if abs(net) <= NOISE * both or not taken:
+                continue
+            if any(y[gas] <= STILL * self.most[gas] for gas, _ in taken):
+                continue
+            time = min(y[gas] / number for gas, number in taken) / abs(net)
+            if t < time < HORIZON:
+                return True
+        return False

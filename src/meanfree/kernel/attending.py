@@ -38,7 +38,7 @@ ERROR, CROSSED, DEEPEST, NEGATIVE = (
 )
 TRIED, REFUSALS, MOST_STEPS = SLOT["tried"], SLOT["refusals"], SLOT["most_steps"]
 LEDGER, AUTOMATIC, LAST = SLOT["atol_ledger"], SLOT["automatic"], SLOT["last"]
-VERDICT, CROSSES = SLOT["verdict"], SLOT["crosses"]
+VERDICT, CROSSES, WAITS = SLOT["verdict"], SLOT["crosses"], SLOT["waits"]
 
 ALLOWED = 100.0 / 1e-12
 """A negative amount may be 100 rtol of the total deep; the ledger's tolerance is 1e-12 of it."""
@@ -122,6 +122,8 @@ def _first_run(
         events.look(p, W, I, ask, out, l)
     if p.automatic:
         ending = int(W[VERDICT, l])
+        if ending == SETTLED and W[WAITS, l] > 0:
+            ending = PENDING
     if W[AT, l] >= W[STOP, l] or ending != PENDING:
         if ending == PENDING and W[AT, l] >= W[END, l]:
             ending = HORIZON if p.automatic else REACHED

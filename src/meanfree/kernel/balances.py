@@ -54,6 +54,10 @@ class Balances:
         """dy/dt of every state."""
         return _Point(self, tape, state, slopes=False).derivative()
 
+    def flows(self, tape: Tape, state: list[int]) -> list[int]:
+        """Rate of every one-way step over the volume at time zero [mol/m^3/s]."""
+        return _Point(self, tape, state, slopes=False).flows
+
     def both(self, tape: Tape, state: list[int]) -> tuple[list[int], Matrix]:
         """dy/dt and J, the baths' columns included."""
         point = _Point(self, tape, state, slopes=True)

@@ -28,12 +28,14 @@ from meanfree.kernel.records import (
     Request,
     compiled,
 )
+from meanfree.kernel.status import Ending
 from meanfree.kernel.vector import call_address, positive_lanes, unowned
 
 ACCEPT, START, JUDGE, STEP = 0, 1, 4, 5
 
 T, H, STOP, ATTENTION = (SLOT[name] for name in ("t", "h", "stop", "attention"))
 BAD, FIRST, WORST, LAST = (SLOT[name] for name in ("bad", "first", "worst", "last"))
+VERDICT, SETTLED = SLOT["verdict"], float(Ending.SETTLED)
 
 FIRST_STEP = 0.02
 """First step over the time in which a derivative changes; chosen by fewest steps on ROBER."""
@@ -101,7 +103,8 @@ def _loop(
 ) -> int:
     """The loop itself."""
     n, L = out.marks.shape[0], p.lanes
-    watching, last_phase = p.n_functionals > 0 or p.automatic, len(addresses) - 1
+    watching = p.n_functionals > 0 or p.automatic
+    waiting, last_phase = len(addresses) - 1, len(addresses) - 2
     following, live, count, some_fresh = 0, 0, 0, True
     I[WHO, :] = -1
     I[AGAIN, :] = FIRST_RUN
@@ -133,6 +136,8 @@ def _loop(
         if watching:
             call_address(addresses[last_phase], base, codes[last_phase])
         calling = positive_lanes(base, ATTENTION, L)
+        if p.automatic and calling != 0 and _some_rest(W, I, L):
+            call_address(addresses[waiting], base, codes[waiting])
         for l in range(L if calling != 0 else 0):
             called = (calling >> l) & 1 and I[WHO, l] >= 0
             if called and attending.attend(p, W, I, dense, job, ask, out, history, count, l):
@@ -158,6 +163,15 @@ def _loop(
                     attending.pass_break(p, W, I, addresses, codes, job, ask, out, count, l)
                     some_fresh = True
     return count
+
+
+@compiled
+def _some_rest(W: Floats, I: Longs, lanes: int) -> bool:
+    """True where a lane seems to have come to rest in its first run."""
+    for l in range(lanes):
+        if I[WHO, l] >= 0 and I[AGAIN, l] == FIRST_RUN and W[VERDICT, l] == SETTLED:
+            return True
+    return False
 
 
 @compiled

@@ -28,6 +28,7 @@ from meanfree.kernel.records import (
     remembered,
 )
 from meanfree.kernel.slots import Name
+from meanfree.kernel.slow_steps import waiting_phase
 from meanfree.kernel.tableau import RODAS5P, Tableau
 from meanfree.kernel.tape import Phase
 from meanfree.kernel.watching import (
@@ -102,7 +103,7 @@ class Kernel:
         self._addresses: dict[int, list[int]] = {}
         self._kept: bool | None = None
         self._expected = 0
-        self._watchings: dict[Any, Phase] = {}
+        self._watchings: dict[Any, tuple[Phase, Phase]] = {}
         self._codes: dict[int, tuple[Lowering, list[Longs]]] = {}
         self._watching_addresses: dict[tuple[int, int], int] = {}
 
@@ -122,8 +123,8 @@ class Kernel:
         free = self.program.end + 1 + slots_per_functional(self.program) * len(task.functionals)
         places = self._places(task, lanes, free)
         rest = Rest(task.watched, bearing, places.most, places.still)
-        watching = self._watching(task, rest if task.end is None else None)
-        lowering, codes = self._code(watching, free + 5 * size)
+        watching, waiting = self._watching(task, rest if task.end is None else None)
+        lowering, codes = self._code(watching, waiting, free + 5 * size)
         work = aligned(lowering.next * lanes).reshape(-1, lanes)
         for value, slot in lowering.constants.items():
             work[slot] = value
@@ -165,21 +166,25 @@ class Kernel:
             return tuple(range(self.system.n_gases))
         return tuple(bearing_on(self.system, task.watched))
 
-    def _watching(self, task: Task, rest: Rest | None) -> Phase:
-        """The phase that follows every step, made once for what is asked."""
+    def _watching(self, task: Task, rest: Rest | None) -> tuple[Phase, Phase]:
+        """The phase that follows every step, and the one for what seems to rest."""
         asked = tuple((f.weights, f.levels is None, f.falls, f.peak) for f in task.functionals)
         key = (asked, rest)
         if key not in self._watchings:
-            self._watchings[key] = watching_phase(self.program, task.functionals, rest)
+            layout = self.program.layout
+            steps = rest.bearing if rest is not None else ()
+            waiting = waiting_phase(layout, steps, rest.most if rest else 0, HORIZON)
+            watching = watching_phase(self.program, task.functionals, rest)
+            self._watchings[key] = watching, waiting
         return self._watchings[key]
 
-    def _code(self, watching: Phase, first: int) -> tuple[Lowering, list[Longs]]:
+    def _code(self, watching: Phase, waiting: Phase, first: int) -> tuple[Lowering, list[Longs]]:
         """What the interpreter carries out."""
         from meanfree.kernel.interpreter import Lowering
 
         if id(watching) not in self._codes:
             lowering = Lowering(first)
-            phases = [*self.program.phases, watching]
+            phases = [*self.program.phases, watching, waiting]
             self._codes[id(watching)] = lowering, [lowering.code(phase) for phase in phases]
         return self._codes[id(watching)]
 
@@ -233,11 +238,14 @@ class Kernel:
         )
 
     def _all_addresses(self, compiled: bool, lanes: int, watching: Phase, count: int) -> list[int]:
-        """Of every phase. What watches a run differs from job to job: it is compiled by itself."""
+        """Of every phase. What watches a run differs from job to job: it is compiled by itself.
+
+        The last, for lanes that seem to rest, is always interpreted.
+        """
         from meanfree.kernel.interpreter import ADDRESSES
 
         if not compiled:
-            return [ADDRESSES[lanes]] * (len(self.program.phases) + 1)
+            return [ADDRESSES[lanes]] * (len(self.program.phases) + 2)
         own = [*self._compiled_addresses(lanes)]
         key = (id(watching), lanes)
         if key not in self._watching_addresses:
@@ -247,9 +255,9 @@ class Kernel:
             operations = len(watching.tape.entries)
             kept = file_of(source_of([watching], lanes)).is_file()
             if not (kept or self._pays(operations, max(count, self._expected), kept)):
-                return [*own, ADDRESSES[lanes]]
+                return [*own, ADDRESSES[lanes], ADDRESSES[lanes]]
             self._watching_addresses[key] = addresses([watching], lanes, self.say)[0]
-        return [*own, self._watching_addresses[key]]
+        return [*own, self._watching_addresses[key], ADDRESSES[lanes]]
 
     @staticmethod
     def _pays(operations: int, count: int, kept: bool) -> bool:

@@ -19,7 +19,7 @@ SCALARS = (
     "refused", "tried", "refusals", "steps", "deepest",
     "rtol", "atol_x", "atol_ledger", "atol_heat", "most_steps", "automatic", "worst",
     "theta", "end", "until", "crossed",
-    "last", "at_least", "goal", "older", "newer", "verdict", "crosses",
+    "last", "at_least", "goal", "older", "newer", "verdict", "crosses", "waits",
 )  # fmt: skip
 """Slots that every lane has besides its state and its parameters.
 
@@ -32,7 +32,7 @@ pivot is bad. Counted: ``tried``, ``refusals``, ``steps``. ``theta`` is what dra
 crossed that may end it; ``last`` > 0 in the last segment; it does not end before ``at_least``;
 ``goal`` of the watched gas; nothing moved away from the states remembered at ``older`` and
 ``newer`` (-1: none is); ``verdict`` of the step just made, an ending or 0; ``crosses`` > 0 where
-it crossed the goal.
+it crossed the goal; ``waits`` > 0 where a slow step has yet to act, known once it seems to rest.
 """
 
 
