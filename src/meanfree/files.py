@@ -11,6 +11,7 @@ import errno
 import json
 import os
 import shutil
+import time
 from collections.abc import Iterator
 from contextlib import contextmanager, suppress
 from pathlib import Path
@@ -89,9 +90,7 @@ def fresh_folder(
     """
     target = _real(target)
     with errors_in_words(target):
-        if not aside_of(target).exists():
-            # Before anything is made. Where a writer is at work, or died, the lock comes first.
-            refuse_if_taken(target, owner=owner, replace=replace)
+        _refuse_before_anything_is_made(target, owner, replace)
         with _parents_of(target), working_aside(target, patience_s) as aside:
             _recover(target, aside)
             refuse_if_taken(target, owner=owner, replace=replace)
@@ -105,6 +104,24 @@ def fresh_folder(
                 _swap(target, aside)
             finally:
                 _recover(target, aside)
+
+
+def _refuse_before_anything_is_made(target: Path, owner: str, replace: bool) -> None:
+    """As `refuse_if_taken`, without the lock: who is caught between two renames looks again.
+
+    Where a writer is at work, or died, the lock comes first.
+    """
+    for pause in (0.01, 0.05, 0.0):
+        if aside_of(target).exists():
+            return
+        try:
+            refuse_if_taken(target, owner=owner, replace=replace)
+        except (InputError, OSError):
+            if not pause:
+                raise
+            time.sleep(pause)
+        else:
+            return
 
 
 def write_text_atomically(

@@ -105,7 +105,13 @@ def _acquire(aside: Path, target: Path, patience_s: float) -> int:
 
 
 def _open_lock(aside: Path) -> int | None:
-    aside.mkdir(exist_ok=True)
+    try:
+        aside.mkdir(exist_ok=True)
+    except FileExistsError:
+        # A folder that its holder removed just then, unless something else stands there.
+        if os.path.lexists(aside) and not aside.is_dir():
+            raise
+        return None
     try:
         return os.open(aside / "lock", os.O_RDWR | os.O_CREAT, 0o666)
     except FileNotFoundError:

@@ -37,6 +37,7 @@ def figure(found: Schedule, chosen: Kinds) -> Figure:
         elinewidth=1.2,
         capsize=2.5,
         zorder=3,
+        clip_on=False,
     )
     values = np.concatenate([found.signal, plan.signal]) * scale
     low, high = float(values.min()), float(values.max())
