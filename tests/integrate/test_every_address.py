@@ -15,6 +15,7 @@ from random_experiments import random_experiment
 from rare_experiments import RARE, rare_experiment
 
 from meanfree.case.loader import load_case
+from meanfree.errors import ComputationError
 from meanfree.experiment.experiment import Experiment
 from meanfree.experiment.inputs import _replaced, _walk, inputs, with_inputs
 from meanfree.integrate.conditions import Conditions, as_table
@@ -85,12 +86,17 @@ def test_no_system_is_built_for_each_condition(name: str) -> None:
 @pytest.mark.slow
 @pytest.mark.parametrize("name", NAMES)
 def test_two_of_many_are_those_of_single_runs(name: str, size: str) -> None:
-    """Every address (in "small", one in each ten) varied over 64 values in one call."""
+    """Every address (in "small", some of three cases) varied over 64 values in one call.
+
+    What a made-up value makes impossible for the single run has nothing to compare.
+    """
+    if size == "small" and name not in ("nocl-bulb", "dimer-piston", "iodide-sweep"):
+        pytest.skip("single runs of some experiments take minutes")
     experiment = experiment_of(name)
     if any(s.volume is not None for s in experiment.samples) and not experiment.vessel.is_rigid:
         pytest.skip("what a volume takes of a piston differs from run to run")
     found = list(columns(experiment))
-    start = NAMES.index(name)
+    start, compared = NAMES.index(name), 0
     for address, column in found if size == "full" else found[start % 10 :: 10]:
         ends = Sourced(0.3 * _own_end(experiment), "s", dimension="time")
         timed = replace(experiment, plan=replace(experiment.plan, until=ends, report_at=()))
@@ -100,12 +106,17 @@ def test_two_of_many_are_those_of_single_runs(name: str, size: str) -> None:
         runs = Runs(timed, [At("amount", gas) for gas in gases])
         values, _ = runs.arrays({address: column})
         for row in (7, 50):
-            single = integrate(with_inputs(timed, {address: float(column[row])}))
+            try:
+                single = integrate(with_inputs(timed, {address: float(column[row])}))
+            except ComputationError:
+                continue
+            compared += 1
             amounts = single.amounts(single.end)[:, 0]
             # both at the case's rtol, 1e-8, which each reaches within some tens of tolerances
             np.testing.assert_allclose(
                 values[:, row], amounts, rtol=1e-6, atol=1e-12 * amounts.sum(), err_msg=address
             )
+    assert compared > 0
 
 
 def _own_end(experiment: Experiment) -> float:
