@@ -136,8 +136,8 @@ def _deviations(points: Sequence[Point]) -> Floats | None:
 
 
 def _exponential(ln: Interval) -> Interval:
-    value = math.exp(ln.value)
-    return Interval(value, value * ln.error, math.exp(ln.low), math.exp(ln.high))
+    value = _exp(ln.value)
+    return Interval(value, value * ln.error, _exp(ln.low), _exp(ln.high))
 
 
 def _curvature(
@@ -191,10 +191,10 @@ def _centres(
     ln_P = line.intercept - line.slope / middle
     half = math.hypot(t * math.sqrt(cov[0, 0]), quantile(None) * of_diameter)
     steric = Interval(
-        math.exp(ln_P),
-        math.exp(ln_P) * math.hypot(math.sqrt(cov[0, 0]), of_diameter),
-        math.exp(ln_P - half),
-        math.exp(ln_P + half),
+        _exp(ln_P),
+        _exp(ln_P) * math.hypot(math.sqrt(cov[0, 0]), of_diameter),
+        _exp(ln_P - half),
+        _exp(ln_P + half),
     )
     # A over Z at the middle: ln A - ln Z(middle), from the Arrhenius line.
     a = arrhenius
@@ -203,10 +203,10 @@ def _centres(
     error = math.sqrt(float(row @ a.covariance @ row))
     wide = math.hypot(a.quantile * error, quantile(None) * of_diameter)
     ratio = Interval(
-        math.exp(ln_ratio),
-        math.exp(ln_ratio) * math.hypot(error, of_diameter),
-        math.exp(ln_ratio - wide),
-        math.exp(ln_ratio + wide),
+        _exp(ln_ratio),
+        _exp(ln_ratio) * math.hypot(error, of_diameter),
+        _exp(ln_ratio - wide),
+        _exp(ln_ratio + wide),
     )
     return LineOfCentres(
         interval(-R * line.slope, math.sqrt(cov[1, 1]), t),
@@ -242,3 +242,8 @@ def _words(line: Line, probability: float | None, power: Interval | None) -> lis
             "the intervals are widened accordingly."
         )
     return said
+
+
+def _exp(exponent: float) -> float:
+    """exp, infinite beyond the largest number: readings that make no sense may ask for that."""
+    return math.exp(exponent) if exponent < 709.0 else math.inf
